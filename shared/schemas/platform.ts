@@ -1,0 +1,111 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import { z } from "zod";
+
+/** A value with its standard uncertainty; a plain number means u = 0. */
+const uncertain = z.union([
+  z.number(),
+  z.strictObject({
+    value: z.number(),
+    u: z.number().min(0).default(0),
+    at_nm: z.number().positive().optional(),
+  }),
+]);
+
+/** One default for both polarisations, or one per polarisation. */
+const perPolarisation = z.union([
+  uncertain,
+  z.strictObject({ TE: uncertain.optional(), TM: uncertain.optional() }),
+]);
+
+const spread = z.strictObject({
+  lot_sd: z.number().min(0),
+  wafer_sd: z.number().min(0),
+  die_sd: z.number().min(0),
+  guide_sd: z.number().min(0),
+});
+
+const axis = z.enum(["x", "y", "z", "o", "e"]);
+
+/** Traits that a platform may give a default (and prior spreads) for. */
+export const DEFAULT_TRAITS = [
+  "loss_db_cm",
+  "mfd_x_um",
+  "mfd_y_um",
+  "duty",
+  "duty_sd",
+  "merged",
+  "coated_reflectivity",
+] as const;
+export type DefaultTrait = typeof DEFAULT_TRAITS[number];
+
+const processKey = z.string().regex(
+  /^(TE|TM)>(TE|TM)\+(TE|TM)$/,
+  'need pump>signal+idler with TE or TM, such as "TE>TE+TM"',
+);
+
+/** `<id>.json`: a fabrication platform (formats: "Platforms"). */
+export const platformSchema = z.strictObject({
+  platform: z.string().min(1),
+  material: z.enum(["KTP", "CLN", "MgO:CLN"]),
+  axes: z.strictObject({ TE: axis, TM: axis }),
+  index: z.discriminatedUnion("from", [
+    z.strictObject({ from: z.literal("bulk") }),
+    z.strictObject({
+      from: z.literal("table"),
+      n_eff: z.string().min(1),
+      effective_area: z.string().min(1).optional(),
+      provenance: z.string().min(1).optional(),
+    }),
+  ]),
+  effective_area_um2: z.number().positive().optional(),
+  outside_index: z.number().min(1).optional(),
+  nonlinear: z.record(
+    processKey,
+    z.strictObject({
+      d_pm_per_v: z.number().refine((d) => d !== 0, "need a coefficient other than 0"),
+      at_nm: z.number().positive(),
+    }),
+  ),
+  defaults: z.strictObject({
+    loss_db_cm: perPolarisation.optional(),
+    mfd_x_um: perPolarisation.optional(),
+    mfd_y_um: perPolarisation.optional(),
+    duty: uncertain.optional(),
+    duty_sd: uncertain.optional(),
+    merged: uncertain.optional(),
+    coated_reflectivity: perPolarisation.optional(),
+    u_insertion_loss_db: z.number().min(0).optional(),
+    u_contrast: z.number().min(0).optional(),
+    u_reflectivity: z.number().min(0).optional(),
+    u_mfd_um: z.number().min(0).optional(),
+    u_value: z.record(z.string(), z.number().min(0)).optional(),
+  }).default({}),
+  priors: z.partialRecord(z.enum(DEFAULT_TRAITS), spread).default({}),
+  notes: z.object({
+    pump_limit_mw: z.number().positive().optional(),
+    caution: z.string().optional(),
+  }).catchall(z.unknown()).default({}),
+});
+export type Platform = z.infer<typeof platformSchema>;
+
+/** A row of `<id>.n_eff.csv`. */
+export const indexRowSchema = z.strictObject({
+  wavelength_nm: z.number().positive(),
+  polarisation: z.enum(["TE", "TM"]),
+  temperature_c: z.number(),
+  width_um: z.number().positive(),
+  film_thickness_nm: z.number().positive().optional(),
+  etch_depth_nm: z.number().positive().optional(),
+  titanium_nm: z.number().positive().optional(),
+  n_eff: z.number().min(1),
+});
+
+/** A row of `<id>.effective_area.csv`. */
+export const areaRowSchema = z.strictObject({
+  process: processKey,
+  width_um: z.number().positive(),
+  film_thickness_nm: z.number().positive().optional(),
+  etch_depth_nm: z.number().positive().optional(),
+  titanium_nm: z.number().positive().optional(),
+  effective_area_um2: z.number().positive(),
+});
