@@ -1,0 +1,13 @@
+// Pure: no I/O, no clock, no hidden randomness.
+// Effective indices and effective areas of guides.
+export { type AreaModel, canonicalProcess, constantAreaModel, processName } from "./area_model.ts";
+export { bulkIndexModel } from "./bulk_index.ts";
+export {
+  GEOMETRY_PARAMETERS,
+  type GeometryParameter,
+  type IndexModel,
+  type IndexRange,
+  type IndexSlice,
+  mismatch,
+  type PolarisationAxes,
+} from "./index_model.ts";
