@@ -45,6 +45,7 @@ const processKey = z.string().regex(
 
 /** `<id>.json`: a fabrication platform (formats: "Platforms"). */
 export const platformSchema = z.strictObject({
+  $schema: z.string().optional(),
   platform: z.string().min(1),
   material: z.enum(["KTP", "CLN", "MgO:CLN"]),
   axes: z.strictObject({ TE: axis, TM: axis }),

@@ -46,6 +46,7 @@ const requirementSchema = z.strictObject({
 
 /** `<name>.json`: what an experiment needs (formats: "Source requests"). Cross-field rules: {@link checkRequest}. */
 export const requestSchema = z.strictObject({
+  $schema: z.string().optional(),
   request: z.string().regex(/^[A-Za-z0-9][A-Za-z0-9._-]*$/, "need letters, digits, '.', '_' or '-'"),
   process: z.enum(PROCESSES),
   polarisations: z.strictObject({ pump: polarisation, signal: polarisation, idler: polarisation }),
@@ -181,7 +182,16 @@ function resolveWaves(request: Request, problems: RequestProblem[]): ThreeWaves 
     return null;
   }
   const { pump: polP, signal: polS, idler: polI } = request.polarisations;
+  // The pump of a second harmonic follows from its fundamental: what energy conservation leaves over is put right there.
+  if (request.process === "second-harmonic") {
+    return { lambdaP: nm(lambdaS / 2), lambdaS: nm(lambdaS), lambdaI: nm(lambdaS), polP, polS, polI };
+  }
   return { lambdaP: nm(lambdaP), lambdaS: nm(lambdaS), lambdaI: nm(lambdaI), polP, polS, polI };
+}
+
+/** True when signal and idler are one wavelength within the tolerance of energy conservation. */
+export function isDegenerate(waves: ThreeWaves): boolean {
+  return Math.abs(waves.lambdaS - waves.lambdaI) <= nm(ENERGY_TOLERANCE_NM);
 }
 
 function checkPump(pump: NonNullable<Request["pump"]>, pulsed: boolean, problems: RequestProblem[]): void {

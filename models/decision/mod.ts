@@ -1,0 +1,3 @@
+// Pure: no I/O, no clock, no hidden randomness.
+export * from "./conformity.ts";
+export * from "./draws.ts";

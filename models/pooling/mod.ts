@@ -1,0 +1,2 @@
+// Pure: no I/O, no clock, no hidden randomness.
+export * from "./inherit.ts";
