@@ -3,3 +3,7 @@ export * from "./prefactor.ts";
 export * from "./loss_weight.ts";
 export * from "./efficiency.ts";
 export * from "./closed_forms.ts";
+export * from "./three_waves.ts";
+export * from "./integrate_domains.ts";
+export * from "./integrate_uniform.ts";
+export * from "./peak_conversion.ts";
