@@ -108,6 +108,12 @@ export interface ActiveFile {
   readonly run: string;
 }
 
+/** Rows of one run that are in force. */
+export interface ActiveRows {
+  readonly run: Manifest;
+  readonly table: Table;
+}
+
 export interface ReadOptions {
   readonly columns?: readonly string[];
   readonly rowGroups?: readonly number[];
@@ -142,8 +148,10 @@ export interface Ledger {
   readTable(run: string | Manifest, table: string, options?: ReadOptions): Promise<Table>;
   /** Batches of a table, row group by row group. */
   streamTable(run: string | Manifest, table: string, options?: ReadOptions): AsyncIterable<RecordBatch>;
-  /** Rows in force of one table over all ingest runs of a lot, as one Arrow table per run that still counts. */
-  readActive(table: string, lot: string, options?: ReadOptions): Promise<readonly Table[]>;
+  /** Rows in force of one table over the ingest runs of a lot (or of all), per run that still counts, oldest first. */
+  readActive(table: string, lot?: string, options?: ReadOptions): Promise<readonly ActiveRows[]>;
+  /** The same rows batch by batch: memory holds one row group at a time. */
+  streamActive(table: string, lot?: string, options?: ReadOptions): AsyncIterable<RecordBatch>;
   /** Path of a kept original. */
   originalPath(sha256: string): string;
   /** Releases the lock, and cleans away what was staged and never committed. */
