@@ -1,5 +1,14 @@
 import { createHash } from "node:crypto";
-import { RecordBatch, type Schema, Table, tableToIPC } from "apache-arrow";
+import {
+  type Data,
+  DataType,
+  makeData,
+  RecordBatch,
+  type Schema,
+  Struct,
+  Table,
+  tableToIPC,
+} from "apache-arrow";
 import {
   Compression,
   Table as WasmTable,
@@ -99,4 +108,22 @@ async function drain(path: string, batches: ReadableStream<unknown>) {
   return { bytes, sha256: hash.digest("hex") };
 }
 
-const emptyBatch = (schema: Schema): RecordBatch => new RecordBatch(schema);
+/** A batch of no rows: from it the writer learns the columns of an empty table. */
+function emptyBatch(schema: Schema): RecordBatch {
+  const children = schema.fields.map((field) => emptyData(field.type));
+  return new RecordBatch(
+    schema,
+    makeData({ type: new Struct(schema.fields), length: 0, nullCount: 0, children }),
+  );
+}
+
+function emptyData(type: DataType): Data {
+  if (!DataType.isList(type)) return makeData({ type });
+  return makeData({
+    type,
+    length: 0,
+    nullCount: 0,
+    valueOffsets: new Int32Array(1),
+    child: emptyData(type.valueType),
+  });
+}
