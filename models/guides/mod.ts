@@ -1,6 +1,13 @@
 // Pure: no I/O, no clock, no hidden randomness.
 // Effective indices and effective areas of guides.
-export { type AreaModel, canonicalProcess, constantAreaModel, processName } from "./area_model.ts";
+export {
+  type AreaModel,
+  type AreaTableRow,
+  canonicalProcess,
+  constantAreaModel,
+  processName,
+  tableAreaModel,
+} from "./area_model.ts";
 export { bulkIndexModel } from "./bulk_index.ts";
 export {
   GEOMETRY_PARAMETERS,
@@ -11,3 +18,5 @@ export {
   mismatch,
   type PolarisationAxes,
 } from "./index_model.ts";
+export { propagationAxis } from "./propagation_axis.ts";
+export { type IndexTableRow, tableIndexModel } from "./table_index.ts";
