@@ -2,3 +2,7 @@
 export * from "./refusal.ts";
 export * from "./straight_line.ts";
 export * from "./cutback.ts";
+export * from "./fringes.ts";
+export * from "./facets.ts";
+export * from "./mode_overlap.ts";
+export * from "./nearest_reading.ts";
