@@ -1,6 +1,7 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { Band, Grating } from "./grating.ts";
 import { type Edges, gatherEdges } from "./_edges.ts";
+import { phasorsInto } from "./_phasor.ts";
 import { TYPE1_ERROR, type1Into } from "./_type1.ts";
 import { integrateInto } from "./spectrum_direct.ts";
 import {
@@ -39,19 +40,25 @@ export function gratingSpectrum(
   // |λ| of the smallest trusted point of the band sets the number of orders.
   let smallest = Infinity;
   for (let k = 0; k < count; k++) {
-    const size = Math.hypot(first + k * step + edges.meanDelta, setting.decay);
+    const size = sizeOfLambda(first + k * step, edges, setting);
     if (size >= least && size < smallest) smallest = size;
   }
   if (smallest < Infinity) sumEdgesInto(edges, band, setting, smallest, re, im);
   const sum = { re: 0, im: 0 };
   for (let k = 0; k < count; k++) {
     const deltaBeta = first + k * step;
-    if (Math.hypot(deltaBeta + edges.meanDelta, setting.decay) >= least) continue;
+    if (sizeOfLambda(deltaBeta, edges, setting) >= least) continue;
     integrateInto(grating, deltaBeta, setting, sum);
     re[k] = sum.re;
     im[k] = sum.im;
   }
   return { first, step, re, im, centre: setting.centre };
+}
+
+/** |Δβ + mean δβ + i·decay|, 1/m. */
+function sizeOfLambda(deltaBeta: number, edges: Edges, setting: SpectrumSetting): number {
+  const a = deltaBeta + edges.meanDelta;
+  return Math.sqrt(a * a + setting.decay * setting.decay);
 }
 
 /** Smallest |Δβ + mean δβ + i·decay| at which both the expansion and the rounding of the transform are harmless. */
@@ -92,11 +99,10 @@ function sumEdgesInto(
   for (let j = 0; j < size; j++) {
     const dz = z[j]! - centre;
     x[j] = step * dz;
-    const phase = middle * dz + theta[j]!;
-    const c = decay === 0 ? weight[j]! : weight[j]! * Math.exp(-decay * z[j]!);
-    cosine[j] = c * Math.cos(phase);
-    sine[j] = c * Math.sin(phase);
+    sine[j] = middle * dz + theta[j]!;
+    cosine[j] = decay === 0 ? weight[j]! : weight[j]! * Math.exp(-decay * z[j]!);
   }
+  phasorsInto(cosine, sine, size, cosine, sine);
   // λ = Δβ + δβ_mean + i·decay, so that iΔβ − decay + iδβ_mean = iλ; ε and slope are taken in units of |λ|, |λ|².
   const ratio = Math.max(edges.largestDelta, Math.sqrt(3 * edges.largestSlope)) / smallest;
   const orders = ratio === 0 ? 1 : Math.max(1, Math.ceil(Math.log(EXPANSION_ERROR) / Math.log(ratio)));

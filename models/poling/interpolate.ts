@@ -1,0 +1,124 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import type { Band } from "./grating.ts";
+import type { GratingSpectrum } from "./spectrum_setting.ts";
+
+/**
+ * Samples per interpolation. ψ contains the phases e^(iΔβ·y), |y| <= L/2, only. At a step of 2π/(8L) the phase turns by
+ * at most π/8 per sample and ten-point Lagrange interpolation in the middle of its points errs by (π/8)¹⁰·872/10! = 2e-8
+ * at most; near the ends of the grid, where the points lie to one side, by 8e-7.
+ */
+const POINTS = 10;
+/** Step of the Δβ grid times the stretched length of the section that interpolation needs: 2π/8. */
+export const LARGEST_STEP = 2 * Math.PI / 8;
+
+/** 1/Π_{j≠i}(i − j). */
+const DENOMINATORS = Float64Array.from({ length: POINTS }, (_, i) => {
+  let product = 1;
+  for (let j = 0; j < POINTS; j++) if (j !== i) product *= i - j;
+  return 1 / product;
+});
+const weights = new Float64Array(POINTS);
+
+/**
+ * A Δβ grid that covers low … high (1/m) with five samples to spare on both sides, fine enough to interpolate the
+ * spectrum of a section of `length` (m, stretched) to 1e-6 of its peak.
+ * @throws RangeError unless low <= high are finite, length > 0 and the grid has at most 2²² points
+ */
+export function bandCovering(low: number, high: number, length: number): Band {
+  const step = LARGEST_STEP / length;
+  const count = Math.ceil((high - low) / step) + POINTS + 1;
+  if (!(low <= high && Number.isFinite(low) && Number.isFinite(high) && length > 0 && count <= 2 ** 22)) {
+    throw new RangeError(
+      `Cannot lay a grid over ${low} … ${high} 1/m for a length of ${length} m: need low <= high, a length > 0 and ` +
+        `at most ${2 ** 22} points`,
+    );
+  }
+  return { first: low - POINTS / 2 * step, step, count };
+}
+
+/** Fills `weights` for Δβ and returns the first sample that they belong to. */
+function weightsAt(s: GratingSpectrum, deltaBeta: number): number {
+  const last = s.re.length - 1;
+  let t = (deltaBeta - s.first) / s.step;
+  if (!(t >= -1e-6 && t <= last + 1e-6) || last < POINTS - 1) {
+    throw new RangeError(
+      `Cannot interpolate the grating spectrum at ${deltaBeta} 1/m: its ${
+        last + 1
+      } samples reach from ${s.first} to ` +
+        `${s.first + last * s.step} 1/m, need a value inside and at least ${POINTS} samples`,
+    );
+  }
+  const base = Math.min(Math.max(Math.floor(t) - (POINTS / 2 - 1), 0), last - (POINTS - 1));
+  t -= base;
+  // Π_{j≠i}(t − j) from products taken from the left and from the right: no division, so exact on a sample too.
+  let left = 1;
+  for (let i = 0; i < POINTS; i++) {
+    weights[i] = left * DENOMINATORS[i]!;
+    left *= t - i;
+  }
+  let right = 1;
+  for (let i = POINTS - 1; i >= 0; i--) {
+    weights[i]! *= right;
+    right *= t - i;
+  }
+  return base;
+}
+
+/**
+ * ψ(Δβ), without the phase of the centre, to 1e-6 of the peak if step·L·scale <= 2π/8.
+ * @throws RangeError outside the band, or if it has fewer than 10 samples
+ */
+export function interpolateSpectrum(s: GratingSpectrum, deltaBeta: number): { re: number; im: number } {
+  const base = weightsAt(s, deltaBeta);
+  let re = 0;
+  let im = 0;
+  for (let i = 0; i < POINTS; i++) {
+    re += weights[i]! * s.re[base + i]!;
+    im += weights[i]! * s.im[base + i]!;
+  }
+  return { re, im };
+}
+
+/** |φ(Δβ)|², by the same interpolation. @throws RangeError outside the band */
+export function spectrumPower(s: GratingSpectrum, deltaBeta: number): number {
+  const base = weightsAt(s, deltaBeta);
+  let re = 0;
+  let im = 0;
+  for (let i = 0; i < POINTS; i++) {
+    re += weights[i]! * s.re[base + i]!;
+    im += weights[i]! * s.im[base + i]!;
+  }
+  return re * re + im * im;
+}
+
+/**
+ * φ(Δβ) = exp(iΔβ·centre)·ψ(Δβ) for many Δβ (1/m, any order) into outRe, outIm, which may be `deltaBeta` itself.
+ * @throws RangeError outside the band, for NaN, or if the arrays differ in length
+ */
+export function interpolateSpectrumInto(
+  s: GratingSpectrum,
+  deltaBeta: Float64Array,
+  outRe: Float64Array,
+  outIm: Float64Array,
+): void {
+  if (outRe.length !== deltaBeta.length || outIm.length !== deltaBeta.length) {
+    throw new RangeError(
+      `Cannot interpolate ${deltaBeta.length} points into arrays of ${outRe.length} and ${outIm.length}: ` +
+        "need equal lengths",
+    );
+  }
+  for (let k = 0; k < deltaBeta.length; k++) {
+    const x = deltaBeta[k]!;
+    const base = weightsAt(s, x);
+    let re = 0;
+    let im = 0;
+    for (let i = 0; i < POINTS; i++) {
+      re += weights[i]! * s.re[base + i]!;
+      im += weights[i]! * s.im[base + i]!;
+    }
+    const c = Math.cos(x * s.centre);
+    const sn = Math.sin(x * s.centre);
+    outRe[k] = c * re - sn * im;
+    outIm[k] = c * im + sn * re;
+  }
+}
