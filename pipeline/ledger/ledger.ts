@@ -1,14 +1,15 @@
 import { resolve } from "node:path";
-import { type RecordBatch, Table } from "apache-arrow";
+import { type RecordBatch, type Schema, Table } from "apache-arrow";
 import config from "../../deno.json" with { type: "json" };
 import { LedgerError } from "../../shared/errors.ts";
-import { activeFilesOf, filterBatch, rowFilterOf, runsInForceOf } from "./active.ts";
+import { activeFilesOf, filterBatch, requestOf, rowFilterOf, runsInForceOf } from "./active.ts";
 import { makeLedger, requireLedger, unmakeLedger } from "./directory.ts";
 import { type Layout, layoutOf } from "./layout.ts";
 import { clearLeftovers } from "./leftovers.ts";
 import { type Lock, takeLock } from "./lock.ts";
 import { stageOriginal } from "./originals.ts";
 import { type CommitStage, startRun } from "./pending_run.ts";
+import { refuseUnknownColumns } from "./parquet_read.ts";
 import { readRuns } from "./runs.ts";
 import { TableStore } from "./table_store.ts";
 import type {
@@ -21,7 +22,6 @@ import type {
   RunToCommit,
   StagedOriginal,
 } from "./types.ts";
-import { requestOf } from "./active.ts";
 
 export interface OpenOptions {
   /** Take the one writer's lock, and make the ledger if there is none. */
@@ -122,6 +122,11 @@ class OpenLedger implements Ledger {
     return await file.read(options);
   }
 
+  async tableSchema(run: string | Manifest, table: string): Promise<Schema> {
+    using file = await this.#tables.openUnverified(await this.#manifest(run), table);
+    return file.schema;
+  }
+
   async *streamTable(
     run: string | Manifest,
     table: string,
@@ -131,38 +136,47 @@ class OpenLedger implements Ledger {
     yield* file.stream(options);
   }
 
+  async *streamInForce(
+    run: string | Manifest,
+    table: string,
+    options: ReadOptions = {},
+  ): AsyncGenerator<RecordBatch> {
+    const manifest = await this.#manifest(run);
+    using file = await this.#tables.open(manifest, table);
+    const all = file.schema.fields.map((field) => String(field.name));
+    refuseUnknownColumns(file.schema, options.columns, `${table} of ${manifest.run}`);
+    const filter = rowFilterOf(manifest, await this.activeFiles(manifest.lot), all);
+    if (filter.none) return;
+    const wanted = all.filter((name) => options.columns?.includes(name) ?? true);
+    // The column that the filter looks at is read as well, and left out again.
+    const columns = filter.all
+      ? wanted
+      : all.filter((name) => wanted.includes(name) || name === filter.column);
+    for await (const batch of file.stream({ ...options, columns })) {
+      for (const slice of filterBatch(batch, filter)) yield slice.select(wanted);
+    }
+  }
+
   async readActive(table: string, lot?: string, options: ReadOptions = {}): Promise<readonly ActiveRows[]> {
     const rows: ActiveRows[] = [];
-    for await (const { run, schema, batches } of this.#activeTables(table, lot, options)) {
-      const kept: RecordBatch[] = [];
-      for await (const batch of batches) kept.push(batch);
-      rows.push({ run, table: new Table(schema, kept) });
+    for (const run of await this.#runsWithRows(table, lot)) {
+      const batches: RecordBatch[] = [];
+      for await (const batch of this.streamInForce(run, table, options)) batches.push(batch);
+      const schema = await this.tableSchema(run, table);
+      rows.push({ run, table: new Table(schema.select([...options.columns ?? schema.names]), batches) });
     }
     return rows;
   }
 
   async *streamActive(table: string, lot?: string, options: ReadOptions = {}): AsyncGenerator<RecordBatch> {
-    for await (const { batches } of this.#activeTables(table, lot, options)) yield* batches;
+    for (const run of await this.#runsWithRows(table, lot)) yield* this.streamInForce(run, table, options);
   }
 
-  /** For each run with rows in force, the table's batches; columns that only the filter needs are left out again. */
-  async *#activeTables(table: string, lot: string | undefined, options: ReadOptions) {
-    const active = await this.activeFiles(lot);
-    for (const run of await this.runsInForce("ingest")) {
-      if (run.tables[table] === undefined || !active.some((file) => file.run === run.run)) continue;
-      using file = await this.#tables.open(run, table);
-      const all = file.schema.fields.map((field) => field.name);
-      const filter = rowFilterOf(run, active, all);
-      const wanted = options.columns ?? all;
-      const columns = filter.all || wanted.includes(filter.column) ? wanted : [...wanted, filter.column];
-      const kept = async function* () {
-        for await (const batch of file.stream({ ...options, columns })) {
-          for (const slice of filterBatch(batch, filter)) yield slice.select(inOrder(wanted, all));
-        }
-      };
-      const schema = file.schema.select(inOrder(wanted, all));
-      yield { run, schema, batches: kept() };
-    }
+  async #runsWithRows(table: string, lot?: string): Promise<Manifest[]> {
+    const active = new Set((await this.activeFiles(lot)).map((file) => file.run));
+    return (await this.runsInForce("ingest")).filter((run) =>
+      active.has(run.run) && run.tables[table] !== undefined
+    );
   }
 
   originalPath(sha256: string): string {
@@ -214,7 +228,3 @@ class OpenLedger implements Ledger {
     return found;
   }
 }
-
-/** The columns of a selection in the order they have in the file, as the decoder gives them. */
-const inOrder = (wanted: readonly string[], all: readonly string[]) =>
-  all.filter((name) => wanted.includes(name));

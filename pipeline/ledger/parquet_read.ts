@@ -29,7 +29,8 @@ export async function openTableFile(path: string): Promise<TableFile> {
     const rows = metadata.fileMetadata().numRows();
     const schema = tableFromIPC(parquet.schema().intoIPCStream()).schema;
     const readGroups = async (groups: readonly number[], columns?: readonly string[]) => {
-      refuseUnknown(path, schema, rowGroups, groups, columns);
+      refuseUnknownColumns(schema, columns, path);
+      refuseUnknownGroups(path, rowGroups, groups);
       const options = {
         batchSize: BATCH_ROWS,
         rowGroups: [...groups],
@@ -81,22 +82,22 @@ function toArrow(table: WasmTable): Table {
   return tableFromIPC(table.intoIPCStream()); // takes the table's memory back
 }
 
-function refuseUnknown(
-  path: string,
+/** @throws RangeError for a column that the schema has not */
+export function refuseUnknownColumns(
   schema: Schema,
-  rowGroups: number,
-  groups: readonly number[],
-  columns?: readonly string[],
+  columns: readonly string[] | undefined,
+  where: string,
 ): void {
-  const known = schema.fields.map((field) => field.name);
+  const known = schema.fields.map((field) => String(field.name));
   const unknown = columns?.find((name) => !known.includes(name));
-  if (unknown !== undefined) {
-    throw new RangeError(`Cannot read column "${unknown}" of ${path}: found columns ${known.join(", ")}`);
-  }
+  if (unknown === undefined) return;
+  throw new RangeError(`Cannot read column "${unknown}" of ${where}: found columns ${known.join(", ")}`);
+}
+
+function refuseUnknownGroups(path: string, rowGroups: number, groups: readonly number[]): void {
   const beyond = groups.find((group) => !Number.isSafeInteger(group) || group < 0 || group >= rowGroups);
-  if (beyond !== undefined) {
-    throw new RangeError(`Cannot read row group ${beyond} of ${path}: found ${rowGroups} of them, from 0`);
-  }
+  if (beyond === undefined) return;
+  throw new RangeError(`Cannot read row group ${beyond} of ${path}: found ${rowGroups} of them, from 0`);
 }
 
 /** A stretch of an open file in the shape of a Blob, which is what the decoder reads from: it asks for the parts it needs. */

@@ -146,8 +146,12 @@ export interface Ledger {
   /** Runs in force of a kind: all of `ingest` (files decide), else the newest per lot and request. */
   runsInForce(kind: RunKind): Promise<readonly Manifest[]>;
   readTable(run: string | Manifest, table: string, options?: ReadOptions): Promise<Table>;
+  /** Columns of a table. */
+  tableSchema(run: string | Manifest, table: string): Promise<Schema>;
   /** Batches of a table, row group by row group. */
   streamTable(run: string | Manifest, table: string, options?: ReadOptions): AsyncIterable<RecordBatch>;
+  /** Batches of an ingest run's table, only the rows that are in force. */
+  streamInForce(run: string | Manifest, table: string, options?: ReadOptions): AsyncIterable<RecordBatch>;
   /** Rows in force of one table over the ingest runs of a lot (or of all), per run that still counts, oldest first. */
   readActive(table: string, lot?: string, options?: ReadOptions): Promise<readonly ActiveRows[]>;
   /** The same rows batch by batch: memory holds one row group at a time. */

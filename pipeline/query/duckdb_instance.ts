@@ -1,3 +1,4 @@
+import { fileURLToPath } from "node:url";
 import * as duckdb from "@duckdb/duckdb-wasm/blocking";
 
 /** The part of the bindings that the engine uses. */
@@ -16,7 +17,7 @@ type Instantiate = (imports: WebAssembly.Imports, receive: Receive) => WebAssemb
  */
 export async function startDuckDb(): Promise<Bindings> {
   const wasm = new URL(import.meta.resolve("@duckdb/duckdb-wasm/dist/duckdb-eh.wasm"));
-  const bundle = { mainModule: wasm.pathname, mainWorker: "" };
+  const bundle = { mainModule: fileURLToPath(wasm), mainWorker: "" };
   const bindings = await duckdb.createDuckDB(
     { mvp: bundle, eh: bundle },
     new duckdb.VoidLogger(),
