@@ -6,3 +6,6 @@ export * from "./fringes.ts";
 export * from "./facets.ts";
 export * from "./mode_overlap.ts";
 export * from "./nearest_reading.ts";
+export * from "./tuning_scan.ts";
+export * from "./effective_length.ts";
+export * from "./mismatch_spread.ts";
