@@ -1,0 +1,261 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import { bandCovering, interpolateSpectrumInto } from "../poling/mod.ts";
+import type { Axis, Segment } from "./axis.ts";
+import { maximiseOverDelay } from "./delay.ts";
+import { type Filter, transmission } from "./filters.ts";
+import { bandwidth } from "./marginals.ts";
+import { absent, given, type Outcome } from "./outcome.ts";
+import { refine } from "./schmidt.ts";
+import { filterShares } from "./shares.ts";
+import {
+  type PairSource,
+  type PairSpectrum,
+  type PreparedSource,
+  prepareSource,
+  signalSide,
+} from "./source.ts";
+import { type ArmWindow, type Band, NOT_SEPARABLE } from "./window.ts";
+
+const POINTS = 512;
+const LIMIT = 8192;
+/** Why a continuous pump has no purity. */
+export const NO_PURITY = "not a figure of a continuous-wave pump";
+
+interface Line {
+  /** Signal axis of which each point stands for the pair (ω, ω_p − ω). */
+  readonly axis: Axis;
+  /** √(PΓ²L²·cell/2π)·φ */
+  readonly re: Float64Array;
+  readonly im: Float64Array;
+  readonly powerI: Float64Array;
+}
+
+interface LineResult {
+  readonly total: number;
+  readonly stated: number;
+  readonly signal: number;
+  readonly idler: number;
+  readonly both: number;
+  readonly line: Line;
+  readonly spectrum: Float64Array;
+}
+
+/**
+ * Everything that the spectrum decides for a continuous pump, on the line ω_i = ω_p − ω_s: rate = PΓ²L²∫|φ|²dω_s/2π in
+ * the stated windows, filter shares, bandwidths, exchange overlap. No purity is claimed.
+ * @throws RangeError for a pulsed pump, or a source that cannot be one
+ */
+export function continuousSpectrum(source: PairSource): PairSpectrum {
+  if (source.pump.kind !== "continuous") throw new RangeError("Cannot take the line of a pulsed pump");
+  const prepared = prepareSource(source);
+  const { windowS, windowI, separable } = prepared;
+  const { points = POINTS, limit = LIMIT, compare = true } = source.grid ?? {};
+  const compute = (n: number) => computeLine(prepared, n);
+  const refined = compare
+    ? refine(compute, (a, b) => b.stated > 0 ? Math.abs(a.stated / b.stated - 1) : 0, points, limit)
+    : { result: compute(points), points, change: NaN, converged: null };
+  const { result } = refined;
+  const idlerSide = mirrored(result.line.axis, source.omegaP);
+  const why = separable ? windowS.cut ?? windowI.cut : NOT_SEPARABLE;
+  const exchange = why === null ? exchangeOnLine(prepared, refined.points) : null;
+  return {
+    made: result.stated,
+    madeOpen: result.total,
+    separable,
+    shares: separable ? filterShares(result) : null,
+    purity: absent(NO_PURITY),
+    correlation: null,
+    exchange: exchange === null ? absent(why!) : exchange.value,
+    exchangeDelay: exchange === null ? null : exchange.delay,
+    windowS,
+    windowI,
+    bandwidthS: lineWidth(prepared, result.line.axis, result.spectrum),
+    bandwidthI: lineWidth(prepared, idlerSide, result.spectrum.toReversed()),
+    grid: { points: refined.points, change: refined.change, converged: refined.converged },
+  };
+}
+
+/** With ω_i = ω_p − ω_s a filter in either arm ends both spectra. */
+const lineWidth = ({ windowS, windowI }: PreparedSource, axis: Axis, spectrum: Float64Array): Outcome =>
+  axis.omega.length === 0
+    ? absent("the windows hold no pair that conserves energy")
+    : bandwidth(axis, spectrum, windowS.filtered || windowI.filtered);
+
+function computeLine(prepared: PreparedSource, points: number): LineResult {
+  const { source, separable } = prepared;
+  const line = lineOn(prepared, lineAxis(prepared, points));
+  const { axis, re, im, powerI } = line;
+  const side = signalSide(source);
+  const spectrum = new Float64Array(axis.omega.length);
+  let total = 0, stated = 0, signal = 0, idler = 0, both = 0;
+  for (const segment of axis.segments) {
+    const middle = (segment.from + segment.to) / 2;
+    const counts = segment.stated && (separable || (middle > side[0] && middle < side[1]));
+    for (let j = segment.first; j < segment.first + segment.count; j++) {
+      const square = re[j]! ** 2 + im[j]! ** 2;
+      const passed = square * axis.power[j]! * powerI[j]!;
+      total += square;
+      if (counts) stated += square;
+      signal += square * axis.power[j]!;
+      idler += square * powerI[j]!;
+      both += passed;
+      spectrum[j] = passed / axis.weight[j]!;
+    }
+  }
+  return { total, stated, signal, idler, both, line, spectrum };
+}
+
+/** Signal axis cut where either arm's windows end; `stated` where both arms are in theirs. */
+function lineAxis(prepared: PreparedSource, points: number): Axis {
+  const { source, windowS, windowI, separable } = prepared;
+  const { omegaP, samePolarisation } = source;
+  const mirror = ([a, b]: Band): Band => [omegaP - b, omegaP - a];
+  const open = intersect(windowS.open, mirror(windowI.open));
+  const stated = intersect(windowS.stated, mirror(windowI.stated));
+  let [lo, hi] = open;
+  if (samePolarisation && separable) {
+    // each pair once: the signal on its own side of ω_p/2, unless its stated window reaches over
+    const side = signalSide(source);
+    lo = Math.max(lo, Math.min(side[0], windowS.stated[0]));
+    hi = Math.min(hi, Math.max(side[1], windowS.stated[1]));
+  }
+  if (!(hi > lo)) return emptyAxis;
+  const breaks = [
+    ...windowS.stated,
+    ...mirror(windowI.stated),
+    lo,
+    hi,
+    ...(samePolarisation ? [omegaP / 2] : []),
+  ];
+  const edges = [...new Set(breaks)].filter((e) => e >= lo && e <= hi).sort((a, b) => a - b);
+  const segments: Segment[] = [];
+  let first = 0;
+  for (let k = 1; k < edges.length; k++) {
+    const from = edges[k - 1]!;
+    const to = edges[k]!;
+    const inside = stated[1] > stated[0] && from >= stated[0] && to <= stated[1];
+    const width = inside ? stated[1] - stated[0] : hi - lo;
+    const count = Math.max(1, Math.ceil(points * (to - from) / width - 1e-9));
+    segments.push({ from, to, first, count, stated: inside });
+    first += count;
+  }
+  const omega = new Float64Array(first);
+  const weight = new Float64Array(first);
+  const power = new Float64Array(first);
+  for (const { from, to, first, count } of segments) {
+    const step = (to - from) / count;
+    for (let j = 0; j < count; j++) {
+      omega[first + j] = from + (j + 0.5) * step;
+      weight[first + j] = step;
+      power[first + j] = passes(windowS, source.filters?.signal, omega[first + j]!);
+    }
+  }
+  return { omega, weight, power, segments };
+}
+
+const emptyAxis: Axis = {
+  omega: new Float64Array(0),
+  weight: new Float64Array(0),
+  power: new Float64Array(0),
+  segments: [],
+};
+
+const intersect = (a: Band, b: Band): Band => [Math.max(a[0], b[0]), Math.min(a[1], b[1])];
+
+/** Transmission inside the stated window, 0 outside it. */
+function passes({ stated }: ArmWindow, filter: Filter | undefined, omega: number): number {
+  if (omega < stated[0] || omega > stated[1]) return 0;
+  return filter === undefined ? 1 : transmission(filter, omega);
+}
+
+function lineOn({ source, k, windowI, gain }: PreparedSource, axis: Axis): Line {
+  const n = axis.omega.length;
+  const re = new Float64Array(n);
+  const im = new Float64Array(n);
+  const powerI = new Float64Array(n);
+  if (n === 0) return { axis, re, im, powerI };
+  const delta = new Float64Array(n);
+  for (let j = 0; j < n; j++) {
+    const partner = source.omegaP - axis.omega[j]!;
+    delta[j] = k.mismatch - k.signal.at(axis.omega[j]!) - k.idler.at(partner);
+    powerI[j] = passes(windowI, source.filters?.idler, partner);
+  }
+  const band = bandCovering(
+    delta.reduce((a, b) => Math.min(a, b)),
+    delta.reduce((a, b) => Math.max(a, b)),
+    source.length,
+  );
+  interpolateSpectrumInto(source.spectrum(band), delta, re, im);
+  for (let j = 0; j < n; j++) {
+    const size = Math.sqrt(source.pump.averagePower * gain * axis.weight[j]! / (2 * Math.PI));
+    re[j]! *= size;
+    im[j]! *= size;
+  }
+  return { axis, re, im, powerI };
+}
+
+/** The same axis seen from the idler: ascending in ω_p − ω. */
+function mirrored(axis: Axis, omegaP: number): Axis {
+  const total = axis.omega.length;
+  return {
+    omega: axis.omega.toReversed().map((w) => omegaP - w),
+    weight: axis.weight.toReversed(),
+    power: axis.power.toReversed(),
+    segments: axis.segments.toReversed().map(({ from, to, first, count, stated }) => ({
+      from: omegaP - to,
+      to: omegaP - from,
+      first: total - first - count,
+      count,
+      stated,
+    })),
+  };
+}
+
+/** max over τ of |∫C(ν)C*(−ν)e^{2iντ}dν|/∫|C|², ω_s = ω_p/2 + ν, on a grid that is its own mirror image. */
+function exchangeOnLine(prepared: PreparedSource, points: number): { value: Outcome; delay: number | null } {
+  const { source, windowS, windowI } = prepared;
+  const { omegaP } = source;
+  const stated = intersect(windowS.stated, [omegaP - windowI.stated[1], omegaP - windowI.stated[0]]);
+  if (!(stated[1] > stated[0])) return { value: absent("no pair passes the filters"), delay: null };
+  const [lo, hi] = [stated[0] - omegaP / 2, stated[1] - omegaP / 2];
+  if (hi <= 0 || lo >= 0) return { value: given(0), delay: 0 };
+  const half = Math.max(-lo, hi);
+  const n = Math.ceil(points * 2 * half / (hi - lo));
+  const step = 2 * half / n;
+  // only the points inside the window are computed: the curves need not reach to its mirror image
+  const inside = Array.from({ length: n }, (_, j) => omegaP / 2 - half + (j + 0.5) * step)
+    .map((w, j) => ({ w, j })).filter(({ w }) => w > stated[0] && w < stated[1]);
+  const omega = Float64Array.from(inside, (x) => x.w);
+  const axis: Axis = {
+    omega,
+    weight: new Float64Array(omega.length).fill(step),
+    power: omega.map((w) => passes(windowS, source.filters?.signal, w)),
+    segments: [],
+  };
+  const line = lineOn(prepared, axis);
+  const re = new Float64Array(n);
+  const im = new Float64Array(n);
+  let norm = 0;
+  inside.forEach(({ j }, q) => {
+    const t = Math.sqrt(axis.power[q]! * line.powerI[q]!);
+    re[j] = t * line.re[q]!;
+    im[j] = t * line.im[q]!;
+    norm += re[j]! ** 2 + im[j]! ** 2;
+  });
+  if (!(norm > 0)) return { value: absent("no pair passes the filters"), delay: null };
+  const swapped = exchangeLine(re, im);
+  const { value, delay } = maximiseOverDelay(swapped.re, swapped.im, 2 * step);
+  return { value: given(value / norm, "exchange overlap"), delay };
+}
+
+/** C(ν)·C*(−ν) point by point. */
+function exchangeLine(re: Float64Array, im: Float64Array): { re: Float64Array; im: Float64Array } {
+  const n = re.length;
+  const out = { re: new Float64Array(n), im: new Float64Array(n) };
+  for (let j = 0; j < n; j++) {
+    const q = n - 1 - j;
+    out.re[j] = re[j]! * re[q]! + im[j]! * im[q]!;
+    out.im[j] = im[j]! * re[q]! - re[j]! * im[q]!;
+  }
+  return out;
+}
