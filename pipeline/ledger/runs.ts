@@ -1,13 +1,16 @@
 import { join } from "node:path";
 import { LedgerError } from "../../shared/errors.ts";
 import { namesIn } from "./disk.ts";
-import { type Layout, MANIFEST_FILE, PENDING_PREFIX } from "./layout.ts";
+import { type Layout, MANIFEST_FILE } from "./layout.ts";
 import { decodeManifest } from "./manifest.ts";
 import type { Manifest } from "./types.ts";
 
-/** Names of the run folders, oldest first; a hidden folder is a run that was never finished. */
+/**
+ * Names of the run folders, oldest first. A hidden folder is a run that was never finished; other names (a file browser's,
+ * say) are none of ours. A run folder that was renamed leaves a gap in the numbers.
+ */
 export async function runFolders(layout: Layout): Promise<string[]> {
-  const names = (await namesIn(layout.runs)).filter((name) => !name.startsWith(PENDING_PREFIX));
+  const names = (await namesIn(layout.runs)).filter((name) => /^\d{6,}-/.test(name));
   return names.sort((a, b) => Number.parseInt(a) - Number.parseInt(b) || (a < b ? -1 : 1));
 }
 

@@ -26,7 +26,8 @@ export async function runSql(ledger: Ledger, text: string, options: LoadOptions 
   using engine = await startEngine();
   await loadNamed(engine, ledger, tokens, options);
   try {
-    return engine.query(text);
+    const result = engine.query(text);
+    return firstWord(tokens) === "explain" ? planLines(result) : result;
   } catch (error) {
     throw new InputError(`Cannot run the query: ${explained(error, names)}`, { value: text }, {
       cause: error,
@@ -117,6 +118,12 @@ function viewsFor(
   };
   for (const name of wanted) visit(name, []);
   return [...made].map(([name, sql]) => ({ name, sql }));
+}
+
+/** A plan is a drawing in one cell: one row per line prints as it was drawn. */
+function planLines({ rows }: QueryResult): QueryResult {
+  const lines = rows.flatMap((row) => String(row.at(-1)).trimEnd().split("\n"));
+  return { columns: [{ name: "plan", type: "Utf8" }], rows: lines.map((line) => [line]) };
 }
 
 /** The engine's own words, with the nearest of all tables where it knows only the loaded ones. */
