@@ -21,7 +21,8 @@ const GAP = "  ";
 const LEAST = 6;
 
 /** Columns that a text takes; plain ASCII, nearly all of it, need not be looked at letter by letter. */
-const widthOf = (text: string): number => /^[\x20-\x7e]*$/.test(text) ? text.length : stringWidth(text);
+const isPlain = (text: string): boolean => /^[\x20-\x7e]*$/.test(text);
+const widthOf = (text: string): number => isPlain(text) ? text.length : stringWidth(text);
 
 interface Measure {
   /** Width at which nothing is cut. */
@@ -102,6 +103,7 @@ function pad(text: string, width: number, right: boolean): string {
 /** Cuts by what the eye sees: a character may be two columns wide, or join the one before it. */
 function cut(text: string, width: number): string {
   if (widthOf(text) <= width) return text;
+  if (isPlain(text)) return text.slice(0, width - 1) + "…";
   let kept = "";
   for (const { segment } of segments.segment(text)) {
     if (widthOf(kept + segment) > width - 1) break;
