@@ -1,3 +1,14 @@
 // Pure: no I/O, no clock, no hidden randomness.
 export * from "./conformity.ts";
 export * from "./draws.ts";
+export * from "./figure_basis.ts";
+export * from "./guide_inputs.ts";
+export { type OperatingPoint, operatingPoints, type OperatingQuestion } from "./operating_point.ts";
+export type { RecordedSpectrum } from "./pair_prediction.ts";
+export { type PlatformModel, platformModel, validTemperatures } from "./platform_model.ts";
+export {
+  type GuidePrediction,
+  type PredictedFigure,
+  predictGuide,
+  type PredictOptions,
+} from "./predict_guide.ts";

@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import { type AreaModel, type IndexModel, processName } from "../guides/mod.ts";
-import { type CrystalAxis, expansionFactor, type Material, millerScaled } from "../materials/mod.ts";
+import { type AreaModel, type IndexModel, processName, propagationAxis } from "../guides/mod.ts";
+import { expansionFactor, type Material, millerScaled } from "../materials/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import type { GuideGeometry, ThreeWaves } from "../../shared/vocabulary.ts";
 import { nm } from "../../shared/units.ts";
@@ -20,17 +20,6 @@ export interface PlatformModel {
   nonlinear(waves: ThreeWaves): number | { readonly reason: string };
   /** n_o outside the facets. */
   readonly outsideIndex: number;
-}
-
-/** The crystal axis along which the guide runs: the one that neither polarisation sees. */
-export function propagationAxis(material: Material, axes: { TE: CrystalAxis; TM: CrystalAxis }): CrystalAxis {
-  const seen = new Set([axes.TE, axes.TM]);
-  if (material === "KTP") {
-    return (["x", "y", "z"] as const).find((a) => !seen.has(a)) ?? "x";
-  }
-  // Lithium niobate expands alike along x and y: only a guide along c, which sees two ordinary axes, is different.
-  const ordinary = (a: CrystalAxis) => a !== "z" && a !== "e";
-  return ordinary(axes.TE) && ordinary(axes.TM) ? "z" : "x";
 }
 
 /** Joins a platform file with its index and area models. @throws RangeError for axes that the material does not have */

@@ -55,6 +55,12 @@ export const platformSchema = z.strictObject({
       from: z.literal("table"),
       n_eff: z.string().min(1),
       effective_area: z.string().min(1).optional(),
+      /** Geometry of a guide that does not state its own. */
+      nominal: z.strictObject({
+        film_thickness_nm: z.number().positive().optional(),
+        etch_depth_nm: z.number().positive().optional(),
+        titanium_nm: z.number().positive().optional(),
+      }).optional(),
       provenance: z.string().min(1).optional(),
     }),
   ]),

@@ -1,0 +1,74 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import {
+  type Grating,
+  gratingFromWalls,
+  missingFraction,
+  type PoledSection,
+  type PolingWindow as WindowStatistics,
+  realiseGrating,
+  type Stretch,
+  unpoledGaps,
+} from "../poling/mod.ts";
+import { poledStretches } from "../pairs/mod.ts";
+import { randomFrom } from "../../shared/random.ts";
+import type { GuideInputs, PolingWindow } from "./guide_inputs.ts";
+
+/** Poling numbers of one draw, for a guide whose grating is known by duty, spread and missing share only. */
+export interface PolingDraw {
+  readonly duty: number;
+  readonly dutySd: number;
+  readonly merged: number;
+}
+
+/** The section of a guide that was meant to be poled. */
+export const sectionOf = (guide: GuideInputs): PoledSection => ({
+  poledFrom: guide.poledFrom,
+  poledLength: guide.poledLength,
+  period: guide.period,
+  guideLength: guide.length,
+});
+
+/** The grating as inspected, or null when it is known by its statistics only. */
+export function inspectedGrating(guide: GuideInputs): Grating | null {
+  return guide.poling.from === "walls" ? gratingFromWalls(guide.poling.walls, sectionOf(guide)) : null;
+}
+
+/** One grating with a guide's poling statistics: draw `index` of its own seeded stream. */
+export function drawGrating(guide: GuideInputs, draw: PolingDraw, index: number): Grating {
+  const random = randomFrom(`${guide.id}|grating|${index}`);
+  const at = { start: guide.poledFrom, length: guide.poledLength, period: guide.period };
+  const { poling } = guide;
+  if (poling.from === "windows") {
+    return realiseGrating({ ...at, windows: windowStatistics(poling.windows) }, random);
+  }
+  return realiseGrating({ ...at, duty: draw.duty, dutySd: draw.dutySd, missing: draw.merged }, random);
+}
+
+/** Windows as statistics at their middles, ascending; windows with one middle (repeats) are averaged by their domains. */
+export function windowStatistics(windows: readonly PolingWindow[]): WindowStatistics[] {
+  const byCentre = new Map<number, PolingWindow[]>();
+  for (const w of windows) {
+    const centre = w.from + w.length / 2;
+    byCentre.set(centre, [...byCentre.get(centre) ?? [], w]);
+  }
+  return [...byCentre].sort(([a], [b]) => a - b).map(([centre, repeats]) => {
+    const domains = repeats.reduce((sum, w) => sum + w.domains, 0);
+    const average = (f: (w: PolingWindow) => number) =>
+      domains === 0
+        ? repeats.reduce((sum, w) => sum + f(w), 0) / repeats.length
+        : repeats.reduce((sum, w) => sum + f(w) * w.domains, 0) / domains;
+    return {
+      centre,
+      duty: average((w) => w.dutyMean),
+      dutySd: average((w) => w.dutySd),
+      missing: missingFraction(domains, repeats.reduce((sum, w) => sum + w.merged, 0)),
+    };
+  });
+}
+
+/** Where pairs are made: the poled section, less stretches without domains over three periods where walls tell. */
+export function convertingStretches(guide: GuideInputs, walls: Grating | null): Stretch[] {
+  const from = walls?.start ?? guide.poledFrom;
+  const to = walls?.end ?? guide.poledFrom + guide.poledLength;
+  return poledStretches(from, to, walls === null ? [] : unpoledGaps(walls, guide.period));
+}

@@ -1,0 +1,64 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import type { Basis, GuideGeometry, Uncertain } from "../../shared/vocabulary.ts";
+
+/** A trait as a guide's prediction uses it. */
+export interface UsedTrait extends Uncertain {
+  readonly basis: Basis;
+  /** Traits with one key share their draws: one reading that feeds two figures must not count as two. */
+  readonly key: string;
+}
+
+/** What is known of one facet for one arm. */
+export type FacetTrait =
+  /** No coating: Fresnel reflection of the effective index. */
+  | { readonly state: "bare"; readonly basis: Basis }
+  /** Coated: reflectivity at the arm's wavelength. */
+  | { readonly state: "coated"; readonly reflectivity: UsedTrait };
+
+/** One arm's traits at its wavelength and polarisation. Loss in dB/cm, mode-field diameters in µm at that wavelength. */
+export interface ArmTraits {
+  readonly loss: UsedTrait;
+  /** Null: no mode size is known, with the reason. */
+  readonly mode: { readonly x: UsedTrait; readonly y: UsedTrait } | { readonly reason: string };
+  readonly facet: FacetTrait;
+}
+
+/** A poling window: what was seen between two positions (m from the input facet, 25 °C). */
+export interface PolingWindow {
+  readonly from: number;
+  readonly length: number;
+  readonly domains: number;
+  readonly dutyMean: number;
+  readonly dutySd: number;
+  readonly merged: number;
+}
+
+/** What is known of a guide's grating, strongest first. */
+export type PolingTraits =
+  /** The complete list of domain walls, m from the input facet, ascending. */
+  | { readonly from: "walls"; readonly walls: Float64Array; readonly basis: Basis }
+  /** Inspected windows of this guide (measured) or of its die. */
+  | { readonly from: "windows"; readonly windows: readonly PolingWindow[]; readonly basis: Basis }
+  /** Pooled or default duty cycle, its spread, and the share of inverted domains that are missing. */
+  | {
+    readonly from: "duty";
+    readonly duty: UsedTrait;
+    readonly dutySd: UsedTrait;
+    readonly merged: UsedTrait;
+  };
+
+/** Everything that a prediction of one guide rests on; lengths in m at 25 °C. */
+export interface GuideInputs {
+  readonly id: string;
+  readonly geometry: GuideGeometry;
+  readonly length: number;
+  readonly period: number;
+  readonly poledFrom: number;
+  readonly poledLength: number;
+  readonly pumpLoss: UsedTrait;
+  readonly signal: ArmTraits;
+  readonly idler: ArmTraits;
+  readonly poling: PolingTraits;
+  /** Offset of Δβ (1/m, at the temperature of operation) that a tuning scan of this process found, or null. */
+  readonly offset: UsedTrait | null;
+}

@@ -1,0 +1,245 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import { absent, given, type PairFigure, type PairScratch } from "../pairs/mod.ts";
+import type { Grating } from "../poling/mod.ts";
+import type { CheckedRequest } from "../../shared/schemas/request.ts";
+import { type Figure, figureAbsence, FIGURES } from "../../shared/schemas/figures.ts";
+import { nm, toDbPerCm, toNm } from "../../shared/units.ts";
+import type { Basis } from "../../shared/vocabulary.ts";
+import { conformity, decide, type Decision, meets, summarise } from "./conformity.ts";
+import { type ConversionFigure, predictConversion } from "./conversion_prediction.ts";
+import { DRAWS, SPECTRAL_DRAWS } from "./draws.ts";
+import { type DrawnTraits, drawTraits } from "./drawn_traits.ts";
+import { FigureDraws } from "./figure_draws.ts";
+import { basisOf } from "./figure_basis.ts";
+import { drawGrating, inspectedGrating } from "./grating_draws.ts";
+import type { GuideInputs } from "./guide_inputs.ts";
+import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
+import { type PairNotes, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
+import type { PlatformModel } from "./platform_model.ts";
+import { type Site, siteAt } from "./site.ts";
+
+/** One figure of one guide. Without a value: the reason. Units are in the figure's name. */
+export interface PredictedFigure {
+  readonly figure: Figure;
+  readonly mean: number | null;
+  readonly u: number | null;
+  readonly lo: number | null;
+  readonly hi: number | null;
+  /** Probability that the requirement on this figure is met; null without one. */
+  readonly probability: number | null;
+  readonly basis: Basis;
+  readonly reason: string | null;
+}
+
+export interface GuidePrediction {
+  /** Every figure of the request's process, in the order of output. */
+  readonly figures: readonly PredictedFigure[];
+  /** Share of draws with an operating point that meet every requirement. */
+  readonly probability: number;
+  readonly decision: Decision;
+  /** The requirement least often met, or `operating_temperature_c` when even the operating point is met less often. */
+  readonly limitedBy: Figure | null;
+  /** Share of draws that have an operating point. */
+  readonly matched: number;
+  /** Further temperatures that match, °C. */
+  readonly otherTemperatures: readonly number[];
+  readonly pairs: PairNotes | null;
+  readonly remarks: readonly string[];
+}
+
+export interface PredictOptions {
+  readonly recorded: RecordedSpectrum | null;
+  readonly scratch?: PairScratch;
+}
+
+type Draws = FigureDraws<Figure>;
+
+/**
+ * All figures of one guide for one request, by seeded sampling (JCGM 101:2008): {@link DRAWS} draws of every trait for
+ * budgets, temperatures and efficiencies, {@link SPECTRAL_DRAWS} of them with spectra of their own. The same inputs give
+ * the same answer to the bit.
+ */
+export function predictGuide(
+  model: PlatformModel,
+  checked: CheckedRequest,
+  guide: GuideInputs,
+  options: PredictOptions,
+): GuidePrediction {
+  const drawn = drawTraits(guide);
+  const out: Draws = new FigureDraws();
+  const loss = (name: Figure, alpha: Float64Array) =>
+    alpha.forEach((a, k) => out.set(name, k, given(toDbPerCm(a))));
+  loss("loss_db_cm_signal", drawn.lossS);
+  loss("loss_db_cm_idler", drawn.lossI);
+  const walls = inspectedGrating(guide);
+  const points = guide.poledLength > 0
+    ? operatingPoints(model, question(checked, guide, walls))
+    : { reason: "the guide is not poled" };
+  if ("reason" in points) return nowhere(checked, guide, out, points.reason);
+  const nominal = points.at(guide.offset?.value ?? 0);
+  const exists = drawPoints(points, drawn, nominal, out, checked);
+  const site = siteAt(
+    model,
+    guide,
+    checked.processKey,
+    nominal.waves,
+    nominal.temperatureC,
+    guide.offset?.value ?? 0,
+  );
+  if ("reason" in site) return nowhere(checked, guide, out, site.reason);
+  const pairs = predictSite(site, checked, guide, drawn, walls, exists, out, options);
+  const remarks = [...pairs?.remarks ?? [], ...indexRemarks(model, site)];
+  return conclude(checked, guide, out, exists, nominal, pairs, remarks);
+}
+
+function question(checked: CheckedRequest, guide: GuideInputs, walls: Grating | null) {
+  const { request, waves } = checked;
+  const tunable = request.pump?.tunable_nm;
+  return {
+    waves,
+    oven: request.oven_c,
+    tunable: tunable === undefined ? null : [nm(tunable[0]), nm(tunable[1])] as const,
+    geometry: guide.geometry,
+    period: guide.period,
+    poledLength: guide.poledLength,
+    walls,
+  };
+}
+
+const unmatchedReason = ({ request }: CheckedRequest): string =>
+  `no phase matching within the oven's ${request.oven_c[0]}–${request.oven_c[1]} °C` +
+  (request.pump?.tunable_nm === undefined
+    ? ""
+    : `, nor with the pump tuned over ${request.pump.tunable_nm.join("–")} nm`);
+
+/** Every draw re-tunes the oven. Without any root the nearest temperature is reported, and the draw does not exist. */
+function drawPoints(
+  points: OperatingPoints,
+  drawn: DrawnTraits,
+  nominal: OperatingPoint,
+  out: Draws,
+  checked: CheckedRequest,
+): Uint8Array {
+  const exists = new Uint8Array(DRAWS);
+  const reason = unmatchedReason(checked);
+  const certain = drawn.offset.every((x) => x === drawn.offset[0]);
+  for (let k = 0; k < DRAWS; k++) {
+    const here = certain ? nominal : points.at(drawn.offset[k]!);
+    exists[k] = here.matched ? 1 : 0;
+    out.set("operating_temperature_c", k, given(here.temperatureC));
+    out.set("operating_pump_nm", k, here.matched ? given(toNm(here.waves.lambdaP)) : absent(reason));
+  }
+  return exists;
+}
+
+function predictSite(
+  site: Site,
+  checked: CheckedRequest,
+  guide: GuideInputs,
+  drawn: DrawnTraits,
+  walls: Grating | null,
+  exists: Uint8Array,
+  out: Draws,
+  options: PredictOptions,
+): PairNotes | null {
+  const unmatched = unmatchedReason(checked);
+  const anywhere = exists.some((x) => x === 1);
+  const gratings = walls !== null
+    ? [walls]
+    : Array.from({ length: anywhere ? SPECTRAL_DRAWS : 1 }, (_, k) =>
+      drawGrating(guide, { duty: drawn.duty[k]!, dutySd: drawn.dutySd[k]!, merged: drawn.merged[k]! }, k));
+  predictConversion(
+    { site, checked, drawn, gratings, exists, unmatched },
+    out as FigureDraws<ConversionFigure>,
+  );
+  if (checked.request.process !== "pair-generation") return null;
+  const limit = checked.requirements.find((r) => r.figure === "g2_heralded")?.atMost;
+  return predictPairs(
+    {
+      site,
+      checked,
+      recorded: options.recorded,
+      drawn,
+      grating: (k) => gratings[k % gratings.length]!,
+      walls,
+      exists,
+      unmatched,
+      g2Limit: limit === undefined || limit === Infinity ? undefined : limit,
+    },
+    out as FigureDraws<PairFigure>,
+    options.scratch,
+  );
+}
+
+function indexRemarks(model: PlatformModel, { waves, temperatureC }: Site): string[] {
+  const found = [
+    model.index.remark(waves.polP, waves.lambdaP, temperatureC),
+    model.index.remark(waves.polS, waves.lambdaS, temperatureC),
+    model.index.remark(waves.polI, waves.lambdaI, temperatureC),
+  ];
+  return [...new Set(found.filter((r) => r !== null))];
+}
+
+/** A guide for which the process is not defined: nothing but its losses is known. */
+function nowhere(checked: CheckedRequest, guide: GuideInputs, out: Draws, reason: string): GuidePrediction {
+  for (const figure of FIGURES) {
+    if (out.names().includes(figure)) continue;
+    if (figureAbsence(figure, checked.request.process, checked.pulsed) === null) {
+      out.fill(figure, absent(reason));
+    }
+  }
+  return conclude(checked, guide, out, new Uint8Array(DRAWS), null, null, []);
+}
+
+function conclude(
+  checked: CheckedRequest,
+  guide: GuideInputs,
+  out: Draws,
+  exists: Uint8Array,
+  nominal: OperatingPoint | null,
+  pairs: PairNotes | null,
+  remarks: readonly string[],
+): GuidePrediction {
+  const { request, requirements } = checked;
+  const met = requirements.map((r) => meets(out.of(r.figure), r));
+  const { joint, each, limiting } = conformity(met, exists);
+  const matched = exists.reduce((sum, x) => sum + x, 0) / DRAWS;
+  const weakest = limiting === null ? 1 : each[limiting]!;
+  const limitedBy = matched < weakest
+    ? "operating_temperature_c"
+    : limiting === null
+    ? null
+    : requirements[limiting]!.figure;
+  const figures = FIGURES
+    .filter((figure) => figureAbsence(figure, request.process, checked.pulsed) === null)
+    .map((figure): PredictedFigure => {
+      const summary = summarise(out.of(figure));
+      // Two limits on one figure are two requirements: the probability shown is of both.
+      const own = met.filter((_, i) => requirements[i]!.figure === figure);
+      const reason = out.reason(figure);
+      const absentIn = summary === null || summary.valid === DRAWS
+        ? null
+        : `${reason} (in ${DRAWS - summary.valid} of ${DRAWS} draws)`;
+      return {
+        figure,
+        mean: summary?.mean ?? null,
+        u: summary?.u ?? null,
+        lo: summary?.lo ?? null,
+        hi: summary?.hi ?? null,
+        probability: own.length === 0 ? null : conformity(own, new Uint8Array(DRAWS).fill(1)).joint,
+        basis: basisOf(figure, guide),
+        reason: summary === null ? reason ?? "not computed" : absentIn,
+      };
+    });
+  const { accept_at: acceptAt, reject_below: rejectBelow } = request.decide;
+  return {
+    figures,
+    probability: joint,
+    decision: decide(joint, { acceptAt, rejectBelow }),
+    limitedBy,
+    matched,
+    otherTemperatures: nominal?.others ?? [],
+    pairs,
+    remarks,
+  };
+}
