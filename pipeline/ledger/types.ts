@@ -167,4 +167,3 @@ export interface Ledger {
 //   source_file  text  sha256 of the file
 //   source_line  i32   line in the file, the heading is line 1 (1 for rows out of a JSON file)
 //   file_name    text  the file's `name` among the run's inputs; two files may have the same content
-// `walls` has one row per guide and file: guide_id text, position_um f64[], source_line i32[] (of equal length).
