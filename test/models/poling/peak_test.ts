@@ -86,6 +86,23 @@ Deno.test("peakTemperatures() counts a peak that u just touches once", () => {
   assertClose(roots[0]!, 55, { abs: 1e-2 });
 });
 
+Deno.test("peakTemperatures() does not take a turning point at which the power is least", () => {
+  // u comes down the slope, turns back 120 1/m below the top, and leaves the range before it is up again.
+  const found = operate(ideal, (t) => vector - 120 + 40 * (t - 55) ** 2, [54, 56.5]);
+  deepStrictEqual(found.roots, []);
+  assertClose(found.nearest, 56.5, { abs: 1e-9 });
+});
+
+Deno.test("a peak exactly at an edge of the range is no answer", () => {
+  const s = gratingSpectrum(ideal, bandForPeak(vector - 10_000, vector + 10_000, period, length));
+  const top = mainPeaks(s)[0]!.deltaBeta;
+  for (const edge of oven) {
+    const found = peakTemperatures(s, (t) => top + 90 * (t - edge), oven);
+    deepStrictEqual(found.roots, []);
+    strictEqual(found.nearest, edge);
+  }
+});
+
 Deno.test("side lobes of a peak beyond the oven are no answer; the nearest edge is named", () => {
   for (const sign of [1, -1]) {
     // The peak lies 0.5 °C, 5 °C (on the first side lobes) and 60 °C beyond an edge.
