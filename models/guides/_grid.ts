@@ -2,7 +2,7 @@
 // Scattered table rows → a full rectangular grid, or an error that names the node that is missing.
 import type { GuideGeometry } from "../../shared/vocabulary.ts";
 import { hermiteWeights, insideAxis } from "./_node_axis.ts";
-import { GEOMETRY_PARAMETERS, type GeometryParameter } from "./index_model.ts";
+import { GEOMETRY_PARAMETERS, type GeometryParameter, type NominalGeometry } from "./index_model.ts";
 
 /** A full grid. `values` is row-major over the axes in their order: the last axis runs fastest. */
 export interface Grid {
@@ -93,7 +93,7 @@ export function geometryCorners(
   parameters: readonly GeometryParameter[],
   axes: readonly Float64Array[],
   geometry: GuideGeometry,
-  nominal: Partial<GuideGeometry>,
+  nominal: NominalGeometry,
   along: GeometryParameter | null,
 ): Corners {
   let offsets = [0];

@@ -5,19 +5,20 @@ import { Matrix, solve } from "ml-matrix";
 /** A value that differs from the end of an axis by rounding only still belongs to it. */
 const ROUNDING = 1e-9;
 
-/** Clips rounding at the ends. @throws RangeError beyond the nodes, naming quantity and limits */
-export function insideAxis(nodes: Float64Array, x: number, name: string): number {
+/**
+ * Clips rounding at the ends. `name` is the quantity with its unit, `scale` converts the axis to that unit.
+ * @throws RangeError beyond the nodes, naming quantity and limits
+ */
+export function insideAxis(nodes: Float64Array, x: number, name: string, scale = 1): number {
   const lo = nodes[0]!;
   const hi = nodes[nodes.length - 1]!;
   const slack = ROUNDING * Math.max(Math.abs(lo), Math.abs(hi));
   if (!(x >= lo - slack && x <= hi + slack)) {
-    throw new RangeError(
-      `Cannot look up the table: found ${name} ${Number(x.toPrecision(12))}, need ${
-        lo === hi
-          ? `${Number(lo.toPrecision(12))} (the table has this value only)`
-          : `${Number(lo.toPrecision(12))} to ${Number(hi.toPrecision(12))}`
-      }`,
-    );
+    const shown = (y: number) => Number((y * scale).toPrecision(12));
+    const wanted = lo === hi
+      ? `${shown(lo)} (the table has this value only)`
+      : `${shown(lo)} to ${shown(hi)}`;
+    throw new RangeError(`Cannot look up the table: found ${name} ${shown(x)}, need ${wanted}`);
   }
   return Math.min(Math.max(x, lo), hi);
 }

@@ -1,5 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { GuideGeometry, Polarisation } from "../../shared/vocabulary.ts";
+import type { NominalGeometry } from "./index_model.ts";
 import { geometryColumns, geometryCorners, gridOf } from "./_grid.ts";
 
 /** Effective area of the three-wave overlap. */
@@ -60,7 +61,7 @@ export interface AreaTableRow {
  */
 export function tableAreaModel(
   rows: readonly AreaTableRow[],
-  nominal: Partial<GuideGeometry> = {},
+  nominal: NominalGeometry = {},
 ): AreaModel {
   const byProcess = new Map<string, AreaTableRow[]>();
   for (const row of rows) {

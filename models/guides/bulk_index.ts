@@ -23,6 +23,8 @@ export function bulkIndexModel(material: Material, axes: PolarisationAxes): Inde
       n: (lambda) => refractiveIndex(material, axes[pol], lambda, temperatureC),
       ng: (lambda) => groupIndex(material, axes[pol], lambda, temperatureC),
     }),
+    overTemperature: (pol, lambda) => (temperatureC) =>
+      refractiveIndex(material, axes[pol], lambda, temperatureC),
     sensitivity: () => 0,
     range: (pol) => materialRange(material, axes[pol]),
     remark: (pol, lambda, temperatureC) => publishedRangeRemark(material, axes[pol], lambda, temperatureC),

@@ -6,6 +6,9 @@ import type { CrystalAxis } from "../materials/mod.ts";
 export const GEOMETRY_PARAMETERS = ["width_um", "film_thickness_nm", "etch_depth_nm", "titanium_nm"] as const;
 export type GeometryParameter = typeof GEOMETRY_PARAMETERS[number];
 
+/** Values that stand in where a guide's own geometry is not known, each in its own unit. */
+export type NominalGeometry = { readonly [parameter in GeometryParameter]?: number | undefined };
+
 /** The crystal axis that each lab polarisation sees; follows from the platform's cut. */
 export interface PolarisationAxes {
   readonly TE: CrystalAxis;
@@ -34,6 +37,15 @@ export interface IndexModel {
   groupIndex(pol: Polarisation, lambda: number, temperatureC: number, geometry: GuideGeometry): number;
   /** The same at one temperature and geometry for many wavelengths. @throws RangeError beyond the limits */
   slice(pol: Polarisation, temperatureC: number, geometry: GuideGeometry): IndexSlice;
+  /**
+   * n_eff against temperature (°C) at one wavelength (m) and geometry: for finding a temperature.
+   * @throws RangeError beyond the limits
+   */
+  overTemperature(
+    pol: Polarisation,
+    lambda: number,
+    geometry: GuideGeometry,
+  ): (temperatureC: number) => number;
   /** ∂n_eff/∂parameter per unit of the parameter's own name (1/µm, 1/nm); 0 if the index does not depend on it. */
   sensitivity(
     pol: Polarisation,
@@ -64,4 +76,17 @@ export function mismatch(
     index.nEff(waves.polS, lambdaS, temperatureC, geometry) / lambdaS -
     index.nEff(waves.polI, lambdaI, temperatureC, geometry) / lambdaI
   );
+}
+
+/** {@link mismatch} against temperature (°C) at fixed waves and geometry: made once, cheap to evaluate many times. */
+export function mismatchOverTemperature(
+  index: IndexModel,
+  waves: ThreeWaves,
+  geometry: GuideGeometry,
+): (temperatureC: number) => number {
+  const { lambdaP, lambdaS, lambdaI } = waves;
+  const p = index.overTemperature(waves.polP, lambdaP, geometry);
+  const s = index.overTemperature(waves.polS, lambdaS, geometry);
+  const i = index.overTemperature(waves.polI, lambdaI, geometry);
+  return (T) => 2 * Math.PI * (p(T) / lambdaP - s(T) / lambdaS - i(T) / lambdaI);
 }

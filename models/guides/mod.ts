@@ -16,6 +16,8 @@ export {
   type IndexRange,
   type IndexSlice,
   mismatch,
+  mismatchOverTemperature,
+  type NominalGeometry,
   type PolarisationAxes,
 } from "./index_model.ts";
 export { propagationAxis } from "./propagation_axis.ts";

@@ -3,7 +3,13 @@ import type { GuideGeometry, Polarisation } from "../../shared/vocabulary.ts";
 import { groupIndex, type Material, publishedRangeRemark, refractiveIndex } from "../materials/mod.ts";
 import { geometryColumns, geometryCorners, gridOf } from "./_grid.ts";
 import { insideAxis, intervalOf, splineCurvatures, splineWeights } from "./_node_axis.ts";
-import type { GeometryParameter, IndexModel, IndexRange, PolarisationAxes } from "./index_model.ts";
+import type {
+  GeometryParameter,
+  IndexModel,
+  IndexRange,
+  NominalGeometry,
+  PolarisationAxes,
+} from "./index_model.ts";
 
 /** One node of an index table, in the units of the file. */
 export interface IndexTableRow {
@@ -50,7 +56,7 @@ export function tableIndexModel(
   rows: readonly IndexTableRow[],
   material: Material,
   axes: PolarisationAxes,
-  nominal: Partial<GuideGeometry> = {},
+  nominal: NominalGeometry = {},
 ): IndexModel {
   const tables: Partial<Record<Polarisation, Table>> = {};
   for (const pol of ["TE", "TM"] as const) {
@@ -76,7 +82,7 @@ export function tableIndexModel(
     order: 0 | 1,
   ): number => {
     const table = tableFor(pol);
-    const x = insideAxis(table.lambdas, lambda, "wavelength in m");
+    const x = insideAxis(table.lambdas, lambda, "wavelength_nm", 1e9);
     const k = intervalOf(table.lambdas, x);
     const line = lineOf(
       table,
@@ -105,16 +111,27 @@ export function tableIndexModel(
       const line = lineOf(table, temperatureC, geometry, nominal, null, 0, lambdas.length);
       return {
         n(lambda) {
-          const x = insideAxis(lambdas, lambda, "wavelength in m");
+          const x = insideAxis(lambdas, lambda, "wavelength_nm", 1e9);
           return valueOn(lambdas, line, intervalOf(lambdas, x), x) +
             refractiveIndex(material, axes[pol], lambda, temperatureC);
         },
         ng(lambda) {
-          const x = insideAxis(lambdas, lambda, "wavelength in m");
+          const x = insideAxis(lambdas, lambda, "wavelength_nm", 1e9);
           const k = intervalOf(lambdas, x);
           return valueOn(lambdas, line, k, x) - x * slopeOn(lambdas, line, k, x) +
             groupIndex(material, axes[pol], lambda, temperatureC);
         },
+      };
+    },
+    overTemperature(pol, lambda, geometry) {
+      const table = tableFor(pol);
+      const { temperatures } = table;
+      const values = excessOverTemperature(table, lambda, geometry, nominal);
+      const line = { excess: values, curvature: curvaturesOf(table.temperatureCurvatures, values) };
+      return (temperatureC) => {
+        const T = insideAxis(temperatures, temperatureC, "temperature_c");
+        return valueOn(temperatures, line, intervalOf(temperatures, T), T) +
+          refractiveIndex(material, axes[pol], lambda, temperatureC);
       };
     },
     sensitivity(pol, lambda, temperatureC, geometry, parameter) {
@@ -156,11 +173,7 @@ function tableOf(
   const S = splineCurvatures(lambdas);
   const curvature = new Float64Array(excess.length);
   for (let start = 0; start < excess.length; start += nL) {
-    for (let i = 0; i < nL; i++) {
-      let sum = 0;
-      for (let j = 0; j < nL; j++) sum += S[i * nL + j]! * excess[start + j]!;
-      curvature[start + i] = sum;
-    }
+    curvature.set(curvaturesOf(S, excess.subarray(start, start + nL)), start);
   }
   return {
     parameters,
@@ -173,12 +186,50 @@ function tableOf(
   };
 }
 
+/** S·values: second derivatives at the nodes. */
+function curvaturesOf(S: Float64Array, values: Float64Array): Float64Array {
+  const n = values.length;
+  const out = new Float64Array(n);
+  for (let i = 0; i < n; i++) {
+    let sum = 0;
+    for (let j = 0; j < n; j++) sum += S[i * n + j]! * values[j]!;
+    out[i] = sum;
+  }
+  return out;
+}
+
+/** n_eff − n_bulk at the temperature nodes, at one wavelength and geometry. */
+function excessOverTemperature(
+  table: Table,
+  lambda: number,
+  geometry: GuideGeometry,
+  nominal: NominalGeometry,
+): Float64Array {
+  const { lambdas, temperatures, parameters, geometryAxes } = table;
+  const nL = lambdas.length;
+  const x = insideAxis(lambdas, lambda, "wavelength_nm", 1e9);
+  const k = intervalOf(lambdas, x);
+  const { offsets, weights } = geometryCorners(parameters, geometryAxes, geometry, nominal, null);
+  return Float64Array.from(temperatures, (_, t) => {
+    let sum = 0;
+    for (let c = 0; c < offsets.length; c++) {
+      const start = (offsets[c]! * temperatures.length + t) * nL;
+      const line = {
+        excess: table.excess.subarray(start, start + nL),
+        curvature: table.curvature.subarray(start, start + nL),
+      };
+      sum += weights[c]! * valueOn(lambdas, line, k, x);
+    }
+    return sum;
+  });
+}
+
 /** The nodes from … to−1 of the wavelength axis, at one temperature and geometry (or differentiated along one parameter). */
 function lineOf(
   table: Table,
   temperatureC: number,
   geometry: GuideGeometry,
-  nominal: Partial<GuideGeometry>,
+  nominal: NominalGeometry,
   along: GeometryParameter | null,
   from: number,
   to: number,
@@ -186,7 +237,7 @@ function lineOf(
   const { parameters, geometryAxes, temperatures, temperatureCurvatures } = table;
   const nL = table.lambdas.length;
   const nT = temperatures.length;
-  const T = insideAxis(temperatures, temperatureC, "temperature in °C");
+  const T = insideAxis(temperatures, temperatureC, "temperature_c");
   const overT = splineWeights(temperatures, temperatureCurvatures, T);
   const { offsets, weights } = geometryCorners(parameters, geometryAxes, geometry, nominal, along);
   const excess = new Float64Array(nL);
