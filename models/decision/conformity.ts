@@ -17,9 +17,14 @@ export interface Summary {
 export function summarise(draws: Float64Array): Summary | null {
   const values = draws.filter((x) => !Number.isNaN(x)).sort();
   if (values.length === 0) return null;
+  const [least, most] = [values[0]!, values[values.length - 1]!];
+  // Equal draws: the mean of many equal numbers is off by rounding, and their spread with it.
+  if (least === most) {
+    return { mean: least, u: 0, lo: least, hi: least, valid: values.length, count: draws.length };
+  }
   return {
     mean: mean(values),
-    u: values.length > 1 ? standardDeviation(values) : 0,
+    u: standardDeviation(values),
     lo: quantileOfSorted(values, 0.025),
     hi: quantileOfSorted(values, 0.975),
     valid: values.length,

@@ -26,6 +26,7 @@ import type { ArmRequest, CheckedRequest, FilterRequest } from "../../shared/sch
 import { lambdaOf, nm, omegaOf, um } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
 import { DRAWS, SPECTRAL_DRAWS } from "./draws.ts";
+import { between, carried } from "./blend_spectra.ts";
 import type { DrawnArm, DrawnTraits } from "./drawn_traits.ts";
 import type { FigureDraws } from "./figure_draws.ts";
 import type { ArmTraits } from "./guide_inputs.ts";
@@ -230,21 +231,31 @@ export function predictPairs(
 
 const sameRemark = (a: string, b: string) => a.split(":", 1)[0] === b.split(":", 1)[0];
 
-/** Spectra of the spectral draws; the first decides how fine a grid they need. */
+/**
+ * Spectra of the spectral draws. The first is refined until it has converged and decides how fine a grid is needed; the
+ * others are computed on half as many points and carry the first one's accuracy with them.
+ */
 function pairSpectra(question: PairQuestion, pump: PairPump, scratch: PairScratch): PairSpectrum[] {
-  const { site, checked, drawn, exists } = question;
+  const { site, checked, drawn, exists, walls } = question;
   const of = (k: number, grid?: PairSource["grid"]) =>
     pairSpectrum(pairSource(site, checked, pump, question.grating(k), drawn.lossP[k]!, grid), scratch);
   const first = of(0);
   // Without any operating point only the filter's share is asked for: one spectrum is enough.
   if (!exists.some((x) => x === 1)) return [first];
-  const points = first.grid.points;
-  const rest = Array.from({ length: SPECTRAL_DRAWS - 1 }, (_, k) => {
-    const next = of(k + 1, { points, limit: points, compare: false });
-    // One grid for all: whether it is fine enough was decided on the first.
-    return { ...next, grid: first.grid };
-  });
-  return [first, ...rest];
+  const points = first.grid.converged === true ? Math.max(32, first.grid.points / 2) : first.grid.points;
+  const coarse = (k: number) => of(k, { points, limit: points, compare: false });
+  const draws = Array.from({ length: SPECTRAL_DRAWS }, (_, k) => k);
+  const base = coarse(0);
+  if (walls === null) return draws.map((k) => k === 0 ? first : carried(first, base, coarse(k)));
+  // An inspected grating leaves pump loss alone to vary, and that weakly: linear between its extremes.
+  const byLoss = [...draws].sort((a, b) => drawn.lossP[a]! - drawn.lossP[b]!);
+  const [least, most] = [byLoss[0]!, byLoss.at(-1)!];
+  const span = drawn.lossP[most]! - drawn.lossP[least]!;
+  if (span === 0) return [first];
+  const [low, high] = [coarse(least), coarse(most)];
+  return draws.map((k) =>
+    k === 0 ? first : carried(first, base, between(low, high, (drawn.lossP[k]! - drawn.lossP[least]!) / span))
+  );
 }
 
 /** Pairs made in draw k relative to draw j, whose spectrum it takes: pump loss and duty act on the number alone. */
