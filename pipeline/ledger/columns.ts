@@ -208,6 +208,20 @@ function listData(
   return { valueOffsets, child };
 }
 
+/**
+ * A batch with some of its columns, in its own order. (RecordBatch.select of apache-arrow 17 puts the columns in the wrong
+ * places unless they are the first ones.)
+ */
+export function selectColumns(batch: RecordBatch, names: readonly string[]): RecordBatch {
+  const kept = batch.schema.fields.flatMap((field, i) => names.includes(String(field.name)) ? [i] : []);
+  const schema = new Schema(kept.map((i) => batch.schema.fields[i]!), batch.schema.metadata);
+  const children = kept.map((i) => batch.data.children[i]!);
+  return new RecordBatch(
+    schema,
+    makeData({ type: new Struct(schema.fields), length: batch.numRows, nullCount: 0, children }),
+  );
+}
+
 /** A numeric column as numbers, missing as NaN. @throws RangeError for an unknown column */
 export function numbersOf(table: Table | RecordBatch, name: string): Float64Array {
   const out = new Float64Array(table.numRows).fill(NaN);

@@ -3,6 +3,7 @@ import { type RecordBatch, type Schema, Table } from "apache-arrow";
 import config from "../../deno.json" with { type: "json" };
 import { LedgerError } from "../../shared/errors.ts";
 import { activeFilesOf, filterBatch, requestOf, rowFilterOf, runsInForceOf } from "./active.ts";
+import { selectColumns } from "./columns.ts";
 import { makeLedger, requireLedger, unmakeLedger } from "./directory.ts";
 import { type Layout, layoutOf } from "./layout.ts";
 import { clearLeftovers } from "./leftovers.ts";
@@ -153,7 +154,7 @@ class OpenLedger implements Ledger {
       ? wanted
       : all.filter((name) => wanted.includes(name) || name === filter.column);
     for await (const batch of file.stream({ ...options, columns })) {
-      for (const slice of filterBatch(batch, filter)) yield slice.select(wanted);
+      for (const slice of filterBatch(batch, filter)) yield selectColumns(slice, wanted);
     }
   }
 
