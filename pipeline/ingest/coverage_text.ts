@@ -63,7 +63,7 @@ function table(coverage: Coverage): string[] {
   return [
     line(coverage.by, head),
     ...coverage.rows.map((row, i) => line(row.unit, body[i]!)),
-    ...wrapped(`(${legend.join("; ")})`, 1),
+    ...wrapped(`${" ".repeat(4)}${legend.join("; ")}`, 4),
   ];
 }
 

@@ -1,4 +1,3 @@
-import { quoteValue } from "../../shared/errors.ts";
 import type { ReadingKind } from "../../shared/schemas/readings.ts";
 import type { Problem, Remarks } from "./issues.ts";
 import type { Owner } from "./known_ids.ts";

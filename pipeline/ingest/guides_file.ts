@@ -1,4 +1,3 @@
-import { quoteValue } from "../../shared/errors.ts";
 import { idSchema } from "../../shared/schemas/ids.ts";
 import type { GuideRow } from "../../shared/schemas/guides.ts";
 import { dieId, guideId } from "../../shared/ids.ts";

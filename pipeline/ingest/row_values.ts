@@ -86,9 +86,15 @@ function problemOf(
     column,
     value: cell,
     reason: reasonOf(issue, value === null || value === undefined) + number,
-    wanted: wanted(plan.kind, column),
+    wanted: lastPart(column, cell) ?? wanted(plan.kind, column),
   };
 }
+
+/** A full id in the column of a name: its last part is what belongs there. */
+const lastPart = (column: string, cell: string): string | null =>
+  (column === "die" || column === "guide") && /^[^/]+(\/[^/]+)+$/.test(cell)
+    ? quoteValue(cell.slice(cell.lastIndexOf("/") + 1))
+    : null;
 
 function reasonOf(issue: z.core.$ZodIssue, empty: boolean): string {
   if (empty) return "the cell is empty";
@@ -104,6 +110,7 @@ function reasonOf(issue: z.core.$ZodIssue, empty: boolean): string {
     case "invalid_value":
       return "the word is not one of those known";
     case "invalid_format":
+    case "invalid_union": // of date and time
       return "the text has another form";
     default:
       return issue.message;

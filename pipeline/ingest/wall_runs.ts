@@ -1,4 +1,3 @@
-import { quoteValue } from "../../shared/errors.ts";
 import type { Problem } from "./issues.ts";
 import type { KnownGuide, KnownIds } from "./known_ids.ts";
 

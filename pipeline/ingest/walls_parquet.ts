@@ -1,7 +1,7 @@
 import { type Data, DataType, type RecordBatch, type Schema, type Vector } from "apache-arrow";
-import { InputError, quoteValue } from "../../shared/errors.ts";
-import { openTableFile, type TableFile } from "../ledger/parquet_read.ts";
+import { InputError } from "../../shared/errors.ts";
 import { type FileOutcome, FileRun, type TakenFile } from "./file_run.ts";
+import { openForeignParquet } from "./foreign_parquet.ts";
 import { type ColumnPlan, planColumns, type PlannedColumn } from "./headings.ts";
 import type { Problem, Remarks } from "./issues.ts";
 import type { KnownGuide, KnownIds } from "./known_ids.ts";
@@ -25,14 +25,14 @@ export async function readWallsParquet(
 ): Promise<FileOutcome> {
   const run = new FileRun(file, tables);
   const walls = wallSink(run, known, tables);
-  using parquet = await asInput(file.name, () => openTableFile(path));
+  using parquet = await openForeignParquet(path, file.name);
   const headings = parquet.schema.fields.map((field) => field.name);
   const plan = planColumns("walls", file.name, 1, headings, { ...style, decimal: "." }, remarks);
   refuseOtherTypes(file.name, plan, parquet.schema);
   const position = plan.columns.find((column) => column.name === "position_um")!;
   let row = 1;
   for (let group = 0; group < parquet.rowGroups; group++) {
-    for (const batch of await readGroup(parquet, file.name, group)) {
+    for (const batch of await parquet.read(group)) {
       take(batch);
       await tables.drain();
     }
@@ -109,25 +109,6 @@ export async function readWallsParquet(
 
 const cellsOf = (batch: RecordBatch, i: number): string[] =>
   batch.schema.fields.map((_, k) => String(batch.getChildAt(k)!.get(i) ?? ""));
-
-async function readGroup(parquet: TableFile, name: string, group: number): Promise<readonly RecordBatch[]> {
-  return (await asInput(name, () => parquet.read({ rowGroups: [group] }))).batches;
-}
-
-/** The reader blames the ledger, whose files it reads as a rule; this one came from outside. */
-async function asInput<T>(name: string, step: () => Promise<T>): Promise<T> {
-  try {
-    return await step();
-  } catch (cause) {
-    const why =
-      (cause instanceof Error && cause.cause instanceof Error ? cause.cause : cause as Error).message;
-    throw new InputError(
-      `Cannot read ${name}: it is no whole Parquet file (${why}); export it again, or write it as walls.csv`,
-      { file: name },
-      { cause },
-    );
-  }
-}
 
 function refuseOtherTypes(name: string, plan: ColumnPlan, schema: Schema): void {
   const fits = (column: PlannedColumn, type: DataType): boolean => {
