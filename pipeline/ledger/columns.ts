@@ -15,7 +15,10 @@ import {
 } from "apache-arrow";
 import type { TableStream } from "./types.ts";
 
-/** Column types of the ledger's tables. Every column may have nulls. */
+/**
+ * Column types of the ledger's tables. Every column may have nulls, but for `bool`: apache-arrow 17 writes a batch of
+ * nothing but null booleans in a form that the Parquet writer refuses.
+ */
 export type ColumnType = "f64" | "i32" | "text" | "bool" | "f64[]" | "i32[]";
 /** Column names and types of a table, in order. */
 export type TableShape = Readonly<Record<string, ColumnType>>;
@@ -24,7 +27,7 @@ interface ColumnValues {
   "f64": ArrayLike<number | null | undefined>;
   "i32": ArrayLike<number | null | undefined>;
   "text": ArrayLike<string | null | undefined>;
-  "bool": ArrayLike<boolean | null | undefined>;
+  "bool": ArrayLike<boolean>;
   "f64[]": ArrayLike<ArrayLike<number> | null | undefined>;
   "i32[]": ArrayLike<ArrayLike<number> | null | undefined>;
 }
@@ -125,7 +128,7 @@ function columnData(
     case "i32":
       return makeData({ type: new Int32(), ...common, data: integers(name, values, from, to) });
     case "bool":
-      return makeData({ type: new Bool(), ...common, data: bits(length, (i) => values[from + i] === true) });
+      return makeData({ type: new Bool(), ...common, data: booleans(name, values, from, to) });
     case "text":
       return makeData({ type: new Utf8(), ...common, ...textData(values, from, to) });
     case "f64[]":
@@ -152,6 +155,16 @@ function bits(length: number, test: (i: number) => boolean): Uint8Array {
   const out = new Uint8Array(Math.ceil(length / 64) * 8);
   for (let i = 0; i < length; i++) if (test(i)) out[i >> 3]! |= 1 << (i & 7);
   return out;
+}
+
+function booleans(name: string, values: ArrayLike<unknown>, from: number, to: number): Uint8Array {
+  return bits(to - from, (i) => {
+    const value = values[from + i];
+    if (typeof value !== "boolean") {
+      throw new RangeError(`Cannot store ${value} in column "${name}": need true or false`);
+    }
+    return value;
+  });
 }
 
 function numbers(values: ArrayLike<unknown>, from: number, to: number): Float64Array {
