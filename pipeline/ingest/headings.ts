@@ -46,9 +46,10 @@ export function planColumns(
 ): ColumnPlan {
   const known = Object.keys(rowSchema(kind).shape);
   const place = { file: name, line };
-  const targets = headings.map((heading): Target | null =>
-    style.columns.get(heading) ?? (known.includes(heading) ? { to: heading, times: 1, plus: 0 } : null)
-  );
+  const targets = headings.map((heading): Target | null => {
+    const target = style.columns.get(heading) ?? { to: heading, times: 1, plus: 0 };
+    return known.includes(target.to) ? target : null;
+  });
   const missing = requiredColumns(kind).filter((column) =>
     !style.constants.has(column) && !targets.some((target) => target?.to === column)
   );

@@ -12,6 +12,10 @@ export type TableKind = ReadingKind | "guides";
 export const rowSchema = (kind: TableKind): z.ZodObject =>
   kind === "guides" ? guideRowSchema : READING_SCHEMAS[kind];
 
+const EVERY_COLUMN: ReadonlySet<string> = new Set(
+  ["guides" as const, ...READING_KINDS].flatMap((kind) => Object.keys(rowSchema(kind).shape)),
+);
+
 /** A strict object whose message for an unknown key names the nearest known one. */
 function strict<Shape extends z.ZodRawShape>(shape: Shape) {
   const known = Object.keys(shape);
@@ -124,10 +128,13 @@ export const lotSchema = strict(shape).superRefine((lot, context) => {
     const known = Object.keys(rowSchema(kind).shape);
     const name = typeof to === "string" ? to : to.to;
     if (!known.includes(name)) {
+      if (EVERY_COLUMN.has(name)) return; // known, but not of this kind: the heading is not read
       say(
         ["columns", key, heading],
         name,
-        `${kind} has no such column${didYouMean(nearestWord(name, known))}; columns: ${known.join(", ")}`,
+        `there is no such column${didYouMean(nearestWord(name, known))}; columns of ${kind}: ${
+          known.join(", ")
+        }`,
       );
     } else if (typeof to !== "string" && !isNumberColumn(kind, name)) {
       say(["columns", key, heading], name, `this column holds text; "times" and "plus" are for numbers`);

@@ -6,12 +6,18 @@ Deno.test("columns rename headings and turn their units: times, then plus", asyn
   const head = 'die;guide;"IL (dB)";len [cm];T [K];wafer;wavelength_nm;polarisation\n';
   const lot = {
     columns: {
-      cutback: { "IL (dB)": "insertion_loss_db", "len [cm]": { to: "length_mm", times: 10 } },
+      // The last one is a column, but not of this kind: the heading is left out.
+      cutback: {
+        "IL (dB)": "insertion_loss_db",
+        "len [cm]": { to: "length_mm", times: 10 },
+        "T [K]": { to: "temperature_c", plus: -273.15 },
+      },
     },
     reading_style: { cutback: { delimiter: ";" } },
   };
   const { rows } = await ingestOne("cutback.csv", `${head}05;g12;1.5;2;300;K07-1;1550;TE\n`, lot);
   assert.deepEqual([rows[0]!["insertion_loss_db"], rows[0]!["length_mm"]], [1.5, 20]);
+  assert.ok(!("temperature_c" in rows[0]!));
   const scan = "wafer,die,guide,scan,process,polarisations,T [K],wavelength_nm,power_rel\n" +
     "K07-1,05,g12,a,second-harmonic,TM+TE>TE,308.15,1582,-0.1\n";
   const kelvin = { columns: { tuning: { "T [K]": { to: "temperature_c", plus: -273.15 } } } };
