@@ -22,6 +22,8 @@ export interface Axis {
   /** Power transmission of the arm's filter inside the stated window; 0 outside it, 1 without filter. */
   readonly power: Float64Array;
   readonly segments: readonly Segment[];
+  /** True if {@link MOST_POINTS} kept a step longer than was asked for: no result on this axis has converged. */
+  readonly capped: boolean;
 }
 
 export interface AxisOptions {
@@ -35,7 +37,7 @@ export interface AxisOptions {
   readonly within?: Band;
 }
 
-/** Most points of one segment; a longest step that asks for more is not met (and the result has not converged). */
+/** Most points of one segment. */
 export const MOST_POINTS = 1024;
 
 /** Grid of an arm: its stated window, and beyond it what is left of its open window at the open window's step. */
@@ -47,6 +49,7 @@ export function armAxis(window: ArmWindow, filter: Filter | undefined, options: 
     .sort((a, b) => a - b);
   const segments: Segment[] = [];
   let first = 0;
+  let capped = false;
   for (let k = 1; k < edges.length; k++) {
     const from = edges[k - 1]!;
     const to = edges[k]!;
@@ -54,16 +57,23 @@ export function armAxis(window: ArmWindow, filter: Filter | undefined, options: 
     const [lo, hi] = inside ? stated : open;
     const step = Math.min((hi - lo) / points, longestStep);
     // the small slack keeps rounding from adding a point
-    const count = Math.min(Math.max(Math.ceil((to - from) / step - 1e-9), 1), MOST_POINTS);
+    const wanted = Math.max(Math.ceil((to - from) / step - 1e-9), 1);
+    const count = Math.min(wanted, MOST_POINTS);
+    if (count < wanted) capped = true;
     segments.push({ from, to, first, count, stated: inside });
     first += count;
   }
-  return fill(segments, first, filter);
+  return fill(segments, first, filter, capped);
 }
 
 /** One uniform grid over `band`; transmission 0 outside the stated window. */
 export function commonAxis(band: Band, points: number, window: ArmWindow, filter: Filter | undefined): Axis {
-  const axis = fill([{ from: band[0], to: band[1], first: 0, count: points, stated: true }], points, filter);
+  const axis = fill(
+    [{ from: band[0], to: band[1], first: 0, count: points, stated: true }],
+    points,
+    filter,
+    false,
+  );
   const { stated } = window;
   axis.omega.forEach((w, k) => {
     if (w < stated[0] || w > stated[1]) axis.power[k] = 0;
@@ -71,7 +81,12 @@ export function commonAxis(band: Band, points: number, window: ArmWindow, filter
   return axis;
 }
 
-function fill(segments: readonly Segment[], total: number, filter: Filter | undefined): Axis {
+function fill(
+  segments: readonly Segment[],
+  total: number,
+  filter: Filter | undefined,
+  capped: boolean,
+): Axis {
   const omega = new Float64Array(total);
   const weight = new Float64Array(total);
   const power = new Float64Array(total);
@@ -83,5 +98,5 @@ function fill(segments: readonly Segment[], total: number, filter: Filter | unde
       if (stated) power[first + k] = filter === undefined ? 1 : transmission(filter, omega[first + k]!);
     }
   }
-  return { omega, weight, power, segments };
+  return { omega, weight, power, segments, capped };
 }

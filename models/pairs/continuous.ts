@@ -14,7 +14,7 @@ import {
   prepareSource,
   signalSide,
 } from "./source.ts";
-import { type ArmWindow, type Band, NOT_SEPARABLE } from "./window.ts";
+import { type ArmWindow, type Band, NOT_SEPARABLE, openEnds } from "./window.ts";
 
 const POINTS = 512;
 const LIMIT = 8192;
@@ -69,17 +69,16 @@ export function continuousSpectrum(source: PairSource): PairSpectrum {
     exchangeDelay: exchange === null ? null : exchange.delay,
     windowS,
     windowI,
-    bandwidthS: lineWidth(prepared, result.line.axis, result.spectrum),
-    bandwidthI: lineWidth(prepared, idlerSide, result.spectrum.toReversed()),
+    bandwidthS: lineWidth(result.line.axis, result.spectrum, openEnds(windowS, windowI, source.omegaP)),
+    bandwidthI: lineWidth(idlerSide, result.spectrum.toReversed(), openEnds(windowI, windowS, source.omegaP)),
     grid: { points: refined.points, change: refined.change, converged: refined.converged },
   };
 }
 
-/** With ω_i = ω_p − ω_s a filter in either arm ends both spectra. */
-const lineWidth = ({ windowS, windowI }: PreparedSource, axis: Axis, spectrum: Float64Array): Outcome =>
+const lineWidth = (axis: Axis, spectrum: Float64Array, ends: readonly number[]): Outcome =>
   axis.omega.length === 0
     ? absent("the windows hold no pair that conserves energy")
-    : bandwidth(axis, spectrum, windowS.filtered || windowI.filtered);
+    : bandwidth(axis, spectrum, ends, 1e-6 * (axis.segments.at(-1)!.to - axis.segments[0]!.from));
 
 function computeLine(prepared: PreparedSource, points: number): LineResult {
   const { source, separable } = prepared;
@@ -150,7 +149,7 @@ function lineAxis(prepared: PreparedSource, points: number): Axis {
       power[first + j] = passes(windowS, source.filters?.signal, omega[first + j]!);
     }
   }
-  return { omega, weight, power, segments };
+  return { omega, weight, power, segments, capped: false };
 }
 
 const emptyAxis: Axis = {
@@ -158,6 +157,7 @@ const emptyAxis: Axis = {
   weight: new Float64Array(0),
   power: new Float64Array(0),
   segments: [],
+  capped: false,
 };
 
 const intersect = (a: Band, b: Band): Band => [Math.max(a[0], b[0]), Math.min(a[1], b[1])];
@@ -208,6 +208,7 @@ function mirrored(axis: Axis, omegaP: number): Axis {
       count,
       stated,
     })),
+    capped: axis.capped,
   };
 }
 
@@ -231,6 +232,7 @@ function exchangeOnLine(prepared: PreparedSource, points: number): { value: Outc
     weight: new Float64Array(omega.length).fill(step),
     power: omega.map((w) => passes(windowS, source.filters?.signal, w)),
     segments: [],
+    capped: false,
   };
   const line = lineOn(prepared, axis);
   const re = new Float64Array(n);

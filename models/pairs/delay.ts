@@ -11,11 +11,13 @@ export interface DelayMaximum {
 
 /** Delays are first searched on a grid this much finer than the sum can vary. */
 const OVERSAMPLING = 8;
+/** Between two points of that grid |S|² may rise by (π/2/8)² = 4 %: every peak this near to the highest is refined. */
+const NEAR_BEST = 0.95;
 const GOLDEN = (Math.sqrt(5) - 1) / 2;
 
 /**
- * Maximum over τ of |S(τ)|, S(τ) = Σ_k D_k·e^{iτk·step}, as for any first frequency of D_0: one FFT to find the highest point, golden section
- * around it. τ is searched over one period, −π/step … π/step.
+ * Maximum over τ of |S(τ)|, S(τ) = Σ_k D_k·e^{iτk·step}, as for any first frequency of D_0: one FFT to find the highest points, golden
+ * section around them. τ is searched over one period, −π/step … π/step.
  * @param re D, and `im`
  * @param step of the angular frequency from one D to the next, rad/s
  */
@@ -34,18 +36,34 @@ export function maximiseOverDelay(
     input[2 * k + 1] = im[k]!;
   }
   fft.transform(output, input);
-  let best = 0;
-  let highest = -1;
+  const squares = new Float64Array(size);
+  let highest = 0;
   for (let q = 0; q < size; q++) {
-    const square = output[2 * q]! ** 2 + output[2 * q + 1]! ** 2;
-    if (square > highest) {
-      highest = square;
-      best = q;
-    }
+    squares[q] = output[2 * q]! ** 2 + output[2 * q + 1]! ** 2;
+    highest = Math.max(highest, squares[q]!);
   }
+  if (highest === 0) return { value: 0, delay: 0 };
   // the transform has e^{−2πikq/size}: the delay is the negative of its angle
   const cell = 2 * Math.PI / (size * step);
-  const near = -(best > size / 2 ? best - size : best) * cell;
+  let best: DelayMaximum = { value: -1, delay: 0 };
+  for (let q = 0; q < size; q++) {
+    const square = squares[q]!;
+    if (square < NEAR_BEST * highest) continue;
+    if (square < squares[(q + 1) % size]! || square < squares[(q + size - 1) % size]!) continue;
+    const found = refineMaximum(re, im, step, -(q > size / 2 ? q - size : q) * cell, cell);
+    if (found.value > best.value) best = found;
+  }
+  return best;
+}
+
+/** Golden section for |S| within `cell` to both sides of `near`. */
+function refineMaximum(
+  re: Float64Array,
+  im: Float64Array,
+  step: number,
+  near: number,
+  cell: number,
+): DelayMaximum {
   const modulus = (tau: number) => modulusAt(re, im, tau * step);
   let lo = near - cell;
   let hi = near + cell;

@@ -65,25 +65,20 @@ function statedPoints(axis: Axis): Uint8Array {
 
 /**
  * FWHM in wavelength (m) of a spectrum per rad/s, between its outermost half-maximum crossings, interpolated. At the
- * edge of a filter the crossing is the edge; null if an unfiltered spectrum has not fallen to half where its window ends.
+ * edge of a filter the crossing is the edge. Null if the spectrum has not fallen to half before an unfiltered window
+ * ends it.
+ * @param openEnds ends of unfiltered windows, this arm's and (mirrored at ω_p/2) its partner's, rad/s
+ * @param margin how near to one of them a crossing is due to the window, rad/s: the pump's width
  */
-export function bandwidth(axis: Axis, spectrum: Float64Array, filtered: boolean): Outcome {
+export function bandwidth(
+  axis: Axis,
+  spectrum: Float64Array,
+  openEnds: readonly number[],
+  margin: number,
+): Outcome {
   const x: number[] = [];
   const y: number[] = [];
-  for (const { from, to, first, count } of axis.segments) {
-    // straight lines carry the spectrum to the edges, where it may jump
-    const at = (k: number) => spectrum[first + k]!;
-    const next = Math.min(1, count - 1);
-    x.push(from);
-    y.push(Math.max(0, 1.5 * at(0) - 0.5 * at(next)));
-    for (let k = 0; k < count; k++) {
-      x.push(axis.omega[first + k]!);
-      y.push(at(k));
-    }
-    x.push(to);
-    y.push(Math.max(0, 1.5 * at(count - 1) - 0.5 * at(count - 1 - next)));
-    if (next === 0) y[y.length - 1] = y[y.length - 3] = at(0);
-  }
+  for (const run of runsOf(axis)) refineRun(axis.omega, spectrum, run, x, y);
   const half = y.reduce((a, b) => Math.max(a, b), 0) / 2;
   if (!(half > 0)) return absent("no pair passes the filters");
   const n = x.length;
@@ -91,10 +86,72 @@ export function bandwidth(axis: Axis, spectrum: Float64Array, filtered: boolean)
   while (y[first]! < half) first++;
   let last = n - 1;
   while (y[last]! < half) last--;
-  if (!filtered && (first === 0 || last === n - 1)) return absent("not resolved within the window");
   const lo = first === 0 ? x[0]! : crossing(x, y, first - 1, first, half);
   const hi = last === n - 1 ? x[n - 1]! : crossing(x, y, last + 1, last, half);
+  if (openEnds.some((end) => Math.abs(end - lo) <= margin || Math.abs(end - hi) <= margin)) {
+    return absent("not resolved within the window");
+  }
   return given(lambdaOf(lo) - lambdaOf(hi), "bandwidth");
+}
+
+/** Neighbouring segments over which the spectrum does not jump. */
+interface Run {
+  readonly from: number;
+  to: number;
+  readonly first: number;
+  end: number;
+}
+
+function runsOf(axis: Axis): Run[] {
+  const runs: Run[] = [];
+  let before: boolean | null = null;
+  for (const { from, to, first, count, stated } of axis.segments) {
+    const run = runs.at(-1);
+    if (run !== undefined && stated === before) {
+      run.to = to;
+      run.end = first + count;
+    } else runs.push({ from, to, first, end: first + count });
+    before = stated;
+  }
+  return runs;
+}
+
+/** Points between two grid points at which the cubic through the nearest four is evaluated. */
+const FINER = 8;
+
+/** Appends a run from edge to edge, the cubic through the nearest four points carried half a step to the edges. */
+function refineRun(omega: Float64Array, spectrum: Float64Array, run: Run, x: number[], y: number[]): void {
+  const { from, to, first, end } = run;
+  const push = (at: number) => {
+    x.push(at);
+    y.push(Math.max(0, lagrange(omega, spectrum, first, end, at)));
+  };
+  push(from);
+  for (let k = first; k < end; k++) {
+    const next = k + 1 < end ? omega[k + 1]! : to;
+    for (let q = 0; q < FINER; q++) push(omega[k]! + q / FINER * (next - omega[k]!));
+  }
+  push(to);
+}
+
+/** Lagrange interpolation through the (up to) four points of first … end − 1 about `at`; steps may differ. */
+function lagrange(x: Float64Array, y: Float64Array, first: number, end: number, at: number): number {
+  let lo = first;
+  let hi = end;
+  while (hi - lo > 1) {
+    const mid = (lo + hi) >> 1;
+    if (x[mid]! <= at) lo = mid;
+    else hi = mid;
+  }
+  const start = Math.max(first, Math.min(lo - 1, end - 4));
+  const stop = Math.min(start + 4, end);
+  let sum = 0;
+  for (let k = start; k < stop; k++) {
+    let w = y[k]!;
+    for (let q = start; q < stop; q++) if (q !== k) w *= (at - x[q]!) / (x[k]! - x[q]!);
+    sum += w;
+  }
+  return sum;
 }
 
 /** Where a line from a low to a high knot meets `level`; the knots may share their x. */

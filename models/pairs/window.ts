@@ -83,3 +83,14 @@ export const NOT_SEPARABLE = "signal and idler not separable";
 export function armsSeparable(samePolarisation: boolean, signal: Band, idler: Band): boolean {
   return !samePolarisation || signal[1] <= idler[0] || idler[1] <= signal[0];
 }
+
+/**
+ * Ends of the windows that no filter sets, as one arm sees them (rad/s): its own, and its partner's mirrored by
+ * ω_s + ω_i = ω_p. A spectrum that is cut there has no width of its own.
+ */
+export function openEnds(own: ArmWindow, partner: ArmWindow, omegaP: number): number[] {
+  return [
+    ...(own.filtered ? [] : own.stated),
+    ...(partner.filtered ? [] : partner.stated.map((w) => omegaP - w)),
+  ];
+}
