@@ -59,7 +59,8 @@ export function armAxis(window: ArmWindow, filter: Filter | undefined, options: 
     // the small slack keeps rounding from adding a point
     const wanted = Math.max(Math.ceil((to - from) / step - 1e-9), 1);
     const count = Math.min(wanted, MOST_POINTS);
-    if (count < wanted) capped = true;
+    // what is asked for has some reserve: see STEPS_PER_PUMP
+    if (1.5 * count < wanted) capped = true;
     segments.push({ from, to, first, count, stated: inside });
     first += count;
   }

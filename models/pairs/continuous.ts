@@ -1,10 +1,10 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import { bandCovering, interpolateSpectrumInto } from "../poling/mod.ts";
 import type { Axis, Segment } from "./axis.ts";
-import { maximiseOverDelay } from "./delay.ts";
-import { type Filter, transmission } from "./filters.ts";
+import { exchangeOnLine } from "./line_exchange.ts";
+import { NOT_CONTINUOUS } from "./figure_names.ts";
+import { intersect, type Line, lineOn, passes } from "./line.ts";
 import { bandwidth } from "./marginals.ts";
-import { absent, given, type Outcome } from "./outcome.ts";
+import { absent, type Outcome } from "./outcome.ts";
 import { refine } from "./schmidt.ts";
 import { filterShares } from "./shares.ts";
 import {
@@ -14,21 +14,10 @@ import {
   prepareSource,
   signalSide,
 } from "./source.ts";
-import { type ArmWindow, type Band, NOT_SEPARABLE, openEnds } from "./window.ts";
+import { type Band, NOT_SEPARABLE, openEnds } from "./window.ts";
 
 const POINTS = 512;
 const LIMIT = 8192;
-/** Why a continuous pump has no purity. */
-export const NO_PURITY = "not a figure of a continuous-wave pump";
-
-interface Line {
-  /** Signal axis of which each point stands for the pair (ω, ω_p − ω). */
-  readonly axis: Axis;
-  /** √(PΓ²L²·cell/2π)·φ */
-  readonly re: Float64Array;
-  readonly im: Float64Array;
-  readonly powerI: Float64Array;
-}
 
 interface LineResult {
   readonly total: number;
@@ -63,7 +52,7 @@ export function continuousSpectrum(source: PairSource): PairSpectrum {
     madeOpen: result.total,
     separable,
     shares: separable ? filterShares(result) : null,
-    purity: absent(NO_PURITY),
+    purity: absent(NOT_CONTINUOUS),
     correlation: null,
     exchange: exchange === null ? absent(why!) : exchange.value,
     exchangeDelay: exchange === null ? null : exchange.delay,
@@ -81,10 +70,10 @@ const lineWidth = (axis: Axis, spectrum: Float64Array, ends: readonly number[]):
     : bandwidth(axis, spectrum, ends, 1e-6 * (axis.segments.at(-1)!.to - axis.segments[0]!.from));
 
 function computeLine(prepared: PreparedSource, points: number): LineResult {
-  const { source, separable } = prepared;
+  const { separable } = prepared;
   const line = lineOn(prepared, lineAxis(prepared, points));
   const { axis, re, im, powerI } = line;
-  const side = signalSide(source);
+  const side = signalSide(prepared);
   const spectrum = new Float64Array(axis.omega.length);
   let total = 0, stated = 0, signal = 0, idler = 0, both = 0;
   for (const segment of axis.segments) {
@@ -114,7 +103,7 @@ function lineAxis(prepared: PreparedSource, points: number): Axis {
   let [lo, hi] = open;
   if (samePolarisation && separable) {
     // each pair once: the signal on its own side of ω_p/2, unless its stated window reaches over
-    const side = signalSide(source);
+    const side = signalSide(prepared);
     lo = Math.max(lo, Math.min(side[0], windowS.stated[0]));
     hi = Math.min(hi, Math.max(side[1], windowS.stated[1]));
   }
@@ -160,40 +149,6 @@ const emptyAxis: Axis = {
   capped: false,
 };
 
-const intersect = (a: Band, b: Band): Band => [Math.max(a[0], b[0]), Math.min(a[1], b[1])];
-
-/** Transmission inside the stated window, 0 outside it. */
-function passes({ stated }: ArmWindow, filter: Filter | undefined, omega: number): number {
-  if (omega < stated[0] || omega > stated[1]) return 0;
-  return filter === undefined ? 1 : transmission(filter, omega);
-}
-
-function lineOn({ source, k, windowI, gain }: PreparedSource, axis: Axis): Line {
-  const n = axis.omega.length;
-  const re = new Float64Array(n);
-  const im = new Float64Array(n);
-  const powerI = new Float64Array(n);
-  if (n === 0) return { axis, re, im, powerI };
-  const delta = new Float64Array(n);
-  for (let j = 0; j < n; j++) {
-    const partner = source.omegaP - axis.omega[j]!;
-    delta[j] = k.mismatch - k.signal.at(axis.omega[j]!) - k.idler.at(partner);
-    powerI[j] = passes(windowI, source.filters?.idler, partner);
-  }
-  const band = bandCovering(
-    delta.reduce((a, b) => Math.min(a, b)),
-    delta.reduce((a, b) => Math.max(a, b)),
-    source.length,
-  );
-  interpolateSpectrumInto(source.spectrum(band), delta, re, im);
-  for (let j = 0; j < n; j++) {
-    const size = Math.sqrt(source.pump.averagePower * gain * axis.weight[j]! / (2 * Math.PI));
-    re[j]! *= size;
-    im[j]! *= size;
-  }
-  return { axis, re, im, powerI };
-}
-
 /** The same axis seen from the idler: ascending in ω_p − ω. */
 function mirrored(axis: Axis, omegaP: number): Axis {
   const total = axis.omega.length;
@@ -210,54 +165,4 @@ function mirrored(axis: Axis, omegaP: number): Axis {
     })),
     capped: axis.capped,
   };
-}
-
-/** max over τ of |∫C(ν)C*(−ν)e^{2iντ}dν|/∫|C|², ω_s = ω_p/2 + ν, on a grid that is its own mirror image. */
-function exchangeOnLine(prepared: PreparedSource, points: number): { value: Outcome; delay: number | null } {
-  const { source, windowS, windowI } = prepared;
-  const { omegaP } = source;
-  const stated = intersect(windowS.stated, [omegaP - windowI.stated[1], omegaP - windowI.stated[0]]);
-  if (!(stated[1] > stated[0])) return { value: absent("no pair passes the filters"), delay: null };
-  const [lo, hi] = [stated[0] - omegaP / 2, stated[1] - omegaP / 2];
-  if (hi <= 0 || lo >= 0) return { value: given(0), delay: 0 };
-  const half = Math.max(-lo, hi);
-  const n = Math.ceil(points * 2 * half / (hi - lo));
-  const step = 2 * half / n;
-  // only the points inside the window are computed: the curves need not reach to its mirror image
-  const inside = Array.from({ length: n }, (_, j) => omegaP / 2 - half + (j + 0.5) * step)
-    .map((w, j) => ({ w, j })).filter(({ w }) => w > stated[0] && w < stated[1]);
-  const omega = Float64Array.from(inside, (x) => x.w);
-  const axis: Axis = {
-    omega,
-    weight: new Float64Array(omega.length).fill(step),
-    power: omega.map((w) => passes(windowS, source.filters?.signal, w)),
-    segments: [],
-    capped: false,
-  };
-  const line = lineOn(prepared, axis);
-  const re = new Float64Array(n);
-  const im = new Float64Array(n);
-  let norm = 0;
-  inside.forEach(({ j }, q) => {
-    const t = Math.sqrt(axis.power[q]! * line.powerI[q]!);
-    re[j] = t * line.re[q]!;
-    im[j] = t * line.im[q]!;
-    norm += re[j]! ** 2 + im[j]! ** 2;
-  });
-  if (!(norm > 0)) return { value: absent("no pair passes the filters"), delay: null };
-  const swapped = exchangeLine(re, im);
-  const { value, delay } = maximiseOverDelay(swapped.re, swapped.im, 2 * step);
-  return { value: given(value / norm, "exchange overlap"), delay };
-}
-
-/** C(ν)·C*(−ν) point by point. */
-function exchangeLine(re: Float64Array, im: Float64Array): { re: Float64Array; im: Float64Array } {
-  const n = re.length;
-  const out = { re: new Float64Array(n), im: new Float64Array(n) };
-  for (let j = 0; j < n; j++) {
-    const q = n - 1 - j;
-    out.re[j] = re[j]! * re[q]! + im[j]! * im[q]!;
-    out.im[j] = im[j]! * re[q]! - re[j]! * im[q]!;
-  }
-  return out;
 }

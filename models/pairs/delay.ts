@@ -16,8 +16,8 @@ const NEAR_BEST = 0.95;
 const GOLDEN = (Math.sqrt(5) - 1) / 2;
 
 /**
- * Maximum over τ of |S(τ)|, S(τ) = Σ_k D_k·e^{iτk·step}, as for any first frequency of D_0: one FFT to find the highest points, golden
- * section around them. τ is searched over one period, −π/step … π/step.
+ * Maximum over τ of |S(τ)|, S(τ) = Σ_k D_k·e^{iτk·step} (the frequency of D_0 does not matter): one FFT to find the
+ * highest points, golden section around them. τ is searched over one period, −π/step … π/step.
  * @param re D, and `im`
  * @param step of the angular frequency from one D to the next, rad/s
  */

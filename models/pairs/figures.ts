@@ -1,8 +1,16 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { lambdaOf, toNm } from "../../shared/units.ts";
 import { carContinuous, carPulsed, type PairDetection } from "./car.ts";
-import { continuousSpectrum, NO_PURITY } from "./continuous.ts";
+import { continuousSpectrum } from "./continuous.ts";
 import { lowGainRemark } from "./counts.ts";
+import {
+  NO_LIMIT,
+  NO_RATE,
+  NOT_CONTINUOUS,
+  nothing,
+  type PairFigure,
+  type PairPart,
+} from "./figure_names.ts";
 import { g2Heralded, g2Unheralded, powerAtG2 } from "./g2.ts";
 import {
   assembleBudget,
@@ -47,36 +55,6 @@ export interface PairChain {
   readonly unmatched?: string;
 }
 
-/** Output names of this room's figures, in their own units. */
-export const PAIR_FIGURES = [
-  "pairs_per_pulse",
-  "pair_rate_hz",
-  "heralding_signal",
-  "heralding_idler",
-  "purity",
-  "schmidt_number",
-  "g2_unheralded",
-  "g2_heralded",
-  "exchange_overlap",
-  "car",
-  "pump_power_at_g2_mw",
-  "window_signal_nm",
-  "window_idler_nm",
-  "bandwidth_signal_nm",
-  "bandwidth_idler_nm",
-  "survival_signal",
-  "survival_idler",
-  "facet_signal",
-  "facet_idler",
-  "coupling_signal",
-  "coupling_idler",
-  "filter_signal",
-  "filter_idler",
-  "detector_signal",
-  "detector_idler",
-] as const;
-export type PairFigure = typeof PAIR_FIGURES[number];
-
 export interface PairResult {
   readonly figures: Readonly<Record<PairFigure, Outcome>>;
   /** The delay τ (s) at which the exchange overlap is largest; null without overlap. */
@@ -115,7 +93,7 @@ export function assembleFigures(spectrum: PairSpectrum, pump: PairPump, chain: P
   const remarks: string[] = [];
   const pairs = chain.unmatched === undefined
     ? pairPart(spectrum, pump, chain, survival, remarks)
-    : nothing(chain.unmatched, pump);
+    : nothing(chain.unmatched, pump.kind === "pulsed");
   if (spectrum.grid.converged === false) {
     remarks.push(
       `not_converged: the last doubling to ${spectrum.grid.points} points changed a figure by ${
@@ -176,48 +154,6 @@ function factorFigures(signal: Budget, idler: Budget) {
   };
 }
 
-type PairPart = Pick<
-  Record<PairFigure, Outcome>,
-  | "pairs_per_pulse"
-  | "pair_rate_hz"
-  | "purity"
-  | "schmidt_number"
-  | "g2_unheralded"
-  | "g2_heralded"
-  | "exchange_overlap"
-  | "car"
-  | "pump_power_at_g2_mw"
-  | "bandwidth_signal_nm"
-  | "bandwidth_idler_nm"
->;
-
-const PULSED_ONLY = ["pairs_per_pulse", "purity", "schmidt_number", "g2_unheralded", "g2_heralded"] as const;
-const NO_RATE = "a figure of a continuous-wave pump; see pairs_per_pulse";
-const NO_LIMIT = "the request sets no upper limit on g2_heralded";
-
-/** Pair figures of a guide without operating point. */
-function nothing(reason: string, pump: PairPump): PairPart {
-  const no = absent(reason);
-  const part: { -readonly [name in keyof PairPart]: Outcome } = {
-    pairs_per_pulse: no,
-    pair_rate_hz: pump.kind === "pulsed" ? absent(NO_RATE) : no,
-    purity: no,
-    schmidt_number: no,
-    g2_unheralded: no,
-    g2_heralded: no,
-    exchange_overlap: no,
-    car: no,
-    pump_power_at_g2_mw: no,
-    bandwidth_signal_nm: no,
-    bandwidth_idler_nm: no,
-  };
-  if (pump.kind === "continuous") {
-    for (const name of PULSED_ONLY) part[name] = absent(NO_PURITY);
-    part.pump_power_at_g2_mw = absent(NO_PURITY);
-  }
-  return part;
-}
-
 function pairPart(
   spectrum: PairSpectrum,
   pump: PairPump,
@@ -236,7 +172,7 @@ function pairPart(
     if (remark !== null) remarks.push(remark);
   }
   return {
-    pairs_per_pulse: pulsed ? given(made, "pairs per pulse") : absent(NO_PURITY),
+    pairs_per_pulse: pulsed ? given(made, "pairs per pulse") : absent(NOT_CONTINUOUS),
     pair_rate_hz: pulsed ? absent(NO_RATE) : given(made, "pair rate"),
     purity,
     schmidt_number: combine([purity], schmidtNumber),

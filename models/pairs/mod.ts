@@ -8,13 +8,12 @@ export { type DelayMaximum, maximiseOverDelay } from "./delay.ts";
 export {
   type ArmOptics,
   assembleFigures,
-  PAIR_FIGURES,
   type PairChain,
-  type PairFigure,
   pairFigures,
   type PairResult,
   pairSpectrum,
 } from "./figures.ts";
+export { PAIR_FIGURES, type PairFigure } from "./figure_names.ts";
 export { type Filter, filterBand, transmission } from "./filters.ts";
 export { type CorrelationTerms, g2Heralded, g2Unheralded, powerAtG2 } from "./g2.ts";
 export { type ComplexMatrix, type GramMoments, gramMoments } from "./gram.ts";
@@ -60,4 +59,5 @@ export {
   type PreparedSource,
   prepareSource,
 } from "./source.ts";
+export { twoSourceDip } from "./two_sources.ts";
 export { armsSeparable, type ArmWindow, armWindow, type Band, unfilteredHalfWidth } from "./window.ts";

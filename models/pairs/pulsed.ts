@@ -55,7 +55,17 @@ export function jointAmplitude(
   return { amplitude: amplitudeOn(prepared, signal, idler, scratch, true), signal, idler };
 }
 
-function armAxes({ source, windowS, windowI, separable }: PreparedSource, points: number): [Axis, Axis] {
+/**
+ * F on a signal axis of the caller's, dark where that axis blocks, with the arm's own idler axis.
+ * @throws RangeError for a continuous pump
+ */
+export function amplitudeAgainst(prepared: PreparedSource, signal: Axis, points: number): GriddedAmplitude {
+  const idler = armAxes(prepared, points)[1];
+  return { amplitude: amplitudeOn(prepared, signal, idler, newScratch(), false), signal, idler };
+}
+
+function armAxes(prepared: PreparedSource, points: number): [Axis, Axis] {
+  const { source, windowS, windowI, separable } = prepared;
   const { pump, omegaP, filters } = source;
   if (pump.kind !== "pulsed") {
     throw new RangeError("Cannot lay a joint amplitude: found a continuous pump, need pulses");
@@ -70,7 +80,7 @@ function armAxes({ source, windowS, windowI, separable }: PreparedSource, points
     const within: Band = [Math.min(side[0], window.stated[0]), Math.max(side[1], window.stated[1])];
     return armAxis(window, filter, { ...options, within });
   };
-  const own = signalSide(source);
+  const own = signalSide(prepared);
   const other: Band = own[0] > 0 ? [0, omegaP / 2] : [omegaP / 2, Infinity];
   return [axis(windowS, own, filters?.signal), axis(windowI, other, filters?.idler)];
 }
@@ -104,9 +114,9 @@ function computeOn(
   why: string | null,
   scratch: PairScratch,
 ): GridResult {
-  const { source, separable } = prepared;
+  const { separable } = prepared;
   const { amplitude, signal, idler } = jointAmplitude(prepared, points, scratch.main);
-  const side = signalSide(source);
+  const side = signalSide(prepared);
   const counted = (w: number) => separable || (w > side[0] && w < side[1]);
   const sums = pairSums(amplitude, signal, idler, counted);
   if (why !== null || !(sums.both > 0)) {

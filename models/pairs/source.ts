@@ -181,7 +181,12 @@ function checkSource({ omegaP, omegaS, omegaI, length, pump }: PairSource): void
   }
 }
 
-/** Part of the sum-frequency half plane where each pair is counted once: the signal's side of ω_p/2. */
-export function signalSide({ omegaP, omegaS, omegaI }: PairSource): Band {
-  return omegaS >= omegaI ? [omegaP / 2, Infinity] : [0, omegaP / 2];
+/**
+ * For arms of one polarisation: the side of ω_p/2 where the signal is looked for, so that each pair is counted once.
+ * By the windows if they are apart, else by the centres; the upper one if both are the same.
+ */
+export function signalSide({ source, windowS, windowI, separable }: PreparedSource): Band {
+  const { omegaP, omegaS, omegaI } = source;
+  const above = separable ? windowS.stated[0] >= windowI.stated[1] : omegaS >= omegaI;
+  return above ? [omegaP / 2, Infinity] : [0, omegaP / 2];
 }

@@ -1,5 +1,6 @@
 // Pulsed and continuous sources from k(ω) to figures, against closed forms.
 import assert from "node:assert/strict";
+import { differenceFrequencyPrefactor } from "../../../models/conversion/mod.ts";
 import { assertClose } from "../../assert_close.ts";
 import {
   jointAmplitude,
@@ -161,6 +162,16 @@ Deno.test("a continuous pump's rate is PΓ²L²∫|φ|²dω/2π: (2/π)²·PΓ²
   const expected = 1e-3 * gain * (2 / Math.PI) ** 2 / (source.length * delay);
   // ten zeros to each side leave 1/(10π²) of a sinc² outside
   assertClose(pairSpectrum(source).made / expected, 1 - 1 / (10 * Math.PI ** 2), { abs: 3e-4 });
+});
+
+Deno.test("Γ² is the photon gain of difference frequency: what a weak signal grows by is what vacuum makes", () => {
+  const [lambdaS, lambdaI] = [1500e-9, 1 / (1 / 791e-9 - 1 / 1500e-9)];
+  const waves = { lambdaP: 791e-9, lambdaS, lambdaI, polP: "TE", polS: "TE", polI: "TM" } as const;
+  const at = { d: 4e-12, effectiveArea: 3e-11 };
+  const idlerPower = differenceFrequencyPrefactor({ waves, n: { p: 1.8, s: 1.7, i: 1.9 }, ...at });
+  const [omegaS, omegaI] = [omegaOf(lambdaS), omegaOf(lambdaI)];
+  const strength = parametricStrength({ omegaS, omegaI, nP: 1.8, nS: 1.7, nI: 1.9, ...at });
+  assertClose(strength, idlerPower * omegaS / omegaI, { rel: 1e-12 });
 });
 
 const band = (fwhm: number, centre = 1582.18e-9, peak = 1, shape: "flat-top" | "gaussian" = "flat-top") => ({
