@@ -1,5 +1,5 @@
 import stringWidth from "string-width";
-import { type Cell, cellText } from "./values.ts";
+import { type Cell, cellText, visibleText } from "./values.ts";
 
 export interface TableColumn {
   readonly title: string;
@@ -43,12 +43,13 @@ export function textTable(
   { width = 80, colour = false }: TableStyle = {},
 ): string {
   const cells = rows.map((row) => columns.map((column, i) => cellText(row[i], column.digits)));
+  const titles = columns.map((column) => visibleText(column.title));
   const measures = columns.map((column, i) => measure(column, i, rows, cells));
   const widths = fit(measures, width);
   const line = (texts: readonly string[]) =>
     widths.map((w, i) => pad(cut(texts[i]!, w), w, measures[i]!.right)).join(GAP).trimEnd();
-  const heading = line(columns.map((column) => column.title));
-  const missing = columns.slice(widths.length).map((column) => column.title);
+  const heading = line(titles);
+  const missing = titles.slice(widths.length);
   return [
     colour ? `\x1b[1m${heading}\x1b[22m` : heading,
     widths.map((w) => "─".repeat(w)).join(GAP),
@@ -72,7 +73,7 @@ function measure(
     0,
   );
   const widest = cells.reduce((most, row) => Math.max(most, widthOf(row[i]!)), 0);
-  const full = Math.max(widest, widthOf(column.title), 1);
+  const full = Math.max(widest, widthOf(visibleText(column.title)), 1);
   const least = Math.min(full, Math.max(number, LEAST));
   return { full, least, right: column.align === undefined ? numeric : column.align === "right" };
 }

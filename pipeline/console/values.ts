@@ -4,12 +4,14 @@ export type Cell = number | bigint | string | boolean | null | undefined | reado
 };
 
 /**
- * A number with as many significant digits as are asked for; whole numbers in full, since they are counts and ids. An
- * infinity or a NaN is named, never hidden.
+ * A number with as many significant digits as are asked for, but never with zeros in place of digits before the decimal
+ * point; whole numbers in full, since they are counts. An infinity or a NaN is named, never hidden.
  */
 export function numberText(value: number, digits = 6): string {
   if (Number.isInteger(value) && Math.abs(value) < 1e15) return String(value);
-  return String(Number.isFinite(value) ? Number(value.toPrecision(digits)) : value);
+  if (!Number.isFinite(value)) return String(value);
+  if (Math.abs(value) >= 10 ** digits && Math.abs(value) < 1e15) return value.toFixed(0);
+  return String(Number(value.toPrecision(digits)));
 }
 
 /** A cell as text on one line: missing is empty, lists and objects are JSON. */

@@ -33,8 +33,11 @@ export async function startDuckDb(): Promise<Bindings> {
   return bindings;
 }
 
+/** A third of the start-up; a second engine of the same process need not repeat it. */
+let compiled: Promise<WebAssembly.Module> | null = null;
+
 async function instantiate(wasm: URL, imports: WebAssembly.Imports, receive: Receive): Promise<void> {
-  const module = await WebAssembly.compile(await Deno.readFile(wasm));
+  const module = await (compiled ??= Deno.readFile(wasm).then((bytes) => WebAssembly.compile(bytes)));
   const instance = await WebAssembly.instantiate(module, imports);
   receive({ exports: neededExports(module, instance.exports) }, module);
 }

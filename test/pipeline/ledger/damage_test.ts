@@ -109,7 +109,7 @@ for (const [name, damage] of Object.entries(manifestDamages)) {
     ));
 }
 
-Deno.test("a manifest that was changed and renamed to fit still breaks the runs made from it", () =>
+Deno.test("a manifest that was changed and hashed anew no longer fits its folder", () =>
   damaged(
     async (folder, [run]) => {
       const { run: _, ...parts } = run!;
