@@ -53,7 +53,8 @@ export class Remarks {
 
 export const excerpt = (cells: readonly string[]): string => {
   const text = cells.slice(0, 50).map((cell) => cell.slice(0, LONGEST_EXCERPT)).join(" | ");
-  return text.length <= LONGEST_EXCERPT ? text : `${text.slice(0, LONGEST_EXCERPT - 1)}…`;
+  // A cut may fall between the halves of a character.
+  return (text.length <= LONGEST_EXCERPT ? text : `${text.slice(0, LONGEST_EXCERPT - 1)}…`).toWellFormed();
 };
 
 /** A remark as one line: `file:line: statement`. */
