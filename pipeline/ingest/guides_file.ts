@@ -11,7 +11,7 @@ import { checkRow } from "./row_values.ts";
 import type { RunTables } from "./run_tables.ts";
 import { type FileStyle, fileStyle } from "./style.ts";
 import { GUIDES_FILE } from "./run_folder.ts";
-import { ownColumns } from "./tables.ts";
+import { ownColumns } from "../ingest_tables.ts";
 
 const OWN = ownColumns("guides");
 

@@ -5,5 +5,5 @@ export { coverageText } from "./coverage_text.ts";
 export type { Coverage, CoverageCell, CoverageRow } from "./coverage.ts";
 export type { FileCounts } from "./file_run.ts";
 export { type Remark, remarkText } from "./issues.ts";
-export { TABLE_SCHEMAS } from "./tables.ts";
+export { TABLE_SCHEMAS } from "../ingest_tables.ts";
 export { jsonSchemas } from "./json_schemas.ts";

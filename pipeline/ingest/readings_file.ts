@@ -7,7 +7,7 @@ import type { KnownIds, Owner } from "./known_ids.ts";
 import { checkRow, type Values } from "./row_values.ts";
 import type { RunTables } from "./run_tables.ts";
 import type { FileStyle } from "./style.ts";
-import { ownColumns } from "./tables.ts";
+import { ownColumns } from "../ingest_tables.ts";
 
 /** Reads a CSV file of any kind but walls into the kind's table. */
 export async function readReadings(

@@ -1,6 +1,6 @@
 import type { PendingRun } from "../ledger/types.ts";
 import { BATCH_ROWS, TableBatches } from "./table_batches.ts";
-import { TABLE_SCHEMAS } from "./tables.ts";
+import { TABLE_SCHEMAS } from "../ingest_tables.ts";
 
 /** Numbers in lists that are held before a batch is written. */
 const BATCH_WEIGHT = 1 << 20;

@@ -1,6 +1,5 @@
 import type { Schema } from "apache-arrow";
-// The columns only: what an ingest run writes is what a query finds.
-import { TABLE_SCHEMAS } from "../ingest/tables.ts";
+import { TABLE_SCHEMAS } from "../ingest_tables.ts";
 
 /** Names of the tables that always exist for a query. */
 export const BASE_TABLES: readonly string[] = Object.keys(TABLE_SCHEMAS);

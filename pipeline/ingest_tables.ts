@@ -1,8 +1,8 @@
 import { Field, Float64, Int32, List, Schema, Utf8 } from "apache-arrow";
 import { z } from "zod";
-import { guideRowSchema } from "../../shared/schemas/guides.ts";
-import { isNumberColumn, type TableKind } from "../../shared/schemas/lot.ts";
-import { READING_KINDS, READING_SCHEMAS, type ReadingKind } from "../../shared/schemas/readings.ts";
+import { guideRowSchema } from "../shared/schemas/guides.ts";
+import { isNumberColumn, type TableKind } from "../shared/schemas/lot.ts";
+import { READING_KINDS, READING_SCHEMAS, type ReadingKind } from "../shared/schemas/readings.ts";
 
 const text = (name: string, nullable = false) => new Field(name, new Utf8(), nullable);
 const float = (name: string, nullable = false) => new Field(name, new Float64(), nullable);
