@@ -67,7 +67,7 @@ export function armAxis(window: ArmWindow, filter: Filter | undefined, options: 
   return fill(segments, first, filter, capped);
 }
 
-/** One uniform grid over `band`; transmission 0 outside the stated window. */
+/** One uniform grid over `band`; a cell that the stated window covers in part transmits that part. */
 export function commonAxis(band: Band, points: number, window: ArmWindow, filter: Filter | undefined): Axis {
   const axis = fill(
     [{ from: band[0], to: band[1], first: 0, count: points, stated: true }],
@@ -77,7 +77,13 @@ export function commonAxis(band: Band, points: number, window: ArmWindow, filter
   );
   const { stated } = window;
   axis.omega.forEach((w, k) => {
-    if (w < stated[0] || w > stated[1]) axis.power[k] = 0;
+    const width = axis.weight[k]!;
+    const [from, to] = [Math.max(w - width / 2, stated[0]), Math.min(w + width / 2, stated[1])];
+    if (!(to > from)) axis.power[k] = 0;
+    else if (to - from < width * (1 - 1e-9)) {
+      const t = filter === undefined ? 1 : transmission(filter, (from + to) / 2);
+      axis.power[k] = t * (to - from) / width;
+    }
   });
   return axis;
 }

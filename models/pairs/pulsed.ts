@@ -127,45 +127,48 @@ function computeOn(
     sums,
     purity: ratio(moments.squareFiltered, moments.traceFiltered),
     correlation: { ...moments, heralds: sums.idler },
-    exchange: exchangeOn(prepared, signal, idler, amplitude, scratch.exchange),
+    exchange: exchangeOn(prepared, signal, idler, amplitude, points, sums.both, scratch.exchange),
     signal,
     idler,
   };
 }
 
-/** Exchange overlap on one grid over both stated windows; the main grid serves if both arms have the same. */
+/**
+ * Exchange overlap: the product of C and its exchanged self lives where both arms reach, so one grid over what their
+ * stated windows have in common serves both; the norm is that of all pairs behind the filters.
+ */
 function exchangeOn(
   prepared: PreparedSource,
   signal: Axis,
   idler: Axis,
   amplitude: JointAmplitude,
+  points: number,
+  norm: number,
   scratch: Scratch,
 ): DelayMaximum {
   const { source, windowS, windowI } = prepared;
-  const s = windowS.stated;
-  const i = windowI.stated;
-  if (s[1] <= i[0] || i[1] <= s[0]) return { value: 0, delay: 0 };
+  const [s, i] = [windowS.stated, windowI.stated];
+  const band: Band = [Math.max(s[0], i[0]), Math.min(s[1], i[1])];
+  if (!(band[1] > band[0])) return { value: 0, delay: 0 };
   const size = signal.omega.length;
   const same = !windowS.filtered && !windowI.filtered && idler.omega.length === size &&
     signal.omega.every((w, k) => Math.abs(w - idler.omega[k]!) < 1e-6 * signal.weight[0]!);
   if (same) return exchangeOverlap(amplitude, signal.weight[0]!);
-  const band: Band = [Math.min(s[0], i[0]), Math.max(s[1], i[1])];
-  const step = Math.min(shortestStated(signal), shortestStated(idler));
+  const step = Math.min(longestStated(signal), longestStated(idler), (band[1] - band[0]) / points);
   const count = Math.min(Math.ceil((band[1] - band[0]) / step - 1e-9), MOST_POINTS);
   const a = commonAxis(band, count, windowS, source.filters?.signal);
   const b = commonAxis(band, count, windowI, source.filters?.idler);
-  return exchangeOverlap(amplitudeOn(prepared, a, b, scratch, false), a.weight[0]!, a.power, b.power);
+  const common = amplitudeOn(prepared, a, b, scratch, false);
+  return exchangeOverlap(common, a.weight[0]!, a.power, b.power, norm);
 }
 
-const shortestStated = (axis: Axis): number =>
-  axis.segments.filter((x) => x.stated).reduce(
-    (least, x) => Math.min(least, (x.to - x.from) / x.count),
-    Infinity,
-  );
+const longestStated = (axis: Axis): number =>
+  axis.segments.filter((x) => x.stated).reduce((most, x) => Math.max(most, (x.to - x.from) / x.count), 0);
 
 /**
  * Everything that the spectrum decides for a pulsed source: pairs per pulse, purity, what g2 is made of, filter shares,
- * exchange overlap, bandwidths. The grid is refined until purity, pair number and overlap change by less than 1e-3.
+ * exchange overlap, bandwidths. The grid is refined until purity, pair number (relative),
+ * filter shares and overlap change by less than 1e-3.
  * @throws RangeError for a source that cannot be one
  */
 export function pulsedSpectrum(source: PairSource, scratch: PairScratch = newPairScratch()): PairSpectrum {
@@ -199,7 +202,13 @@ export function pulsedSpectrum(source: PairSource, scratch: PairScratch = newPai
 }
 
 function largestChange(a: GridResult, b: GridResult): number {
-  const pairs = b.sums.stated > 0 ? Math.abs(a.sums.stated / b.sums.stated - 1) : 0;
-  if (a.purity === null || b.purity === null || a.exchange === null || b.exchange === null) return pairs;
-  return Math.max(pairs, Math.abs(a.purity - b.purity), Math.abs(a.exchange.value - b.exchange.value));
+  const changes = [
+    b.sums.stated > 0 ? Math.abs(a.sums.stated / b.sums.stated - 1) : 0,
+    ...(["signal", "idler"] as const).map((arm) =>
+      b.sums[arm] > 0 && a.sums[arm] > 0 ? Math.abs(a.sums.both / a.sums[arm] - b.sums.both / b.sums[arm]) : 0
+    ),
+  ];
+  if (a.purity !== null && b.purity !== null) changes.push(Math.abs(a.purity - b.purity));
+  if (a.exchange !== null && b.exchange !== null) changes.push(Math.abs(a.exchange.value - b.exchange.value));
+  return Math.max(...changes);
 }
