@@ -38,7 +38,7 @@ export function continuousSpectrum(source: PairSource): PairSpectrum {
   if (source.pump.kind !== "continuous") throw new RangeError("Cannot take the line of a pulsed pump");
   const prepared = prepareSource(source);
   const { windowS, windowI, separable } = prepared;
-  const { points = POINTS, limit = LIMIT, compare = true } = source.grid ?? {};
+  const { points = POINTS, limit = Math.max(LIMIT, points), compare = true } = source.grid ?? {};
   const compute = (n: number) => computeLine(prepared, n);
   const refined = compare
     ? refine(compute, (a, b) => b.stated > 0 ? Math.abs(a.stated / b.stated - 1) : 0, points, limit)

@@ -174,7 +174,7 @@ const longestStated = (axis: Axis): number =>
 export function pulsedSpectrum(source: PairSource, scratch: PairScratch = newPairScratch()): PairSpectrum {
   const prepared = prepareSource(source);
   const { windowS, windowI, separable } = prepared;
-  const { points = POINTS, limit = LIMIT, compare = true } = source.grid ?? {};
+  const { points = POINTS, limit = Math.max(LIMIT, points), compare = true } = source.grid ?? {};
   const why = separable ? windowS.cut ?? windowI.cut : NOT_SEPARABLE;
   const compute = (n: number) => computeOn(prepared, n, why, scratch);
   const refined = compare

@@ -53,7 +53,7 @@ export interface PairSource {
 export interface GridOptions {
   /** Points across each arm's window to start with; even, default 128 (512 along the line of a continuous pump). */
   readonly points?: number;
-  /** Doubling stops here; default 512 (8192). Equal to `points`: one grid, compared with the half of it. */
+  /** Doubling stops here; default 512 (8192), or `points` if that is more. Equal to `points`: one grid, compared with the half of it. */
   readonly limit?: number;
   /** False: a single grid without comparison, for draws whose nominal case has converged. Default true. */
   readonly compare?: boolean;
