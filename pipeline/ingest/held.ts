@@ -14,12 +14,16 @@ export async function heldOf(ledger: Ledger, lot: string): Promise<Held> {
   return { files: new Map(files.map((file) => [file.name, file])), runs: await ledger.runs() };
 }
 
-/** Counts of a held file as its run's manifest states them. */
-export function heldCounts(held: Held, file: ActiveFile): FileCounts {
-  const input = held.runs.find((run) => run.run === file.run)?.inputs.find((i) => i.name === file.name);
-  const { rows = 0, accepted = 0, quarantined = 0 } = input ?? {};
-  const kind = file.kind as FileCounts["kind"];
-  return { lot: file.lot, name: file.name, kind, sha256: file.sha256, rows, accepted, quarantined };
+/** Counts of all files in force, in order of name, as their runs' manifests state them. */
+export function heldCounts(held: Held): FileCounts[] {
+  const key = (run: string, name: string) => `${run}\n${name}`;
+  const inputs = new Map(
+    held.runs.flatMap((run) => run.inputs.map((i) => [key(run.run, i.name), i] as const)),
+  );
+  return [...held.files.values()].map(({ lot, name, kind, sha256, run }) => {
+    const { rows, accepted, quarantined } = inputs.get(key(run, name))!;
+    return { lot, name, kind: kind as FileCounts["kind"], sha256, rows, accepted, quarantined };
+  });
 }
 
 /** What the files in force cover, without those named in `except`. */

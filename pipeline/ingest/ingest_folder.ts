@@ -22,6 +22,8 @@ export interface IngestStep {
 }
 
 export interface IngestOptions {
+  /** Asked once lot.json is read; throws what is wrong with it (a platform that nobody knows). */
+  readonly checkLot?: (lot: Lot) => Promise<void>;
   /** Called before each file. */
   readonly onProgress?: (step: IngestStep) => void;
 }
@@ -55,6 +57,7 @@ export async function ingestFolder(
   const remarks = new Remarks();
   const listed = await listRunFolder(folder, remarks);
   const { lot, sha256 } = await readLot(listed.lotPath);
+  await options.checkLot?.(lot);
   const sources = [{ name: LOT_FILE, path: listed.lotPath, sha256 }, ...await hashed(listed, options)];
   const held = await heldOf(ledger, lot.lot);
   const changed = sources.filter((source) => held.files.get(source.name)?.sha256 !== source.sha256);
@@ -105,10 +108,9 @@ async function alreadyHeld(
 ): Promise<IngestResult> {
   await learnGuides(guidesPath, lot, known);
   const coverage = coverageOf(lot, known, await heldCoverage(ledger, lot.lot, new Set()), remarks);
-  const inForce = [...held.files.values()];
-  const names = new Set(inForce.map((file) => file.run));
+  const names = new Set([...held.files.values()].map((file) => file.run));
   const newest = held.runs.filter((run) => names.has(run.run)).at(-1)!;
-  const files = inForce.filter((file) => file.name !== LOT_FILE).map((file) => heldCounts(held, file));
+  const files = heldCounts(held).filter((file) => file.name !== LOT_FILE);
   return resultOf(lot, { run: newest.run, files, coverage }, true, remarks);
 }
 

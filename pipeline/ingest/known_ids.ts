@@ -23,8 +23,8 @@ export interface Owner {
   readonly length_mm: number;
 }
 
-/** Suggestions for so many unknown ids are remembered: the search compares with all known ones. */
-const REMEMBERED = 1000;
+/** So many unknown ids get a suggestion: the search compares with all known ones, and a file may be wrong throughout. */
+const SUGGESTIONS = 1000;
 
 /** Wafers of lot.json, and dies and guides of guides.csv: which readings may name. */
 export class KnownIds {
@@ -33,7 +33,8 @@ export class KnownIds {
   readonly #guideNames = new Map<string, string[]>(); // full die id → names of its guides
   readonly #longest = new Map<string, number>(); // die or wafer → mm
   readonly #suggested = new Map<string, string | null>();
-  #last: { wafer: string; die: string | null; guide: string | null; owner: Owner } | null = null;
+  #last: { wafer: string; die: string | null; guide: string | null; owner: Owner | Problem } | null = null;
+  #lastProbable: { ids: string; guide: KnownGuide | null } | null = null;
 
   constructor(readonly wafers: readonly string[]) {}
 
@@ -57,6 +58,8 @@ export class KnownIds {
       this.#longest.set(unit, Math.max(row.length_mm, this.#longest.get(unit) ?? 0));
     }
     this.#suggested.clear();
+    this.#last = null;
+    this.#lastProbable = null;
     return null;
   }
 
@@ -102,7 +105,7 @@ export class KnownIds {
     const last = this.#last;
     if (last !== null && last.guide === guide && last.die === die && last.wafer === wafer) return last.owner;
     const owner = this.#find(wafer, die, guide);
-    if ("scope" in owner) this.#last = { wafer, die, guide, owner };
+    this.#last = { wafer, die, guide, owner };
     return owner;
   }
 
@@ -138,6 +141,12 @@ export class KnownIds {
   probableGuide(wafer: string, die: string, guide: string): KnownGuide | null {
     const known = this.#guides.get(guideId(wafer, die, guide));
     if (known !== undefined) return known;
+    const ids = JSON.stringify([wafer, die, guide]);
+    if (this.#lastProbable?.ids !== ids) this.#lastProbable = { ids, guide: this.#meant(wafer, die, guide) };
+    return this.#lastProbable.guide;
+  }
+
+  #meant(wafer: string, die: string, guide: string): KnownGuide | null {
     const meant = (found: string, ids: readonly string[]) =>
       ids.includes(found) ? found : nearestId(found, ids);
     const w = meant(wafer, this.wafers);
@@ -158,8 +167,8 @@ export class KnownIds {
     const key = `${column}\n${of}\n${found}`;
     let suggestion = this.#suggested.get(key);
     if (suggestion === undefined) {
-      suggestion = nearestId(found, known);
-      if (this.#suggested.size < REMEMBERED) this.#suggested.set(key, suggestion);
+      suggestion = this.#suggested.size < SUGGESTIONS ? nearestId(found, known) : null;
+      if (this.#suggested.size < SUGGESTIONS) this.#suggested.set(key, suggestion);
     }
     const list = known.length === 0 ? "none" : known.slice(0, 8).join(", ") + (known.length > 8 ? " …" : "");
     return {

@@ -139,22 +139,31 @@ function nameParts(pattern: string, stem: string, name: string): [string, string
       { cause },
     );
   };
-  // A repeated group that itself repeats can take for ever on a name that just fails to match.
-  if (
-    /[+*}]\)?[+*{]/.test(pattern.replace(/\\./g, "")) ||
-    /\([^()]*[+*}][^()]*\)[+*{]/.test(pattern.replace(/\\./g, ""))
-  ) {
-    return refuse("repeats a part that is itself repeated; need a simpler expression");
+  // A repeated group that itself repeats, or offers a choice, can take for ever on a name that just fails to match.
+  const bare = pattern.replace(/\\./g, "");
+  if (/[+*}]\)?[+*{]/.test(bare) || /\([^()]*[+*}|][^()]*\)[+*{]/.test(bare)) {
+    return refuse("repeats a part that itself repeats or has alternatives; need a simpler expression");
   }
-  let expression: RegExp;
-  try {
-    expression = new RegExp(pattern, "u");
-  } catch (cause) {
-    return refuse(`is no regular expression (${(cause as Error).message})`, cause);
-  }
+  const expression = regularExpression(
+    pattern,
+    (cause) => refuse(`is no regular expression (${cause.message})`, cause),
+  );
   const match = expression.exec(stem.slice(0, 255));
   if (match === null) return refuse(`does not match the file's stem ${quoteValue(stem)}`);
   const groups = Object.entries(match.groups ?? {});
   if (groups.length === 0) return refuse(`has no named group; need one per column, such as (?<die>\\d+)`);
   return groups.map(([column, text]) => [column, text ?? ""]);
+}
+
+/** With Unicode classes where the pattern allows it: the stricter reading refuses harmless escapes such as `\-`. */
+function regularExpression(pattern: string, refuse: (cause: Error) => never): RegExp {
+  try {
+    return new RegExp(pattern, "u");
+  } catch {
+    try {
+      return new RegExp(pattern);
+    } catch (cause) {
+      return refuse(cause as Error);
+    }
+  }
 }

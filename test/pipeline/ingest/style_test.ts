@@ -82,7 +82,9 @@ Deno.test("a stated unit that lot.json does not turn into the column's is refuse
 Deno.test("styles that cannot be meant are refused, each with its reason", async () => {
   const cases: [object, RegExp][] = [
     [{ name_pattern: "(?<die>\\d+" }, /"name_pattern" .* is no regular expression/],
-    [{ name_pattern: "(?<die>(\\d+)+)x" }, /repeats a part that is itself repeated/],
+    [{ name_pattern: "(?<die>(\\d+)+)x" }, /repeats a part that itself repeats or has alternatives/],
+    [{ name_pattern: "(?<die>a|a)*x" }, /repeats a part that itself repeats or has alternatives/],
+    [{ name_pattern: "(?<die>\\d+)\\-" }, /does not match the file's stem/],
     [{ name_pattern: "(?<die>\\d+)_" }, /does not match the file's stem "cutback"/],
     [
       { name_pattern: "cut(?<dye>back)" },

@@ -77,6 +77,13 @@ Deno.test("a wafer listed twice, and one that is not listed, are errors at their
   );
 });
 
+Deno.test("ids are text, and a missing key is called missing", () => {
+  assert.deepEqual(issues({ wafers: [{ wafer: 5 }] }), [
+    "wafers.0.wafer: need text in quotes, as ids are text",
+  ]);
+  assert.deepEqual(issues({ platform: undefined }), ["platform: the key is missing; need text"]);
+});
+
 Deno.test("dates have to exist, lot ids have to be fit for file names", () => {
   for (const started of ["2026-02-30", "14.9.2026", "2026-9-14"]) {
     assert.match(issues({ started })[0]!, /need a date/);
