@@ -24,16 +24,27 @@ export async function runSql(ledger: Ledger, text: string, options: LoadOptions 
   if (refusal !== null) throw new InputError(`Cannot run the query: ${refusal}`, { value: text });
   const names = await tableNames(ledger);
   using engine = await startEngine();
-  await loadNamed(engine, ledger, tokens, options);
+  const failed = (error: unknown, why: string) =>
+    new InputError(`Cannot run the query: ${why}`, { value: text }, { cause: error });
+  try {
+    await loadNamed(engine, ledger, tokens, options);
+  } catch (error) {
+    throw isOutOfMemory(error) ? failed(error, tooLarge(error)) : error;
+  }
   try {
     const result = engine.query(text);
     return firstWord(tokens) === "explain" ? planLines(result) : result;
   } catch (error) {
-    throw new InputError(`Cannot run the query: ${explained(error, names)}`, { value: text }, {
-      cause: error,
-    });
+    throw failed(error, isOutOfMemory(error) ? tooLarge(error) : explained(error, names));
   }
 }
+
+const isOutOfMemory = (error: unknown): error is Error =>
+  error instanceof WebAssembly.RuntimeError ||
+  (error instanceof Error && /out of memory|bad_alloc/i.test(error.message));
+
+const tooLarge = (error: Error): string =>
+  `what it names does not fit the engine's 4 GB (${error.message}); name fewer columns, or fewer lots`;
 
 /** Names that a query can use, in text order. */
 export async function tableNames(ledger: Ledger): Promise<string[]> {
