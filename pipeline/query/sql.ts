@@ -48,7 +48,8 @@ const tooLarge = (error: Error): string =>
 
 /** Names that a query can use, in text order. */
 export async function tableNames(ledger: Ledger): Promise<string[]> {
-  return [...new Set([...await ledgerTableNames(ledger), ...(await readViews()).keys()])].sort();
+  const tables = await ledgerTableNames(ledger);
+  return [...new Set([...tables, ...(await readViews(new Set(tables))).keys()])].sort();
 }
 
 /** Starts an engine that holds some tables and views of the ledger, for several queries. Dispose of it after use. */
@@ -98,7 +99,7 @@ async function loadViews(
 ) {
   createSchemas(engine);
   const tables = new Set(await ledgerTableNames(ledger));
-  const views = viewsFor(wanted, tables, await readViews());
+  const views = viewsFor(wanted, tables, await readViews(tables));
   let named: Set<string> | null = columns === null ? null : new Set(columns);
   const used = new Set<string>();
   for (const { sql } of views) {
