@@ -2,6 +2,8 @@ import { basename, dirname, join } from "node:path";
 import { fileURLToPath } from "node:url";
 import { parse } from "csv-parse/sync";
 import type { z } from "zod";
+import { type PlatformModel, platformModel } from "../models/decision/mod.ts";
+import { bulkIndexModel, constantAreaModel, tableAreaModel, tableIndexModel } from "../models/guides/mod.ts";
 import { areaRowSchema, indexRowSchema, type Platform, platformSchema } from "../shared/schemas/platform.ts";
 import { InputError } from "../shared/errors.ts";
 import { issueLines, parseJson, readTextFile, sha256 } from "./json_file.ts";
@@ -83,6 +85,26 @@ export async function loadPlatform(id: string, folder?: string): Promise<LoadedP
     );
   }
   return { platform, indexRows, areaRows, file, fingerprint: sha256(hashes.join("\n")) };
+}
+
+/** What a model is built from: plain data, so that it can be handed to a worker. */
+export type PlatformData = Pick<LoadedPlatform, "platform" | "indexRows" | "areaRows" | "file">;
+
+/** Builds the models of a platform. @throws InputError when its tables or axes can't make one */
+export function buildModel({ platform, indexRows, areaRows, file }: PlatformData): PlatformModel {
+  const { index, material, axes } = platform;
+  try {
+    const indexModel = index.from === "bulk"
+      ? bulkIndexModel(material, axes)
+      : tableIndexModel(indexRows!, material, axes, index.nominal);
+    const area = platform.effective_area_um2 !== undefined
+      ? constantAreaModel(platform.effective_area_um2)
+      : tableAreaModel(areaRows!, index.from === "table" ? index.nominal : undefined);
+    return platformModel(platform, indexModel, area);
+  } catch (cause) {
+    if (!(cause instanceof RangeError)) throw cause;
+    throw new InputError(`Cannot use platform ${file}: ${cause.message}`, { file }, { cause });
+  }
 }
 
 async function exists(path: string): Promise<boolean> {

@@ -1,0 +1,55 @@
+import { type Figure } from "../../shared/schemas/figures.ts";
+import { textTable } from "../console/mod.ts";
+import type { RankedEntry, RankedFigure } from "../query/rank.ts";
+import type { LoadedRequest } from "../requests.ts";
+
+const FACTORS = ["survival", "facet", "coupling", "filter", "detector"] as const;
+
+/** What the first die of a ranking does, in a few lines: operating point, and the heralding budget of a pair source. */
+export function budgetText(best: RankedEntry, { request }: LoadedRequest): string {
+  const { figures: f } = best;
+  const lines = [`First: ${best.guide}, ${best.decision}, probability ${best.probability.toFixed(3)}`];
+  const temperature = f.operating_temperature_c;
+  if (temperature.mean !== null) {
+    const others = best.other_temperatures_c === undefined
+      ? ""
+      : `; also at ${best.other_temperatures_c.join(", ")} °C`;
+    lines.push(`Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}`);
+  }
+  if (request.process !== "pair-generation") return lines.join("\n");
+  const arms = ["signal", "idler"] as const;
+  const rows = [
+    ...FACTORS.map((factor) => [factor, ...arms.flatMap((arm) => cells(f[`${factor}_${arm}` as Figure]))]),
+    ["heralding", ...arms.flatMap((arm) => cells(f[`heralding_${arm}`]))],
+  ];
+  const columns = [
+    { title: "budget" },
+    { title: "signal", align: "right" as const },
+    { title: "basis" },
+    { title: "idler", align: "right" as const },
+    { title: "basis" },
+  ];
+  lines.push(textTable(columns, rows, { width: 80 }).trimEnd());
+  if (best.windows_nm !== undefined && f.purity.mean !== null) {
+    const window = (w: readonly number[]) => `${w[0]!.toFixed(1)}–${w[1]!.toFixed(1)} nm`;
+    lines.push(
+      `Purity in the windows ${window(best.windows_nm.signal)} (signal) and ${
+        window(best.windows_nm.idler)
+      } (idler)`,
+    );
+  }
+  lines.push(
+    "Powers are estimates. Laser work follows IEC 60825-1 and the laboratory's laser-safety officer.",
+  );
+  return lines.join("\n");
+}
+
+const cells = (figure: RankedFigure): string[] =>
+  figure.mean === null ? ["–", figure.reason ?? ""] : [withU(figure, 3), figure.basis];
+
+/** Value with its standard uncertainty. */
+function withU({ mean, u }: RankedFigure, decimals: number): string {
+  return u === null || u < 0.5 * 10 ** -decimals
+    ? mean!.toFixed(decimals)
+    : `${mean!.toFixed(decimals)} ± ${u.toFixed(decimals)}`;
+}

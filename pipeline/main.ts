@@ -1,0 +1,165 @@
+// The command line: parses, calls one stage, prints. Exit codes and streams: see the README.
+import { Command, CommanderError, InvalidArgumentError, Option } from "commander";
+import config from "../deno.json" with { type: "json" };
+import { InputError, LedgerError } from "../shared/errors.ts";
+import type { Format } from "./console/mod.ts";
+
+/** What a command's action hands back: its exit code. */
+type Exit = 0 | 1 | 3;
+
+const program = new Command("wavelot")
+  .description(
+    "Follows a wafer of nonlinear waveguides from fabrication records to what each chip will do as a light source.",
+  )
+  .version(config.version)
+  .showHelpAfterError("(--help shows the calls)")
+  .configureOutput({ writeErr: (text) => Deno.stderr.writeSync(new TextEncoder().encode(text)) })
+  .exitOverride();
+
+const ledgerOption = () => new Option("--ledger <dir>", "the ledger's folder").default("./ledger");
+const platformsOption = () => new Option("--platforms <dir>", "a folder of your own platform files");
+const requestsOption = () =>
+  new Option("--requests <dir>", "the folder of request files (default: ./requests, then the examples)");
+const formatOption = () =>
+  new Option("--format <format>", "how to print").choices(["table", "csv", "json"]).default("table");
+const workersOption = () =>
+  new Option("--workers <n>", "threads to compute on (default: all cores)").argParser(wholeNumber(1));
+
+function wholeNumber(least: number): (text: string) => number {
+  return (text) => {
+    const n = Number(text);
+    if (!Number.isSafeInteger(n) || n < least) {
+      throw new InvalidArgumentError(`need a whole number of ${least} or more`);
+    }
+    return n;
+  };
+}
+const collect = (text: string, before: string[]) => [...before, text];
+
+function command(name: string, description: string, example: string): Command {
+  return program.command(name).description(description).addHelpText(
+    "after",
+    `\nExample:\n  wavelot ${example}`,
+  );
+}
+
+let exit: Exit = 0;
+/** An action: its options are the last but one argument. */
+const run = <A extends unknown[]>(action: (...args: A) => Promise<Exit>) => async (...args: A) => {
+  exit = await action(...args);
+};
+
+interface Common {
+  readonly ledger: string;
+  readonly platforms?: string;
+  readonly requests?: string;
+  readonly format: Format;
+  readonly workers?: number;
+}
+
+command("ingest", "take the records of a run folder into the ledger", "ingest runs/K07 --ledger ledger")
+  .argument("<run-folder>", "a folder with lot.json, guides.csv and readings/")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(formatOption())
+  .action(run(async (folder: string, options: Common) => {
+    const { ingestCommand } = await import("./commands/ingest.ts");
+    return await ingestCommand(folder, options);
+  }));
+
+command("predict", "compute the figures of every guide for every request", "predict K07 --requests requests")
+  .argument("[lot]", "one lot (default: every lot of the ledger)")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    workersOption(),
+  )
+  .addOption(formatOption())
+  .action(run(async (lot: string | undefined, options: Common) => {
+    const { predictCommand } = await import("./commands/predict.ts");
+    return await predictCommand(lot, options);
+  }));
+
+command(
+  "rank",
+  "order the dies for a request, each with its best guide",
+  "rank heralded-1582 --lot K07 --top 10",
+)
+  .argument("<request>", "a request's name, or the path of its file")
+  .option("--lot <lot>", "only this lot; may repeat", collect, [])
+  .option("--all-guides", "one line per guide, dies that can't be shipped included")
+  .addOption(new Option("--top <n>", "the first n only").argParser(wholeNumber(1)))
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    workersOption(),
+  )
+  .addOption(formatOption())
+  .action(
+    run(async (request: string, options: Common & { lot: string[]; allGuides?: true; top?: number }) => {
+      const { rankCommand } = await import("./commands/rank.ts");
+      return await rankCommand(request, options);
+    }),
+  );
+
+command(
+  "trace",
+  "show what a figure rests on, down to file and line",
+  "trace K07-1/05/g12 --figure heralding_signal",
+)
+  .argument("<die|guide>", "a full id, such as K07-1/05 or K07-1/05/g12")
+  .requiredOption("--figure <name>", "the figure to trace")
+  .option("--request <request>", "the request that the figure belongs to (needed when there are several)")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    formatOption(),
+  )
+  .action(run(async (id: string, options: Common & { figure: string; request?: string }) => {
+    const { traceCommand } = await import("./commands/trace.ts");
+    return await traceCommand(id, options);
+  }));
+
+command(
+  "sql",
+  "ask the ledger in SQL (read only)",
+  'sql "SELECT die_id, count(*) FROM cutback GROUP BY die_id"',
+)
+  .argument("<query>", "one statement")
+  .addOption(ledgerOption()).addOption(formatOption())
+  .action(run(async (query: string, options: Common) => {
+    const { sqlCommand } = await import("./commands/sql.ts");
+    return await sqlCommand(query, options);
+  }));
+
+command("check", "verify every hash of the ledger", "check --ledger ledger")
+  .addOption(ledgerOption()).addOption(formatOption())
+  .action(run(async (options: Common) => {
+    const { checkCommand } = await import("./commands/check.ts");
+    return await checkCommand(options);
+  }));
+
+command(
+  "demo",
+  "make invented lots of a made-up facility and run the whole job on them",
+  "demo --out demo-out",
+)
+  .addOption(
+    new Option("--out <dir>", "where the invented run folders and their ledger go").default("demo-out"),
+  )
+  .addOption(workersOption())
+  .action(run(async (options: { out: string; workers?: number }) => {
+    const { demoCommand } = await import("./commands/demo.ts");
+    return await demoCommand(options);
+  }));
+
+/** Runs the command line; the exit code is the answer. */
+export async function main(args: readonly string[]): Promise<number> {
+  try {
+    await program.parseAsync([...args], { from: "user" });
+    return exit;
+  } catch (error) {
+    if (error instanceof CommanderError) return error.exitCode === 0 ? 0 : 2;
+    if (error instanceof InputError || error instanceof LedgerError) {
+      console.error(`wavelot: ${error.message}`);
+      return error.exitCode;
+    }
+    console.error("wavelot: an error of the program itself; please report it with what led to it");
+    console.error(error);
+    return 70; // EX_SOFTWARE of sysexits.h: none of the codes 0–3 would be true
+  }
+}
+
+if (import.meta.main) Deno.exit(await main(Deno.args));

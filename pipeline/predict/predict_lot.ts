@@ -1,0 +1,247 @@
+import { DRAWS, SPECTRAL_DRAWS } from "../../models/decision/mod.ts";
+import { materialRange } from "../../models/materials/mod.ts";
+import { InputError } from "../../shared/errors.ts";
+import { sha256 } from "../json_file.ts";
+import { type Ledger, type Manifest, type TableShape, tableStream } from "../ledger/mod.ts";
+import { MODEL_VERSION } from "../model_version.ts";
+import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
+import { type GuideRecord, loadDesign, type LotDesign, recordsOf } from "../records.ts";
+import type { LoadedRequest } from "../requests.ts";
+import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
+import { streamWalls } from "../traits/guide_walls.ts";
+import { loadTraits } from "../traits/load_traits.ts";
+import { TraitPools } from "../traits/pools.ts";
+import type { TraitRow } from "../traits/trait_row.ts";
+import { FigureStore, unavailableDies } from "./figure_store.ts";
+import type { Job, WorkerSetup } from "./jobs.ts";
+import { type JobPool, openPool } from "./pool.ts";
+
+export interface PredictLotOptions {
+  readonly platforms?: string;
+  /** Threads to compute on. */
+  readonly workers: number;
+  /** Guides × requests done, of all. */
+  readonly onProgress?: (done: number, of: number) => void;
+}
+
+export interface PredictedRequest {
+  readonly request: string;
+  readonly run: string;
+  /** False when nothing had changed and nothing was computed. */
+  readonly computed: boolean;
+}
+
+const ROLE_SHAPE = {
+  lot: "text",
+  request: "text",
+  guide_id: "text",
+  role: "text",
+  trait: "text",
+  wavelength_nm: "f64",
+  polarisation: "text",
+  value: "f64",
+  u: "f64",
+  basis: "text",
+  from_unit: "text",
+  distance: "f64",
+  readings_used: "i32",
+  note: "text",
+} as const satisfies TableShape;
+
+/**
+ * Predicts every figure of a lot's guides for some requests; one run per request. A request whose prediction was made from
+ * the same files, platform, request and model is not computed again.
+ * @param ledger open for writing, with the lot's readings reduced
+ * @throws InputError for a wavelength outside the material's range, before anything is computed
+ */
+export async function predictLot(
+  ledger: Ledger,
+  lot: string,
+  requests: readonly LoadedRequest[],
+  options: PredictLotOptions,
+): Promise<PredictedRequest[]> {
+  const design = await loadDesign(ledger, lot);
+  const loaded = await loadPlatform(design.lot.platform, options.platforms);
+  for (const request of requests) checkRange(request, loaded);
+  const reduced = (await ledger.runsInForce("reduce")).find((run) => run.lot === lot);
+  if (reduced === undefined) throw new InputError(`Cannot predict lot ${lot}: its readings are not reduced`);
+  const stale: { request: LoadedRequest; fingerprint: string }[] = [];
+  const done: PredictedRequest[] = [];
+  for (const request of requests) {
+    const fingerprint = sha256(JSON.stringify([
+      "predict",
+      MODEL_VERSION,
+      DRAWS,
+      SPECTRAL_DRAWS,
+      reduced.fingerprint,
+      loaded.fingerprint,
+      request.fingerprint,
+    ]));
+    const held = await ledger.findRun({ kind: "predict", lot, request: request.name, fingerprint });
+    if (held === null) stale.push({ request, fingerprint });
+    else done.push({ request: request.name, run: held.run, computed: false });
+  }
+  if (stale.length === 0) return done;
+  const computed = await compute(ledger, design, loaded, reduced, stale.map((s) => s.request), options);
+  for (const [k, { request, fingerprint }] of stale.entries()) {
+    const run = await ledger.commit({
+      kind: "predict",
+      lot,
+      inputs: [],
+      parents: [reduced.run],
+      parameters: {
+        request: request.name,
+        request_sha256: request.fingerprint,
+        platform: loaded.platform.platform,
+        platform_sha256: loaded.fingerprint,
+        draws: DRAWS,
+        spectral_draws: SPECTRAL_DRAWS,
+        definition: request.request,
+      },
+      modelVersion: MODEL_VERSION,
+      fingerprint,
+      tables: {
+        figures: computed.stores[k]!.figureTable(),
+        decisions: computed.stores[k]!.decisionTable(computed.unavailable),
+        used_traits: roleTable(lot, request.name, computed.roles[k]!),
+      },
+    });
+    done.push({ request: request.name, run: run.run, computed: true });
+  }
+  const order = new Map(requests.map((r, k) => [r.name, k]));
+  return done.sort((a, b) => order.get(a.request)! - order.get(b.request)!);
+}
+
+/** A wavelength at which the material has no index is the request's mistake, and said before anything is computed. */
+function checkRange(request: LoadedRequest, { platform }: LoadedPlatform): void {
+  const { waves } = request;
+  for (
+    const [field, lambda, pol] of [
+      ["pump.wavelength_nm", waves.lambdaP, waves.polP],
+      ["signal.wavelength_nm", waves.lambdaS, waves.polS],
+      ["idler.wavelength_nm", waves.lambdaI, waves.polI],
+    ] as const
+  ) {
+    const [low, high] = materialRange(platform.material, platform.axes[pol]).lambda;
+    if (lambda >= low && lambda <= high) continue;
+    const text = (l: number) => (l * 1e9).toFixed(1);
+    throw new InputError(
+      `Cannot use request ${request.file} on platform ${platform.platform}: ${field} is ${
+        text(lambda)
+      } nm, ` +
+        `outside the index of ${platform.material} for ${pol} (${text(low)}–${text(high)} nm)`,
+      { file: request.file, column: field, value: text(lambda) },
+    );
+  }
+}
+
+interface Computed {
+  readonly stores: FigureStore[];
+  readonly roles: { guide: GuideRecord; roles: readonly RoleTrait[] }[][];
+  readonly unavailable: Map<string, string>;
+}
+
+const BATCH = 4;
+
+async function compute(
+  ledger: Ledger,
+  design: LotDesign,
+  loaded: LoadedPlatform,
+  reduced: Manifest,
+  requests: readonly LoadedRequest[],
+  options: PredictLotOptions,
+): Promise<Computed> {
+  const { lot } = design.lot;
+  const traits = await loadTraits(ledger, reduced);
+  const pools = new TraitPools(loaded.platform, design, traits);
+  const windows = windowsByUnit(await recordsOf(ledger, "poling", lot));
+  const unavailable = unavailableDies(design, await recordsOf(ledger, "cutback", lot));
+  const stores = requests.map((r) => new FigureStore(lot, r.name, design.guides));
+  const roles: Computed["roles"] = requests.map(() => []);
+  const setup: WorkerSetup = {
+    platform: loaded,
+    requests: requests.map((
+      { request, waves, processKey, pulsed, requirements, orderBy, descending, spectrum },
+    ) => ({
+      checked: { request, waves, processKey, pulsed, requirements, orderBy, descending },
+      recorded: spectrum,
+    })),
+  };
+  const total = design.guides.length * requests.length;
+  let finished = 0;
+  const pool = openPool(setup, options.workers, total, ({ request, guide, prediction }) => {
+    stores[request]!.set(guide, prediction);
+    options.onProgress?.(++finished, total);
+  });
+  try {
+    const feed = new Feed(pool);
+    const give = async (index: number, walls: Float64Array | null) => {
+      const guide = design.guides[index]!;
+      for (const [k, request] of setup.requests.entries()) {
+        const resolved = resolveGuide(pools, windows, guide, request.checked, walls);
+        roles[k]!.push({ guide, roles: resolved.roles });
+        await feed.add({ request: k, guide: index, inputs: resolved.inputs });
+      }
+    };
+    const exact = completeWalls(traits);
+    const position = new Map(design.guides.map((g, k) => [g.guide_id, k]));
+    for (const [index, guide] of design.guides.entries()) {
+      if (!exact.has(guide.guide_id)) await give(index, null);
+    }
+    if (exact.size > 0) {
+      for await (const walls of streamWalls(ledger, lot)) {
+        if (exact.get(walls.guide_id) !== walls.refs[0]!.file_name) continue;
+        await give(position.get(walls.guide_id)!, walls.positions_um);
+      }
+    }
+    await feed.flush();
+    await pool.finish();
+  } finally {
+    pool.close();
+  }
+  return { stores, roles, unavailable };
+}
+
+/** Guides with a complete wall list, and the file that it stands in: the last one, where a guide was inspected again. */
+function completeWalls(traits: readonly TraitRow[]): Map<string, string> {
+  const out = new Map<string, string>();
+  for (const row of traits) {
+    if (row.trait === "walls_complete" && row.value === 1) out.set(row.unit, row.readings[0]!.file_name);
+  }
+  return out;
+}
+
+/** Gathers jobs into batches: one message per job would cost as much as a small job. */
+class Feed {
+  #jobs: Job[] = [];
+  constructor(readonly pool: JobPool) {}
+
+  async add(job: Job): Promise<void> {
+    this.#jobs.push(job);
+    if (this.#jobs.length >= BATCH) await this.flush();
+  }
+
+  async flush(): Promise<void> {
+    if (this.#jobs.length > 0) await this.pool.submit(this.#jobs.splice(0));
+  }
+}
+
+function roleTable(lot: string, request: string, guides: Computed["roles"][number]) {
+  const rows = guides.flatMap(({ guide, roles }) => roles.map((role) => ({ guide, role })));
+  return tableStream(ROLE_SHAPE, {
+    lot: rows.map(() => lot),
+    request: rows.map(() => request),
+    guide_id: rows.map((r) => r.guide.guide_id),
+    role: rows.map((r) => r.role.role),
+    trait: rows.map((r) => r.role.trait),
+    wavelength_nm: rows.map((r) => r.role.wavelength_nm),
+    polarisation: rows.map((r) => r.role.polarisation),
+    value: rows.map((r) => r.role.value),
+    u: rows.map((r) => r.role.u),
+    basis: rows.map((r) => r.role.basis),
+    from_unit: rows.map((r) => r.role.from),
+    distance: rows.map((r) => r.role.distance),
+    readings_used: rows.map((r) => r.role.used.length + r.role.refs.length),
+    note: rows.map((r) => r.role.note),
+  });
+}

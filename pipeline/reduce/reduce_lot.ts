@@ -1,0 +1,159 @@
+import { bandForPeak, gratingFromWalls, gratingSpectrum, mainPeaks } from "../../models/poling/mod.ts";
+import { mismatch } from "../../models/guides/mod.ts";
+import { mm, um } from "../../shared/units.ts";
+import { sha256 } from "../json_file.ts";
+import { type Ledger, type Manifest, type TableStream, tableStream } from "../ledger/mod.ts";
+import { buildModel, loadPlatform } from "../platforms.ts";
+import { loadDesign } from "../records.ts";
+import { MODEL_VERSION } from "../model_version.ts";
+import { streamWalls } from "../traits/guide_walls.ts";
+import { REDUCE_REMARK_SHAPE, type ReduceRemark, TRAIT_SHAPE, type TraitRow } from "../traits/trait_row.ts";
+import { loadReadings, type LotReadings, type Reduced } from "./lot_readings.ts";
+import { reduceCutback, reduceFringes } from "./loss.ts";
+import { reduceFacets, reduceModes } from "./optics.ts";
+import { reducePoling, reduceWalls } from "./poling.ts";
+import { reduceTuning, type WallPeaks } from "./tuning.ts";
+
+export interface ReduceResult {
+  readonly run: Manifest;
+  /** False when nothing had changed and nothing was computed. */
+  readonly computed: boolean;
+  readonly remarks: readonly ReduceRemark[];
+}
+
+/**
+ * Reduces the readings in force of a lot to traits with standard uncertainty and the readings used. Nothing is computed
+ * when files, platform and model are those of the last time.
+ * @param ledger open for writing
+ * @throws InputError for an unknown lot or platform
+ */
+export async function reduceLot(ledger: Ledger, lot: string, platforms?: string): Promise<ReduceResult> {
+  const design = await loadDesign(ledger, lot);
+  const loaded = await loadPlatform(design.lot.platform, platforms);
+  const files = await ledger.activeFiles(lot);
+  const fingerprint = sha256(JSON.stringify([
+    "reduce",
+    MODEL_VERSION,
+    loaded.fingerprint,
+    files.map((f) => [f.name, f.sha256, f.run]),
+  ]));
+  const held = await ledger.findRun({ kind: "reduce", lot, fingerprint });
+  if (held !== null) return { run: held, computed: false, remarks: [] };
+  const readings = await loadReadings(ledger, design, loaded.platform, buildModel(loaded));
+  const walls = await walkWalls(ledger, readings);
+  const parts: Reduced[] = [
+    reduceCutback(readings),
+    reduceFringes(readings),
+    reduceModes(readings),
+    reduceFacets(readings),
+    reducePoling(readings),
+    walls.reduced,
+    reduceTuning(readings, walls.peaks),
+  ];
+  const remarks = parts.flatMap((p) => p.remarks);
+  const run = await ledger.commit({
+    kind: "reduce",
+    lot,
+    inputs: [],
+    parents: [...new Set(files.map((f) => f.run))],
+    parameters: { platform: design.lot.platform, platform_sha256: loaded.fingerprint },
+    modelVersion: MODEL_VERSION,
+    fingerprint,
+    tables: {
+      traits: traitTable(lot, parts.flatMap((p) => p.traits)),
+      reduce_remarks: remarkTable(lot, remarks),
+    },
+  });
+  return { run, computed: true, remarks };
+}
+
+/** One pass over the wall lists: their statistics, and the peaks that tuning scans of the same guides are held against. */
+async function walkWalls(
+  ledger: Ledger,
+  readings: LotReadings,
+): Promise<{ reduced: Reduced; peaks: WallPeaks }> {
+  const scanned = new Set(readings.tuning.map((r) => r.guide_id));
+  const reduced: Reduced = { traits: [], remarks: [] };
+  const peaks = new Map<string, number>();
+  for await (const walls of streamWalls(ledger, readings.lot)) {
+    const { traits, remarks } = reduceWalls(readings, walls);
+    reduced.traits.push(...traits);
+    reduced.remarks.push(...remarks);
+    const complete = traits.some((t) => t.trait === "walls_complete" && t.value === 1);
+    if (complete && scanned.has(walls.guide_id)) {
+      const peak = peakOf(readings, walls.guide_id, walls.positions_um);
+      if (peak !== null) peaks.set(walls.guide_id, peak);
+    }
+  }
+  return { reduced, peaks };
+}
+
+/** Δβ·scale (1/m) at the peak of a guide's |φ|², with the sign of the scanned process. */
+function peakOf(readings: LotReadings, guideId: string, positions: Float64Array): number | null {
+  const guide = readings.design.guideById.get(guideId)!;
+  const scan = readings.tuning.find((r) => r.guide_id === guideId)!;
+  const [polS, polI, polP] = scan.polarisations.split(/[+>]/) as ("TE" | "TM")[];
+  const lambda = scan.wavelength_nm * 1e-9;
+  let sign: number;
+  try {
+    const waves = {
+      lambdaP: lambda / 2,
+      lambdaS: lambda,
+      lambdaI: lambda,
+      polP: polP!,
+      polS: polS!,
+      polI: polI!,
+    };
+    sign = Math.sign(mismatch(readings.model.index, waves, scan.temperature_c, { width_um: guide.width_um }));
+  } catch (error) {
+    if (error instanceof RangeError) return null; // the scan itself is refused for it, with the reason
+    throw error;
+  }
+  const period = um(guide.period_um);
+  const poledLength = mm(guide.poled_length_mm);
+  const grating = gratingFromWalls(positions.map(um), {
+    poledFrom: mm(guide.poled_from_mm),
+    poledLength,
+    period,
+    guideLength: mm(guide.length_mm),
+  });
+  const vector = sign * 2 * Math.PI / period;
+  const spectrum = gratingSpectrum(
+    grating,
+    bandForPeak(vector, vector, period, grating.end - grating.start),
+    { poledLength },
+  );
+  return mainPeaks(spectrum)[0]?.deltaBeta ?? null;
+}
+
+function traitTable(lot: string, rows: readonly TraitRow[]): TableStream {
+  const column = <K extends keyof TraitRow>(name: K) => rows.map((r) => r[name]);
+  return tableStream(TRAIT_SHAPE, {
+    lot: rows.map(() => lot),
+    trait: column("trait"),
+    scope: column("scope"),
+    unit: column("unit"),
+    wafer: column("wafer"),
+    die_id: column("die_id"),
+    guide_id: column("guide_id"),
+    width_um: column("width_um"),
+    wavelength_nm: column("wavelength_nm"),
+    polarisation: column("polarisation"),
+    process: column("process"),
+    value: column("value"),
+    u: column("u"),
+    u_from: column("u_from"),
+    method: column("method"),
+    readings: rows.map((r) => JSON.stringify(r.readings)),
+    detail: column("detail"),
+  });
+}
+
+function remarkTable(lot: string, remarks: readonly ReduceRemark[]): TableStream {
+  return tableStream(REDUCE_REMARK_SHAPE, {
+    lot: remarks.map(() => lot),
+    code: remarks.map((r) => r.code),
+    unit: remarks.map((r) => r.unit),
+    statement: remarks.map((r) => r.statement),
+  });
+}

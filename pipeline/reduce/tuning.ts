@@ -1,0 +1,101 @@
+import { effectiveLength, fitTuningScan, isRefused, mismatchSpread } from "../../models/metrology/mod.ts";
+import { mismatch } from "../../models/guides/mod.ts";
+import { mm, nm, um } from "../../shared/units.ts";
+import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
+import type { GuideRecord, TuningRecord } from "../records.ts";
+import { refsOf, type TraitRow } from "../traits/trait_row.ts";
+import { geometryOf, grouped, type LotReadings, placeOf, type Reduced } from "./lot_readings.ts";
+
+/** Correlation length (m) at which a spread of δβ is stated; a spread means nothing without one. */
+const CORRELATION_LENGTH = 1e-3;
+
+/** Peak of |φ|² over Δβ·scale (1/m) of guides whose walls are all known, by guide id. */
+export type WallPeaks = ReadonlyMap<string, number>;
+
+/** Tuning scans: the offset of Δβ that moves the calculated centre onto the measured one, and what the width says. */
+export function reduceTuning(readings: LotReadings, peaks: WallPeaks): Reduced {
+  const out: Reduced = { traits: [], remarks: [] };
+  const scans = grouped(readings.tuning, (r) => `${r.unit}|${r.scan}|${r.polarisations}|${r.file_name}`);
+  for (const scan of scans) reduceScan(readings, scan, peaks, out);
+  return out;
+}
+
+function reduceScan(readings: LotReadings, scan: TuningRecord[], peaks: WallPeaks, out: Reduced): void {
+  const first = scan[0]!;
+  const name = `${first.unit}, scan ${first.scan}`;
+  const refuse = (why: string): void => {
+    out.remarks.push({ code: "tuning_refused", unit: first.unit, statement: `${name}: ${why}` });
+  };
+  const guide = first.guide_id === null ? undefined : readings.design.guideById.get(first.guide_id);
+  if (guide === undefined) {
+    return refuse("a tuning scan calibrates the guide that it names, and this one names none");
+  }
+  const distinct = (f: (r: TuningRecord) => number) => new Set(scan.map(f)).size;
+  const overTemperature = distinct((r) => r.temperature_c) > distinct((r) => r.wavelength_nm);
+  const x = (r: TuningRecord) => overTemperature ? r.temperature_c : r.wavelength_nm;
+  if (guide.poled_length_mm <= 0) return refuse("the guide is not poled");
+  const { process, mismatchAt } = scanProcess(readings, guide, first);
+  // Fitted against the calculated Δβ of each point, not against x: over a scan in temperature Δβ bends, and a sinc² in x
+  // would take the bend for a shift of the centre.
+  let points: { x: number; power: number }[];
+  try {
+    points = scan.map((r) => ({ x: mismatchAt(r), power: r.power_rel }));
+  } catch (error) {
+    if (error instanceof RangeError) return refuse(error.message);
+    throw error;
+  }
+  const fit = fitTuningScan(points);
+  if (isRefused(fit)) return refuse(fit.refused);
+  const off = (k: number) => Math.abs(points[k]!.x - fit.centre.value);
+  const nearest = scan[points.reduce((best, _, k) => off(k) < off(best) ? k : best, 0)]!;
+  const target =
+    (peaks.get(guide.guide_id) ?? Math.sign(fit.centre.value) * 2 * Math.PI / um(guide.period_um)) /
+    readings.model.expansion(nearest.temperature_c);
+  const common = {
+    ...placeOf(first, readings.design),
+    wavelength_nm: nearest.wavelength_nm,
+    polarisation: null,
+    process,
+    u_from: "fit" as const,
+    method: `tuning scan ${first.scan} over ${overTemperature ? "temperature" : "wavelength"}`,
+    readings: refsOf("tuning", scan),
+    detail: `peak near ${x(nearest)} ${overTemperature ? "°C" : "nm"}, width ${
+      fit.fwhm.value.toPrecision(4)
+    } 1/m in Δβ`,
+  } satisfies Partial<TraitRow>;
+  out.traits.push({
+    ...common,
+    trait: "mismatch_offset_per_m",
+    value: target - fit.centre.value,
+    u: fit.centre.u,
+  });
+  const length = effectiveLength(fit.fwhm, 1);
+  out.traits.push({ ...common, trait: "effective_length_mm", value: length.value * 1e3, u: length.u * 1e3 });
+  const spread = mismatchSpread(fit.fwhm, mm(guide.poled_length_mm), CORRELATION_LENGTH);
+  if (!isRefused(spread)) {
+    out.traits.push({
+      ...common,
+      trait: "mismatch_sd_per_m",
+      value: spread.sd.value,
+      u: spread.sd.u,
+      detail: `at a correlation length of ${CORRELATION_LENGTH * 1e3} mm; the curve is ${
+        spread.broadening.value.toFixed(2)
+      } times as wide as the poled length allows`,
+    });
+  }
+}
+
+/** The process that a scan is about, and its Δβ as calculated at a point of the scan. */
+function scanProcess({ model }: LotReadings, guide: GuideRecord, { polarisations }: TuningRecord) {
+  const [a, b, polP] = polarisations.split(/[+>]/) as [Polarisation, Polarisation, Polarisation];
+  // Signal and idler in alphabetic order: the inputs of a second harmonic have none.
+  const [polS, polI] = a <= b ? [a, b] : [b, a];
+  return {
+    process: `${polP}>${polS}+${polI}`,
+    mismatchAt({ wavelength_nm, temperature_c }: TuningRecord): number {
+      const lambda = nm(wavelength_nm);
+      const waves: ThreeWaves = { lambdaP: lambda / 2, lambdaS: lambda, lambdaI: lambda, polP, polS, polI };
+      return mismatch(model.index, waves, temperature_c, geometryOf(guide));
+    },
+  };
+}

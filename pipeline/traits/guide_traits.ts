@@ -1,0 +1,219 @@
+import type {
+  ArmTraits,
+  GuideInputs,
+  PolingTraits,
+  PolingWindow,
+  Role,
+  UsedTrait,
+} from "../../models/decision/mod.ts";
+import type { CheckedRequest } from "../../shared/schemas/request.ts";
+import { mm, toNm, um } from "../../shared/units.ts";
+import type { Basis, Polarisation } from "../../shared/vocabulary.ts";
+import { processName } from "../../models/guides/mod.ts";
+import type { GuideRecord, PolingRecord } from "../records.ts";
+import type { ResolvedTrait, TraitPools } from "./pools.ts";
+import type { ReadingRef } from "./trait_row.ts";
+import { refsOf } from "./trait_row.ts";
+
+/** One trait that a guide's prediction uses, in its role, with where it came from. */
+export interface RoleTrait {
+  readonly role: Role;
+  readonly trait: string;
+  readonly wavelength_nm: number | null;
+  readonly polarisation: Polarisation | null;
+  readonly value: number | null;
+  readonly u: number | null;
+  readonly basis: Basis;
+  /** Unit whose readings were used, or the platform. */
+  readonly from: string;
+  readonly distance: number | null;
+  /** Positions of the trait rows used. */
+  readonly used: readonly number[];
+  /** Readings used directly, without a trait row in between. */
+  readonly refs: readonly ReadingRef[];
+  readonly note: string | null;
+}
+
+/** Poling windows in force, by the full id of the guide, die or wafer that they belong to. */
+export type WindowsByUnit = ReadonlyMap<string, readonly PolingRecord[]>;
+
+export function windowsByUnit(records: readonly PolingRecord[]): WindowsByUnit {
+  const byUnit = new Map<string, PolingRecord[]>();
+  for (const record of records) {
+    const held = byUnit.get(record.unit);
+    if (held === undefined) byUnit.set(record.unit, [record]);
+    else held.push(record);
+  }
+  return byUnit;
+}
+
+/** Everything that one guide's prediction for one request rests on. */
+export interface ResolvedGuide {
+  readonly inputs: GuideInputs;
+  readonly roles: readonly RoleTrait[];
+}
+
+/**
+ * Resolves the traits of a guide for a request. Order of trust for the grating: complete walls, the guide's own poling
+ * windows, windows of its die or wafer, the pooled trait, the platform's default.
+ * @param walls complete wall list of the guide (µm), or null
+ */
+export function resolveGuide(
+  pools: TraitPools,
+  windows: WindowsByUnit,
+  guide: GuideRecord,
+  checked: CheckedRequest,
+  walls: Float64Array | null,
+): ResolvedGuide {
+  const roles: RoleTrait[] = [];
+  const { lambdaP, lambdaS, lambdaI, polP, polS, polI } = checked.waves;
+  const loss = (role: Role, lambda: number, pol: Polarisation): UsedTrait => {
+    const found = pools.need("loss_db_cm", guide, wavelengthNm(lambda), pol);
+    roles.push(roleOf(role, found));
+    return used(found);
+  };
+  const arm = (name: "signal" | "idler", lambda: number, pol: Polarisation): ArmTraits => {
+    const armLoss = loss(`${name}_loss`, lambda, pol);
+    const x = pools.estimate("mfd_x_um", guide, wavelengthNm(lambda), pol);
+    const y = pools.estimate("mfd_y_um", guide, wavelengthNm(lambda), pol);
+    for (const size of [x, y]) if (size !== null) roles.push(roleOf(`${name}_mode`, size));
+    const { facet, resolved } = pools.outputFacet(guide, wavelengthNm(lambda), pol);
+    roles.push(
+      resolved === null
+        ? {
+          role: `${name}_facet`,
+          trait: "reflectivity",
+          wavelength_nm: wavelengthNm(lambda),
+          polarisation: pol,
+          value: null,
+          u: null,
+          basis: "die",
+          from: guide.die_id,
+          distance: null,
+          used: [],
+          refs: [],
+          note: "no coating of the output facet in lot.json: bare, from the effective index",
+        }
+        : roleOf(`${name}_facet`, resolved),
+    );
+    const mode = x === null || y === null
+      ? {
+        reason: `no mode size is known at ${
+          wavelengthNm(lambda)
+        } nm ${pol}: neither read nor a platform default`,
+      }
+      : { x: used(x), y: used(y) };
+    return { loss: armLoss, mode, facet };
+  };
+  const pumpLoss = loss("pump_loss", lambdaP, polP);
+  const signal = arm("signal", lambdaS, polS);
+  const idler = arm("idler", lambdaI, polI);
+  const poling = resolvePoling(pools, windows, guide, walls, roles);
+  const offset = pools.offset(guide, processName(polP, polS, polI), wavelengthNm(2 * lambdaP));
+  if (offset !== null) roles.push(roleOf("phase_matching", offset));
+  const inputs: GuideInputs = {
+    id: guide.guide_id,
+    geometry: { width_um: guide.width_um },
+    length: mm(guide.length_mm),
+    period: um(guide.period_um),
+    poledFrom: mm(guide.poled_from_mm),
+    poledLength: mm(guide.poled_length_mm),
+    pumpLoss,
+    signal,
+    idler,
+    poling,
+    offset: offset === null ? null : used(offset),
+  };
+  return { inputs, roles };
+}
+
+/** Rounded to 1e-6 nm, so that a wavelength that went through SI compares equal to the one in the file. */
+const wavelengthNm = (lambda: number): number => Number(toNm(lambda).toFixed(6));
+
+const used = ({ value, u, basis, key }: ResolvedTrait): UsedTrait => ({ value, u, basis, key });
+
+const roleOf = (role: Role, t: ResolvedTrait): RoleTrait => ({
+  role,
+  trait: t.trait,
+  wavelength_nm: t.wavelength_nm,
+  polarisation: t.polarisation,
+  value: t.value,
+  u: t.u,
+  basis: t.basis,
+  from: t.from,
+  distance: t.distance,
+  used: t.used,
+  refs: [],
+  note: t.otherWidth ? "from guides of another design width" : null,
+});
+
+function resolvePoling(
+  pools: TraitPools,
+  windows: WindowsByUnit,
+  guide: GuideRecord,
+  walls: Float64Array | null,
+  roles: RoleTrait[],
+): PolingTraits {
+  const common = {
+    role: "poling" as const,
+    wavelength_nm: null,
+    polarisation: null,
+    value: null,
+    u: null,
+    distance: null,
+  };
+  if (walls !== null) {
+    const used = pools.positions("walls_complete").filter((k) => {
+      const row = pools.rows[k]!;
+      return row.guide_id === guide.guide_id && row.value === 1;
+    });
+    roles.push({
+      ...common,
+      trait: "walls",
+      basis: "measured",
+      from: guide.guide_id,
+      used,
+      refs: [],
+      note: `${walls.length} walls`,
+    });
+    return { from: "walls", walls: walls.map(um), basis: "measured" };
+  }
+  for (
+    const [basis, unit] of [["measured", guide.guide_id], ["die", guide.die_id], [
+      "wafer",
+      guide.wafer,
+    ]] as const
+  ) {
+    const own = windows.get(unit)?.filter((w) => w.domains > 0) ?? [];
+    if (own.length === 0) continue;
+    roles.push({
+      ...common,
+      trait: "poling windows",
+      basis,
+      from: unit,
+      used: [],
+      refs: refsOf("poling", own),
+      note: `${own.length} windows`,
+    });
+    return { from: "windows", windows: own.map(windowOf), basis };
+  }
+  const need = (trait: "duty" | "duty_sd" | "merged"): UsedTrait => {
+    // Platforms need not speak of merged domains or spread: then there are none, exactly.
+    const found = trait === "duty"
+      ? pools.need(trait, guide, null, null)
+      : pools.estimate(trait, guide, null, null);
+    if (found === null) return { value: 0, u: 0, basis: "platform", key: `${trait}|none` };
+    roles.push(roleOf("poling", found));
+    return { value: found.value, u: found.u, basis: found.basis, key: found.key };
+  };
+  return { from: "duty", duty: need("duty"), dutySd: need("duty_sd"), merged: need("merged") };
+}
+
+const windowOf = (w: PolingRecord): PolingWindow => ({
+  from: mm(w.window_start_mm),
+  length: mm(w.window_length_mm),
+  domains: w.domains,
+  dutyMean: w.duty_mean,
+  dutySd: w.duty_sd,
+  merged: w.merged,
+});

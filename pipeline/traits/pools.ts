@@ -1,0 +1,279 @@
+import { type Estimate, inherit, type Observation, type Pool } from "../../models/pooling/mod.ts";
+import { coatedReflectivity, isRefused, nearestReading } from "../../models/metrology/mod.ts";
+import type { FacetTrait, UsedTrait } from "../../models/decision/mod.ts";
+import { InputError } from "../../shared/errors.ts";
+import type { DefaultTrait, Platform } from "../../shared/schemas/platform.ts";
+import { nm } from "../../shared/units.ts";
+import type { Polarisation } from "../../shared/vocabulary.ts";
+import type { GuideRecord, LotDesign } from "../records.ts";
+import { defaultOf, spreadOf } from "./platform_defaults.ts";
+import type { TraitName, TraitRow } from "./trait_row.ts";
+
+/** A trait as one guide uses it, and how it came about. */
+export interface ResolvedTrait extends UsedTrait {
+  readonly trait: TraitName;
+  readonly polarisation: Polarisation | null;
+  /** Where it is used, nm; null for traits without a wavelength. */
+  readonly wavelength_nm: number | null;
+  /** Farthest reading used, (λ_reading − λ)/λ; null when none was used. */
+  readonly distance: number | null;
+  readonly from: string;
+  /** Positions in the list of trait rows. */
+  readonly used: readonly number[];
+  readonly otherWidth: boolean;
+}
+
+/** How far (as a share of it) a reading's wavelength may be from where it is used. */
+const WITHIN = 0.05;
+
+type PooledTrait = Extract<TraitName, DefaultTrait>;
+
+/** Traits of every guide of a lot: its own readings, else its die's, wafer's, lot's, else the platform's. */
+export class TraitPools {
+  readonly #pools = new Map<string, { pool: Pool; distances: ReadonlyMap<number, number> }>();
+  readonly #byTrait = new Map<TraitName, number[]>();
+
+  constructor(readonly platform: Platform, readonly design: LotDesign, readonly rows: readonly TraitRow[]) {
+    rows.forEach((row, k) => {
+      const held = this.#byTrait.get(row.trait);
+      if (held === undefined) this.#byTrait.set(row.trait, [k]);
+      else held.push(k);
+    });
+  }
+
+  /** Positions of the rows of one trait. */
+  positions(trait: TraitName): readonly number[] {
+    return this.#byTrait.get(trait) ?? [];
+  }
+
+  /**
+   * A pooled trait of a guide; at a wavelength (nm) and polarisation for loss and mode sizes, which take the nearest
+   * reading of the same polarisation within ±5 % (mode sizes scaled with it).
+   * @returns null when there is neither a reading nor a default
+   */
+  estimate(
+    trait: PooledTrait,
+    guide: GuideRecord,
+    wavelength_nm: number | null,
+    polarisation: Polarisation | null,
+  ): ResolvedTrait | null {
+    const key = `${trait}|${wavelength_nm}|${polarisation}`;
+    const fallback = defaultOf(this.platform, trait, polarisation);
+    let held = this.#pools.get(key);
+    if (held === undefined) {
+      held = this.#make(trait, wavelength_nm, polarisation);
+      this.#pools.set(key, held);
+    }
+    let estimate: Estimate;
+    try {
+      estimate = held.pool.estimate({
+        wafer: guide.wafer,
+        die: guide.die_id,
+        guide: guide.guide_id,
+        widthUm: guide.width_um,
+      });
+    } catch (error) {
+      if (error instanceof RangeError && fallback === null) return null;
+      throw error;
+    }
+    const { value, u, basis, from, used, otherWidth } = estimate;
+    const distance = used.reduce<number | null>((far, k) => {
+      const d = held.distances.get(k);
+      return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
+    }, null);
+    return {
+      value,
+      u,
+      basis,
+      key: basis === "platform" ? `${key}|platform` : `${trait}|${polarisation}|${from}|${used.join(",")}`,
+      trait,
+      polarisation,
+      wavelength_nm,
+      distance,
+      from,
+      used,
+      otherWidth,
+    };
+  }
+
+  #make(trait: PooledTrait, wavelength_nm: number | null, polarisation: Polarisation | null) {
+    const distances = new Map<number, number>();
+    const observations: Observation[] = [];
+    for (const units of this.#byUnit(trait, polarisation)) {
+      for (const [k, scale, distance] of chosen(this.rows, units, wavelength_nm, scales(trait))) {
+        const row = this.rows[k]!;
+        if (distance !== null) distances.set(k, distance);
+        observations.push({
+          wafer: row.wafer!,
+          ...(row.die_id === null ? {} : { die: row.die_id }),
+          ...(row.guide_id === null ? {} : { guide: row.guide_id }),
+          ...(row.width_um === null ? {} : { widthUm: row.width_um }),
+          value: row.value * scale,
+          u: row.u * scale,
+          index: k,
+        });
+      }
+    }
+    const fallback = defaultOf(this.platform, trait, polarisation);
+    const at = fallback?.at_nm ?? null;
+    const carried = fallback === null ? null : {
+      value: fallback.value *
+        (scales(trait) && at !== null && wavelength_nm !== null ? wavelength_nm / at : 1),
+      u: fallback.u * (scales(trait) && at !== null && wavelength_nm !== null ? wavelength_nm / at : 1),
+      from: this.platform.platform,
+    };
+    return {
+      pool: inherit(observations, spreadOf(this.platform, trait, fallback), carried, this.design.lot.lot),
+      distances,
+    };
+  }
+
+  /** Rows of a trait and polarisation, unit by unit. */
+  #byUnit(trait: TraitName, polarisation: Polarisation | null): number[][] {
+    const units = new Map<string, number[]>();
+    for (const k of this.positions(trait)) {
+      const row = this.rows[k]!;
+      if (row.polarisation !== polarisation) continue;
+      const held = units.get(row.unit);
+      if (held === undefined) units.set(row.unit, [k]);
+      else held.push(k);
+    }
+    return [...units.values()];
+  }
+
+  /** The same as {@link estimate}; a trait that nothing is known of is an error of the platform file. */
+  need(
+    trait: PooledTrait,
+    guide: GuideRecord,
+    wavelength_nm: number | null,
+    polarisation: Polarisation | null,
+  ): ResolvedTrait {
+    const found = this.estimate(trait, guide, wavelength_nm, polarisation);
+    if (found !== null) return found;
+    throw new InputError(
+      `Platform ${this.platform.platform} gives no default for ${trait}${
+        polarisation === null ? "" : ` (${polarisation})`
+      }, ` +
+        `and nothing was read for ${guide.guide_id}: add it to "defaults"`,
+      { column: `defaults.${trait}` },
+    );
+  }
+
+  /**
+   * The output facet of a guide at a wavelength (nm): bare, or coated with the run's spectrum, or coated with the platform's
+   * default where the spectrum does not reach. Facets are known by the die's coating record: basis `die`.
+   */
+  outputFacet(
+    guide: GuideRecord,
+    wavelength_nm: number,
+    polarisation: Polarisation,
+  ): { facet: FacetTrait; resolved: ResolvedTrait | null } {
+    const coating = this.design.coatingOf.get(`${guide.die_id}|out`);
+    if (coating === undefined) return { facet: { state: "bare", basis: "die" }, resolved: null };
+    const unit = `${coating.coating_run}|out`;
+    const positions = this.positions("reflectivity").filter((k) => this.rows[k]!.unit === unit);
+    const readings = positions.map((k) => this.rows[k]!)
+      .map((r) => ({ lambda: nm(r.wavelength_nm!), reflectivity: r.value, u: r.u }));
+    const found = coatedReflectivity(readings, nm(wavelength_nm));
+    const common = { trait: "reflectivity" as const, polarisation: null, wavelength_nm, otherWidth: false };
+    if (!isRefused(found)) {
+      const used = found.used.map((k) => positions[k]!);
+      const resolved: ResolvedTrait = {
+        ...common,
+        value: found.value,
+        u: found.u,
+        basis: "die",
+        key: `reflectivity|${unit}|${used.join(",")}|${wavelength_nm}`,
+        distance: null,
+        from: coating.coating_run,
+        used,
+      };
+      return { facet: { state: "coated", reflectivity: resolved }, resolved };
+    }
+    const fallback = defaultOf(this.platform, "coated_reflectivity", polarisation);
+    if (fallback === null) {
+      throw new InputError(
+        `Platform ${this.platform.platform} gives no default for coated_reflectivity, and coating run ` +
+          `${coating.coating_run} says nothing at ${
+            wavelength_nm.toFixed(1)
+          } nm (${found.refused}): add it to "defaults"`,
+        { column: "defaults.coated_reflectivity" },
+      );
+    }
+    const resolved: ResolvedTrait = {
+      ...common,
+      value: fallback.value,
+      u: fallback.u,
+      basis: "platform",
+      key: `reflectivity|platform|${wavelength_nm}|${polarisation}`,
+      distance: null,
+      from: this.platform.platform,
+      used: [],
+    };
+    return { facet: { state: "coated", reflectivity: resolved }, resolved };
+  }
+
+  /** Offset of Δβ that scans of this guide found for a process near a fundamental wavelength (nm), or null. */
+  offset(guide: GuideRecord, processKey: string, fundamental_nm: number): ResolvedTrait | null {
+    const own = this.positions("mismatch_offset_per_m").filter((k) => {
+      const row = this.rows[k]!;
+      return row.guide_id === guide.guide_id && row.process === processKey;
+    });
+    const near = chosen(this.rows, own, fundamental_nm, false);
+    if (near.length === 0) return null;
+    const pool = inherit(
+      near.map(([k]) => ({
+        wafer: guide.wafer,
+        die: guide.die_id,
+        guide: guide.guide_id,
+        value: this.rows[k]!.value,
+        u: this.rows[k]!.u,
+        index: k,
+      })),
+      { lotSd: 0, waferSd: 0, dieSd: 0, guideSd: 0 },
+      null,
+      this.design.lot.lot,
+    );
+    const { value, u, used } = pool.estimate({
+      wafer: guide.wafer,
+      die: guide.die_id,
+      guide: guide.guide_id,
+    });
+    return {
+      value,
+      u,
+      basis: "measured",
+      key: `mismatch_offset_per_m|${processKey}|${guide.guide_id}`,
+      trait: "mismatch_offset_per_m",
+      polarisation: null,
+      wavelength_nm: fundamental_nm,
+      distance: near[0]![2],
+      from: guide.guide_id,
+      used,
+      otherWidth: false,
+    };
+  }
+}
+
+/** A mode's size goes with the wavelength; a loss does not. */
+const scales = (trait: TraitName): boolean => trait === "mfd_x_um" || trait === "mfd_y_um";
+
+/** Of one unit's rows those nearest in wavelength: position, factor on value and u, signed distance. */
+function chosen(
+  rows: readonly TraitRow[],
+  unit: readonly number[],
+  wavelength_nm: number | null,
+  scaled: boolean,
+): [position: number, scale: number, distance: number | null][] {
+  if (wavelength_nm === null) return unit.map((k) => [k, 1, null]);
+  const near = nearestReading(
+    unit.map((k) => ({ lambda: nm(rows[k]!.wavelength_nm!) })),
+    nm(wavelength_nm),
+    WITHIN,
+  );
+  if (near === null) return [];
+  return near.repeats.map((r) => {
+    const k = unit[r]!;
+    return [k, scaled ? wavelength_nm / rows[k]!.wavelength_nm! : 1, near.distance];
+  });
+}
