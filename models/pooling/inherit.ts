@@ -40,9 +40,21 @@ export interface Estimate extends Uncertain {
 /** A level whose own spread is estimated needs this many units; with fewer the platform's prior stands. */
 export const UNITS_FOR_OWN_SPREAD = 4;
 
-/** The variance of a platform default is shared equally among the four levels when the platform gives no prior. */
+/** Shares of a platform default's variance by level: lots differ more than wafers, wafers more than dies and guides. */
+const DEFAULT_SHARES = { lot: 0.8, wafer: 0.1, die: 0.05, guide: 0.05 };
+
+/**
+ * Prior spreads when the platform gives a default but no prior: the default's variance, most of it between lots (common
+ * practice, no source).
+ * @param u standard uncertainty of the default
+ */
 export function spreadFromDefault(u: number): Spread {
-  return { lotSd: u / 2, waferSd: u / 2, dieSd: u / 2, guideSd: u / 2 };
+  return {
+    lotSd: u * Math.sqrt(DEFAULT_SHARES.lot),
+    waferSd: u * Math.sqrt(DEFAULT_SHARES.wafer),
+    dieSd: u * Math.sqrt(DEFAULT_SHARES.die),
+    guideSd: u * Math.sqrt(DEFAULT_SHARES.guide),
+  };
 }
 
 /** Estimates of one trait for every guide of a lot. */
