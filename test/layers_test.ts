@@ -31,6 +31,8 @@ Deno.test({
           const target = roomOf(file, (match[1] ?? match[2] ?? match[3])!);
           if (target === null || target === "deno.json") continue; // the program version stands there
           seen++;
+          // The demo command writes the invented lots, whose generator stands with the other invented data.
+          if (file === "pipeline/commands/demo.ts" && target === "fixtures") continue;
           assert.ok(
             ROOMS.indexOf(target) >= 0 && ROOMS.indexOf(target) <= level,
             `${file} imports from ${target}/`,
