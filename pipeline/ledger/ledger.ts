@@ -27,6 +27,8 @@ import type {
 export interface OpenOptions {
   /** Take the one writer's lock, and make the ledger if there is none. */
   readonly write: boolean;
+  /** Reading only: as the ledger stood when the run of this number was the newest. */
+  readonly upTo?: number;
   readonly now?: () => Date;
   /** Called at each point of a commit. */
   readonly onStage?: (stage: CommitStage) => void | Promise<void>;
@@ -38,6 +40,9 @@ export interface OpenOptions {
  */
 export async function openLedger(directory: string, options: OpenOptions): Promise<Ledger> {
   const layout = layoutOf(resolve(directory));
+  if (options.write && options.upTo !== undefined) {
+    throw new TypeError("Cannot write to a ledger as it stood before");
+  }
   if (!options.write) {
     await requireLedger(layout);
     return new OpenLedger(layout, null, options);
@@ -77,7 +82,8 @@ class OpenLedger implements Ledger {
   }
 
   runs(): Promise<readonly Manifest[]> {
-    return this.#runs ??= readRuns(this.layout);
+    const { upTo = Infinity } = this.options;
+    return this.#runs ??= readRuns(this.layout).then((runs) => runs.filter((run) => run.sequence <= upTo));
   }
 
   async begin(kind: string): Promise<PendingRun> {
