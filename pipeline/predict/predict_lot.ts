@@ -8,10 +8,9 @@ import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
 import { type GuideRecord, loadDesign, type LotDesign, recordsOf } from "../records.ts";
 import type { LoadedRequest } from "../requests.ts";
 import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
-import { streamWalls } from "../traits/guide_walls.ts";
+import { completeWalls, streamWalls } from "../traits/guide_walls.ts";
 import { loadTraits } from "../traits/load_traits.ts";
 import { TraitPools } from "../traits/pools.ts";
-import type { TraitRow } from "../traits/trait_row.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import type { Job, WorkerSetup } from "./jobs.ts";
 import { type JobPool, openPool } from "./pool.ts";
@@ -200,15 +199,6 @@ async function compute(
     pool.close();
   }
   return { stores, roles, unavailable };
-}
-
-/** Guides with a complete wall list, and the file that it stands in: the last one, where a guide was inspected again. */
-function completeWalls(traits: readonly TraitRow[]): Map<string, string> {
-  const out = new Map<string, string>();
-  for (const row of traits) {
-    if (row.trait === "walls_complete" && row.value === 1) out.set(row.unit, row.readings[0]!.file_name);
-  }
-  return out;
 }
 
 /** Gathers jobs into batches: one message per job would cost as much as a small job. */

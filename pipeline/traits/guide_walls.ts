@@ -1,6 +1,6 @@
 import type { RecordBatch } from "apache-arrow";
 import type { Ledger } from "../ledger/mod.ts";
-import type { ReadingRef } from "./trait_row.ts";
+import type { ReadingRef, TraitRow } from "./trait_row.ts";
 
 /** The walls of one guide in one file. */
 export interface GuideWalls {
@@ -90,4 +90,13 @@ function joined(guide_id: string, parts: readonly Part[]): GuideWalls {
     quarantined: Math.max(...parts.map((p) => p.quarantined)),
     refs: [{ table: "walls", file_name, source_file, lines }],
   };
+}
+
+/** Guides with a complete wall list, and the file that it stands in: the last one, where a guide was inspected again. */
+export function completeWalls(traits: readonly TraitRow[]): Map<string, string> {
+  const out = new Map<string, string>();
+  for (const row of traits) {
+    if (row.trait === "walls_complete" && row.value === 1) out.set(row.unit, row.readings[0]!.file_name);
+  }
+  return out;
 }
