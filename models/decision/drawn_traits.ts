@@ -1,4 +1,5 @@
 // Pure: no I/O, no clock, no hidden randomness.
+import type { GeometryParameter } from "../guides/mod.ts";
 import { randomFrom } from "../../shared/random.ts";
 import { dbPerCm } from "../../shared/units.ts";
 import { type Bounds, DRAWS, drawTrait, nestedStrata, SPECTRAL_DRAWS } from "./draws.ts";
@@ -38,18 +39,18 @@ const DUTY: Bounds = { low: 0.02, high: 0.98 };
  * Draws the traits of a guide. The seed is the guide's id and the trait's key, so a draw does not depend on the order of
  * guides, and one reading used twice (a second harmonic's signal and idler) is drawn once.
  */
-export function drawTraits(guide: GuideInputs): DrawnTraits {
+export function drawTraits(guide: GuideInputs, sensitivity: MismatchSensitivity = () => 0): DrawnTraits {
   const held = new Map<string, Float64Array>();
-  const draw = (trait: UsedTrait, bounds: Bounds): Float64Array => {
-    const before = held.get(trait.key);
-    if (before !== undefined) return before;
-    const strata = trait.u === 0
-      ? new Float64Array(DRAWS)
-      : nestedStrata(DRAWS, SPECTRAL_DRAWS, randomFrom(`${guide.id}|${trait.key}`));
-    const drawn = drawTrait(trait, bounds, strata);
-    held.set(trait.key, drawn);
-    return drawn;
+  const strataOf = (key: string): Float64Array => {
+    let strata = held.get(key);
+    if (strata === undefined) {
+      held.set(key, strata = nestedStrata(DRAWS, SPECTRAL_DRAWS, randomFrom(`${guide.id}|${key}`)));
+    }
+    return strata;
   };
+  // One reading shares its probabilities, not its values: a mode size is scaled to the wavelength of each arm.
+  const draw = (trait: UsedTrait, bounds: Bounds): Float64Array =>
+    drawTrait(trait, bounds, trait.u === 0 ? new Float64Array(DRAWS) : strataOf(trait.key));
   const loss = (trait: UsedTrait) => draw(trait, NOT_NEGATIVE).map(dbPerCm);
   const arm = ({ mode, facet }: ArmTraits): DrawnArm => ({
     modeX: "reason" in mode ? null : draw(mode.x, SIZE),
@@ -67,6 +68,20 @@ export function drawTraits(guide: GuideInputs): DrawnTraits {
     duty: poling.from === "duty" ? draw(poling.duty, DUTY) : none(),
     dutySd: poling.from === "duty" ? draw(poling.dutySd, NOT_NEGATIVE) : none(),
     merged: poling.from === "duty" ? draw(poling.merged, SHARE) : none(),
-    offset: guide.offset === null ? none() : draw(guide.offset, {}),
+    offset: drawOffset(),
   };
+
+  /** Offset of Δβ: the scan's, and what the errors of the geometry make of it. */
+  function drawOffset(): Float64Array {
+    const offset = guide.offset === null ? none() : Float64Array.from(draw(guide.offset, {}));
+    for (const { parameter, trait } of guide.geometryErrors) {
+      const slope = trait.u === 0 ? 0 : sensitivity(parameter);
+      if (slope === 0) continue;
+      draw(trait, {}).forEach((x, k) => offset[k]! += slope * (x - trait.value));
+    }
+    return offset;
+  }
 }
+
+/** ∂Δβ/∂parameter, 1/m per unit of the parameter's own name. */
+export type MismatchSensitivity = (parameter: GeometryParameter) => number;

@@ -80,9 +80,10 @@ export function basisOfRole(role: Role, guide: GuideInputs): Basis {
     case "poling":
       return polingBasis(guide.poling);
     case "phase_matching":
-      // Without a scan or the guide's own walls the centre is the platform's index at the design period.
-      if (guide.offset !== null) return guide.offset.basis;
-      return guide.poling.from === "walls" ? guide.poling.basis : "platform";
+      // A scan of the guide itself measures the centre, whatever its geometry. Else it is calculated: from the platform's
+      // index, the geometry, and what scans nearby say of both.
+      if (guide.offset === null) return "platform";
+      return weakestBasis([guide.offset.basis, ...guide.geometryErrors.map((e) => e.trait.basis)]);
   }
 }
 

@@ -1,4 +1,5 @@
 // Pure: no I/O, no clock, no hidden randomness.
+import type { GeometryParameter } from "../guides/mod.ts";
 import type { Basis, GuideGeometry, Uncertain } from "../../shared/vocabulary.ts";
 
 /** A trait as a guide's prediction uses it. */
@@ -50,7 +51,10 @@ export type PolingTraits =
 /** Everything that a prediction of one guide rests on; lengths in m at 25 °C. */
 export interface GuideInputs {
   readonly id: string;
+  /** Cross-section as far as it is known: what the index models are asked with. */
   readonly geometry: GuideGeometry;
+  /** What is uncertain about it; `trait.value` is the value in `geometry` (for `width_um` its error against the mask). */
+  readonly geometryErrors: readonly { readonly parameter: GeometryParameter; readonly trait: UsedTrait }[];
   readonly length: number;
   readonly period: number;
   readonly poledFrom: number;
@@ -59,6 +63,9 @@ export interface GuideInputs {
   readonly signal: ArmTraits;
   readonly idler: ArmTraits;
   readonly poling: PolingTraits;
-  /** Offset of Δβ (1/m, at the temperature of operation) that a tuning scan of this process found, or null. */
+  /**
+   * Offset of Δβ (1/m) that a tuning scan of this process found on this guide (then the geometry's errors are in it), or
+   * that scans nearby or the platform suggest; null when the calculated Δβ is taken as it is.
+   */
   readonly offset: UsedTrait | null;
 }

@@ -1,21 +1,22 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { absent, given, type PairFigure, type PairScratch } from "../pairs/mod.ts";
+import type { GeometryParameter } from "../guides/mod.ts";
 import type { Grating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import { type Figure, figureAbsence, FIGURES } from "../../shared/schemas/figures.ts";
 import { nm, toDbPerCm, toNm } from "../../shared/units.ts";
-import type { Basis } from "../../shared/vocabulary.ts";
+import type { Basis, Polarisation } from "../../shared/vocabulary.ts";
 import { conformity, decide, type Decision, meets, summarise } from "./conformity.ts";
 import { type ConversionFigure, predictConversion } from "./conversion_prediction.ts";
 import { DRAWS, SPECTRAL_DRAWS } from "./draws.ts";
-import { type DrawnTraits, drawTraits } from "./drawn_traits.ts";
+import { type DrawnTraits, drawTraits, type MismatchSensitivity } from "./drawn_traits.ts";
 import { FigureDraws } from "./figure_draws.ts";
 import { basisOf } from "./figure_basis.ts";
 import { drawGrating, inspectedGrating } from "./grating_draws.ts";
 import type { GuideInputs } from "./guide_inputs.ts";
 import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
 import { type PairNotes, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
-import type { PlatformModel } from "./platform_model.ts";
+import { type PlatformModel, validTemperatures } from "./platform_model.ts";
 import { type Site, siteAt } from "./site.ts";
 
 /** One figure of one guide. Without a value: the reason. Units are in the figure's name. */
@@ -65,7 +66,7 @@ export function predictGuide(
   guide: GuideInputs,
   options: PredictOptions,
 ): GuidePrediction {
-  const drawn = drawTraits(guide);
+  const drawn = drawTraits(guide, mismatchSensitivity(model, checked, guide));
   const out: Draws = new FigureDraws();
   const loss = (name: Figure, alpha: Float64Array) =>
     alpha.forEach((a, k) => out.set(name, k, given(toDbPerCm(a))));
@@ -90,6 +91,28 @@ export function predictGuide(
   const pairs = predictSite(site, checked, guide, drawn, walls, exists, out, options);
   const remarks = [...pairs?.remarks ?? [], ...indexRemarks(model, site)];
   return conclude(checked, guide, out, exists, nominal, pairs, remarks);
+}
+
+/**
+ * ∂Δβ/∂parameter in the middle of the oven's range: over it the slope changes by a few per cent, which is little beside
+ * the uncertainty that it carries. 0 where the index does not depend on the parameter, or is not known.
+ */
+function mismatchSensitivity(
+  model: PlatformModel,
+  { waves, request }: CheckedRequest,
+  guide: GuideInputs,
+): MismatchSensitivity {
+  const valid = validTemperatures(model, waves, guide.geometry);
+  if ("reason" in valid) return () => 0;
+  const [low, high] = [0, 1].map((k) =>
+    Math.min(valid.range[1], Math.max(valid.range[0], request.oven_c[k]!))
+  );
+  const at = (low! + high!) / 2;
+  const one = (pol: Polarisation, lambda: number, parameter: GeometryParameter) =>
+    2 * Math.PI / lambda * model.index.sensitivity(pol, lambda, at, guide.geometry, parameter);
+  return (parameter) =>
+    one(waves.polP, waves.lambdaP, parameter) - one(waves.polS, waves.lambdaS, parameter) -
+    one(waves.polI, waves.lambdaI, parameter);
 }
 
 function question(checked: CheckedRequest, guide: GuideInputs, walls: Grating | null) {

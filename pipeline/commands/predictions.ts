@@ -40,12 +40,13 @@ export async function bringUpToDate(
   options: CommonOptions,
   lots: readonly string[],
   requests: readonly LoadedRequest[],
+  { quiet = false } = {},
 ): Promise<Predicted[]> {
   await using ledger = await openLedger(options.ledger, { write: true });
   const out: Predicted[] = [];
   for (const lot of await chosenLots(ledger, lots)) {
     const { remarks } = await reduceLot(ledger, lot, options.platforms);
-    noteAll(remarks.map((r) => r.statement));
+    if (!quiet) noteAll(remarks.map((r) => r.statement));
     using bar = progressBar(`predicting ${lot}`);
     const done = await predictLot(ledger, lot, requests, {
       ...(options.platforms === undefined ? {} : { platforms: options.platforms }),

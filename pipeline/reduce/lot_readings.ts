@@ -6,6 +6,7 @@ import {
   type CutbackRecord,
   type FacetsRecord,
   type FringesRecord,
+  type GeometryRecord,
   type GuideRecord,
   type LotDesign,
   type ModesRecord,
@@ -28,6 +29,7 @@ export interface LotReadings {
   readonly facets: readonly FacetsRecord[];
   readonly modes: readonly ModesRecord[];
   readonly tuning: readonly TuningRecord[];
+  readonly geometry: readonly GeometryRecord[];
 }
 
 /** What one kind of reading was reduced to. */
@@ -55,6 +57,7 @@ export async function loadReadings(
     facets: await recordsOf(ledger, "facets", lot),
     modes: await recordsOf(ledger, "modes", lot),
     tuning: await recordsOf(ledger, "tuning", lot),
+    geometry: await recordsOf(ledger, "geometry", lot),
   };
 }
 

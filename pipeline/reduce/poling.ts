@@ -39,7 +39,8 @@ export function reducePoling(readings: LotReadings): Reduced {
 
 function countWindows(windows: readonly PolingRecord[]): PolingCounts | null {
   const domains = windows.reduce((sum, w) => sum + w.domains, 0);
-  if (domains === 0) return null;
+  const merged = windows.reduce((sum, w) => sum + w.merged, 0);
+  if (domains + merged === 0) return null;
   const average = (f: (w: PolingRecord) => number) =>
     windows.reduce((sum, w) => sum + w.domains * f(w), 0) / domains;
   const duty = average((w) => w.duty_mean);
@@ -49,7 +50,7 @@ function countWindows(windows: readonly PolingRecord[]): PolingCounts | null {
     : counted.reduce((sum, w) => sum + (w.duty_mean - duty) ** 2, 0) / (counted.length - 1);
   return {
     domains,
-    merged: windows.reduce((sum, w) => sum + w.merged, 0),
+    merged,
     duty,
     dutySd: Math.sqrt(average((w) => w.duty_sd ** 2)),
     between: Math.sqrt(spread),
@@ -80,6 +81,13 @@ function polingTraits(
   // (L. D. Brown, T. T. Cai & A. DasGupta, Stat. Sci. 16, 101 (2001); from memory).
   const total = domains + merged;
   const share = (merged + 0.5) / (total + 1);
+  const missing: TraitRow = {
+    ...common,
+    trait: "merged",
+    value: merged / total,
+    u: Math.sqrt(share * (1 - share) / (total + 2)),
+  };
+  if (domains === 0) return [missing]; // no domain, so no duty: but that all are missing is known
   return [
     {
       ...common,
@@ -88,7 +96,7 @@ function polingTraits(
       u: Math.hypot(dutySd / Math.sqrt(domains), between / Math.sqrt(Math.max(1, windows))),
     },
     { ...common, trait: "duty_sd", value: dutySd, u: dutySd / Math.sqrt(2 * domains) },
-    { ...common, trait: "merged", value: merged / total, u: Math.sqrt(share * (1 - share) / (total + 2)) },
+    missing,
   ];
 }
 

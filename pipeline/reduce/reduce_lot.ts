@@ -7,7 +7,9 @@ import { buildModel, loadPlatform } from "../platforms.ts";
 import { loadDesign } from "../records.ts";
 import { MODEL_VERSION } from "../model_version.ts";
 import { streamWalls } from "../traits/guide_walls.ts";
+import { TraitPools } from "../traits/pools.ts";
 import { REDUCE_REMARK_SHAPE, type ReduceRemark, TRAIT_SHAPE, type TraitRow } from "../traits/trait_row.ts";
+import { reduceGeometry } from "./geometry.ts";
 import { loadReadings, type LotReadings, type Reduced } from "./lot_readings.ts";
 import { reduceCutback, reduceFringes } from "./loss.ts";
 import { reduceFacets, reduceModes } from "./optics.ts";
@@ -41,6 +43,7 @@ export async function reduceLot(ledger: Ledger, lot: string, platforms?: string)
   if (held !== null) return { run: held, computed: false, remarks: [] };
   const readings = await loadReadings(ledger, design, loaded.platform, buildModel(loaded));
   const walls = await walkWalls(ledger, readings);
+  const geometry = reduceGeometry(readings);
   const parts: Reduced[] = [
     reduceCutback(readings),
     reduceFringes(readings),
@@ -48,7 +51,9 @@ export async function reduceLot(ledger: Ledger, lot: string, platforms?: string)
     reduceFacets(readings),
     reducePoling(readings),
     walls.reduced,
-    reduceTuning(readings, walls.peaks),
+    geometry,
+    // A scan's offset is what is left beside the geometry, as the prediction will know it.
+    reduceTuning(readings, walls.peaks, new TraitPools(loaded.platform, design, geometry.traits)),
   ];
   const remarks = parts.flatMap((p) => p.remarks);
   const run = await ledger.commit({

@@ -1,8 +1,10 @@
 import { effectiveLength, fitTuningScan, isRefused, mismatchSpread } from "../../models/metrology/mod.ts";
 import { mismatch } from "../../models/guides/mod.ts";
 import { mm, nm, um } from "../../shared/units.ts";
-import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
+import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import type { GuideRecord, TuningRecord } from "../records.ts";
+import { resolveGeometry } from "../traits/geometry.ts";
+import type { TraitPools } from "../traits/pools.ts";
 import { refsOf, type TraitRow } from "../traits/trait_row.ts";
 import { geometryOf, grouped, type LotReadings, placeOf, type Reduced } from "./lot_readings.ts";
 
@@ -13,14 +15,20 @@ const CORRELATION_LENGTH = 1e-3;
 export type WallPeaks = ReadonlyMap<string, number>;
 
 /** Tuning scans: the offset of Δβ that moves the calculated centre onto the measured one, and what the width says. */
-export function reduceTuning(readings: LotReadings, peaks: WallPeaks): Reduced {
+export function reduceTuning(readings: LotReadings, peaks: WallPeaks, pools: TraitPools): Reduced {
   const out: Reduced = { traits: [], remarks: [] };
   const scans = grouped(readings.tuning, (r) => `${r.unit}|${r.scan}|${r.polarisations}|${r.file_name}`);
-  for (const scan of scans) reduceScan(readings, scan, peaks, out);
+  for (const scan of scans) reduceScan(readings, scan, peaks, pools, out);
   return out;
 }
 
-function reduceScan(readings: LotReadings, scan: TuningRecord[], peaks: WallPeaks, out: Reduced): void {
+function reduceScan(
+  readings: LotReadings,
+  scan: TuningRecord[],
+  peaks: WallPeaks,
+  pools: TraitPools,
+  out: Reduced,
+): void {
   const first = scan[0]!;
   const name = `${first.unit}, scan ${first.scan}`;
   const refuse = (why: string): void => {
@@ -34,7 +42,7 @@ function reduceScan(readings: LotReadings, scan: TuningRecord[], peaks: WallPeak
   const overTemperature = distinct((r) => r.temperature_c) > distinct((r) => r.wavelength_nm);
   const x = (r: TuningRecord) => overTemperature ? r.temperature_c : r.wavelength_nm;
   if (guide.poled_length_mm <= 0) return refuse("the guide is not poled");
-  const { process, mismatchAt } = scanProcess(readings, guide, first);
+  const { process, mismatchAt } = scanProcess(readings, first, resolveGeometry(pools, guide).geometry);
   // Fitted against the calculated Δβ of each point, not against x: over a scan in temperature Δβ bends, and a sinc² in x
   // would take the bend for a shift of the centre.
   let points: { x: number; power: number }[];
@@ -86,7 +94,7 @@ function reduceScan(readings: LotReadings, scan: TuningRecord[], peaks: WallPeak
 }
 
 /** The process that a scan is about, and its Δβ as calculated at a point of the scan. */
-function scanProcess({ model }: LotReadings, guide: GuideRecord, { polarisations }: TuningRecord) {
+function scanProcess({ model }: LotReadings, { polarisations }: TuningRecord, geometry: GuideGeometry) {
   const [a, b, polP] = polarisations.split(/[+>]/) as [Polarisation, Polarisation, Polarisation];
   // Signal and idler in alphabetic order: the inputs of a second harmonic have none.
   const [polS, polI] = a <= b ? [a, b] : [b, a];
@@ -95,7 +103,7 @@ function scanProcess({ model }: LotReadings, guide: GuideRecord, { polarisations
     mismatchAt({ wavelength_nm, temperature_c }: TuningRecord): number {
       const lambda = nm(wavelength_nm);
       const waves: ThreeWaves = { lambdaP: lambda / 2, lambdaS: lambda, lambdaI: lambda, polP, polS, polI };
-      return mismatch(model.index, waves, temperature_c, geometryOf(guide));
+      return mismatch(model.index, waves, temperature_c, geometry);
     },
   };
 }

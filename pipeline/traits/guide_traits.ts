@@ -11,6 +11,7 @@ import { mm, toNm, um } from "../../shared/units.ts";
 import type { Basis, Polarisation } from "../../shared/vocabulary.ts";
 import { processName } from "../../models/guides/mod.ts";
 import type { GuideRecord, PolingRecord } from "../records.ts";
+import { resolveGeometry } from "./geometry.ts";
 import type { ResolvedTrait, TraitPools } from "./pools.ts";
 import type { ReadingRef } from "./trait_row.ts";
 import { refsOf } from "./trait_row.ts";
@@ -111,9 +112,16 @@ export function resolveGuide(
   const poling = resolvePoling(pools, windows, guide, walls, roles);
   const offset = pools.offset(guide, processName(polP, polS, polI), wavelengthNm(2 * lambdaP));
   if (offset !== null) roles.push(roleOf("phase_matching", offset));
+  const { geometry, errors } = resolveGeometry(pools, guide);
+  for (const { resolved } of errors) roles.push(roleOf("phase_matching", resolved));
+  // A scan of the guide itself measures the sum of all errors of its geometry: they must not be added a second time.
+  const scanned = offset?.basis === "measured";
   const inputs: GuideInputs = {
     id: guide.guide_id,
-    geometry: { width_um: guide.width_um },
+    geometry,
+    geometryErrors: scanned
+      ? []
+      : errors.map(({ parameter, resolved }) => ({ parameter, trait: used(resolved) })),
     length: mm(guide.length_mm),
     period: um(guide.period_um),
     poledFrom: mm(guide.poled_from_mm),
@@ -184,7 +192,7 @@ function resolvePoling(
       guide.wafer,
     ]] as const
   ) {
-    const own = windows.get(unit)?.filter((w) => w.domains > 0) ?? [];
+    const own = windows.get(unit)?.filter((w) => w.domains + w.merged > 0) ?? [];
     if (own.length === 0) continue;
     roles.push({
       ...common,

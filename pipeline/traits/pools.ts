@@ -56,12 +56,13 @@ export class TraitPools {
     guide: GuideRecord,
     wavelength_nm: number | null,
     polarisation: Polarisation | null,
+    process: string | null = null,
   ): ResolvedTrait | null {
-    const key = `${trait}|${wavelength_nm}|${polarisation}`;
+    const key = `${trait}|${wavelength_nm}|${polarisation}|${process}`;
     const fallback = defaultOf(this.platform, trait, polarisation);
     let held = this.#pools.get(key);
     if (held === undefined) {
-      held = this.#make(trait, wavelength_nm, polarisation);
+      held = this.#make(trait, wavelength_nm, polarisation, process);
       this.#pools.set(key, held);
     }
     let estimate: Estimate;
@@ -85,7 +86,9 @@ export class TraitPools {
       value,
       u,
       basis,
-      key: basis === "platform" ? `${key}|platform` : `${trait}|${polarisation}|${from}|${used.join(",")}`,
+      key: basis === "platform"
+        ? `${key}|platform`
+        : `${trait}|${polarisation}|${process}|${from}|${used.join(",")}`,
       trait,
       polarisation,
       wavelength_nm,
@@ -96,10 +99,15 @@ export class TraitPools {
     };
   }
 
-  #make(trait: PooledTrait, wavelength_nm: number | null, polarisation: Polarisation | null) {
+  #make(
+    trait: PooledTrait,
+    wavelength_nm: number | null,
+    polarisation: Polarisation | null,
+    process: string | null,
+  ) {
     const distances = new Map<number, number>();
     const observations: Observation[] = [];
-    for (const units of this.#byUnit(trait, polarisation)) {
+    for (const units of this.#byUnit(trait, polarisation, process)) {
       for (const [k, scale, distance] of chosen(this.rows, units, wavelength_nm, scales(trait))) {
         const row = this.rows[k]!;
         if (distance !== null) distances.set(k, distance);
@@ -128,12 +136,12 @@ export class TraitPools {
     };
   }
 
-  /** Rows of a trait and polarisation, unit by unit. */
-  #byUnit(trait: TraitName, polarisation: Polarisation | null): number[][] {
+  /** Rows of a trait, polarisation and process, unit by unit. */
+  #byUnit(trait: TraitName, polarisation: Polarisation | null, process: string | null): number[][] {
     const units = new Map<string, number[]>();
     for (const k of this.positions(trait)) {
       const row = this.rows[k]!;
-      if (row.polarisation !== polarisation) continue;
+      if (row.polarisation !== polarisation || row.process !== process) continue;
       const held = units.get(row.unit);
       if (held === undefined) units.set(row.unit, [k]);
       else held.push(k);
@@ -213,45 +221,14 @@ export class TraitPools {
     return { facet: { state: "coated", reflectivity: resolved }, resolved };
   }
 
-  /** Offset of Δβ that scans of this guide found for a process near a fundamental wavelength (nm), or null. */
+  /**
+   * Offset of Δβ for a process near a fundamental wavelength (nm). A scan of the guide itself counts as it is; scans of other
+   * guides only where the platform says how far its calculation may be off. Null: no scan and no such default.
+   */
   offset(guide: GuideRecord, processKey: string, fundamental_nm: number): ResolvedTrait | null {
-    const own = this.positions("mismatch_offset_per_m").filter((k) => {
-      const row = this.rows[k]!;
-      return row.guide_id === guide.guide_id && row.process === processKey;
-    });
-    const near = chosen(this.rows, own, fundamental_nm, false);
-    if (near.length === 0) return null;
-    const pool = inherit(
-      near.map(([k]) => ({
-        wafer: guide.wafer,
-        die: guide.die_id,
-        guide: guide.guide_id,
-        value: this.rows[k]!.value,
-        u: this.rows[k]!.u,
-        index: k,
-      })),
-      { lotSd: 0, waferSd: 0, dieSd: 0, guideSd: 0 },
-      null,
-      this.design.lot.lot,
-    );
-    const { value, u, used } = pool.estimate({
-      wafer: guide.wafer,
-      die: guide.die_id,
-      guide: guide.guide_id,
-    });
-    return {
-      value,
-      u,
-      basis: "measured",
-      key: `mismatch_offset_per_m|${processKey}|${guide.guide_id}`,
-      trait: "mismatch_offset_per_m",
-      polarisation: null,
-      wavelength_nm: fundamental_nm,
-      distance: near[0]![2],
-      from: guide.guide_id,
-      used,
-      otherWidth: false,
-    };
+    const found = this.estimate("mismatch_offset_per_m", guide, fundamental_nm, null, processKey);
+    if (found === null || found.basis === "measured") return found;
+    return defaultOf(this.platform, "mismatch_offset_per_m", null) === null ? null : found;
   }
 }
 

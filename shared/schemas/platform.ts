@@ -35,6 +35,11 @@ export const DEFAULT_TRAITS = [
   "duty_sd",
   "merged",
   "coated_reflectivity",
+  "width_error_um",
+  "film_thickness_nm",
+  "etch_depth_nm",
+  "titanium_nm",
+  "mismatch_offset_per_m",
 ] as const;
 export type DefaultTrait = typeof DEFAULT_TRAITS[number];
 
@@ -81,6 +86,13 @@ export const platformSchema = z.strictObject({
     duty_sd: uncertain.optional(),
     merged: uncertain.optional(),
     coated_reflectivity: perPolarisation.optional(),
+    /** Width as made less width as drawn. */
+    width_error_um: uncertain.optional(),
+    film_thickness_nm: uncertain.optional(),
+    etch_depth_nm: uncertain.optional(),
+    titanium_nm: uncertain.optional(),
+    /** How far the calculated Δβ may be off, 1/m; with it, scans speak for the guides near them, too. */
+    mismatch_offset_per_m: uncertain.optional(),
     u_insertion_loss_db: z.number().min(0).optional(),
     u_contrast: z.number().min(0).optional(),
     u_reflectivity: z.number().min(0).optional(),
