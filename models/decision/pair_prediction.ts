@@ -16,7 +16,7 @@ import {
   type PairScratch,
   type PairSource,
   type PairSpectrum,
-  pairSpectrum,
+  pairSpectrumDraws,
   pulse,
   pulseWidth,
   recordedPulse,
@@ -73,16 +73,29 @@ const filterOf = (filter: FilterRequest, lambda: number): Filter => ({
   centre: filter.centre_nm === undefined ? lambda : nm(filter.centre_nm),
 });
 
-/** The source that one grating makes of a site. Filters keep to the request's wavelengths when the pump is tuned. */
+/** φ of a grating at a site, with pump loss (1/m). */
+function gratingAt(
+  { guide, scale, offset }: Site,
+  grating: Grating,
+  lossP: number,
+): PairSource["spectrum"] {
+  const { decay } = pairWeight(lossP);
+  const options = { decay, scale, poledLength: guide.poledLength };
+  // The source counts Δβ without the offset that a scan found; a constant phase is all that the shift leaves out.
+  return (band) => ({
+    ...gratingSpectrum(grating, { ...band, first: band.first + offset }, options),
+    first: band.first,
+  });
+}
+
+/** The source that gratings of one spectrum make of a site. Filters keep to the request's wavelengths when the pump is tuned. */
 export function pairSource(
   site: Site,
   checked: CheckedRequest,
   pump: PairPump,
-  grating: Grating,
-  lossP: number,
-  grid: PairSource["grid"],
+  spectrum: PairSource["spectrum"],
 ): PairSource {
-  const { waves, p, s, i, guide, scale, offset, strength } = site;
+  const { waves, p, s, i, strength } = site;
   const omegaS = omegaOf(waves.lambdaS);
   const omegaP = omegaOf(waves.lambdaP);
   const { signal, idler } = checked.request;
@@ -94,7 +107,6 @@ export function pairSource(
     const [shortest, longest] = site.model.index.range(pol).lambda;
     return [omegaOf(longest), omegaOf(shortest)] as const;
   };
-  const { decay } = pairWeight(lossP);
   return {
     omegaP,
     omegaS,
@@ -107,18 +119,9 @@ export function pairSource(
     d: strength.d,
     effectiveArea: strength.effectiveArea,
     length: siteLength(site),
-    // The source counts Δβ without the offset that a scan found; a constant phase is all that the shift leaves out.
-    spectrum: (band) => ({
-      ...gratingSpectrum(grating, { ...band, first: band.first + offset }, {
-        decay,
-        scale,
-        poledLength: guide.poledLength,
-      }),
-      first: band.first,
-    }),
+    spectrum,
     pump,
     filters,
-    ...(grid === undefined ? {} : { grid }),
   };
 }
 
@@ -199,7 +202,9 @@ export function predictPairs(
   const { request } = checked;
   const signal = armOptics(site, "signal", guide.signal, drawn.signal, request.signal);
   const idler = armOptics(site, "idler", guide.idler, drawn.idler, request.idler);
-  const poled = convertingStretches(guide, walls).map((s) => ({ from: s.from * scale, to: s.to * scale }));
+  // Windows may say that a stretch has no domains: any of the gratings that follow them shows it.
+  const shown = walls ?? (guide.poling.from === "windows" ? question.grating(0) : null);
+  const poled = convertingStretches(guide, shown).map((s) => ({ from: s.from * scale, to: s.to * scale }));
   let notes: PairNotes | null = null;
   const remarks = new Set<string>();
   for (let k = 0; k < DRAWS; k++) {
@@ -237,22 +242,21 @@ const sameRemark = (a: string, b: string) => a.split(":", 1)[0] === b.split(":",
  */
 function pairSpectra(question: PairQuestion, pump: PairPump, scratch: PairScratch): PairSpectrum[] {
   const { site, checked, drawn, exists, walls } = question;
-  const of = (k: number, grid?: PairSource["grid"]) =>
-    pairSpectrum(pairSource(site, checked, pump, question.grating(k), drawn.lossP[k]!, grid), scratch);
-  const first = of(0);
+  const spectrumOf = (k: number) => gratingAt(site, question.grating(k), drawn.lossP[k]!);
+  const { refined: first, base, draw } = pairSpectrumDraws(
+    pairSource(site, checked, pump, spectrumOf(0)),
+    scratch,
+  );
   // Without any operating point only the filter's share is asked for: one spectrum is enough.
   if (!exists.some((x) => x === 1)) return [first];
-  const points = first.grid.converged === true ? Math.max(32, first.grid.points / 2) : first.grid.points;
-  const coarse = (k: number) => of(k, { points, limit: points, compare: false });
   const draws = Array.from({ length: SPECTRAL_DRAWS }, (_, k) => k);
-  const base = coarse(0);
-  if (walls === null) return draws.map((k) => k === 0 ? first : carried(first, base, coarse(k)));
+  if (walls === null) return draws.map((k) => k === 0 ? first : carried(first, base, draw(spectrumOf(k))));
   // An inspected grating leaves pump loss alone to vary, and that weakly: linear between its extremes.
   const byLoss = [...draws].sort((a, b) => drawn.lossP[a]! - drawn.lossP[b]!);
   const [least, most] = [byLoss[0]!, byLoss.at(-1)!];
   const span = drawn.lossP[most]! - drawn.lossP[least]!;
   if (span === 0) return [first];
-  const [low, high] = [coarse(least), coarse(most)];
+  const [low, high] = [draw(spectrumOf(least)), draw(spectrumOf(most))];
   return draws.map((k) =>
     k === 0 ? first : carried(first, base, between(low, high, (drawn.lossP[k]! - drawn.lossP[least]!) / span))
   );

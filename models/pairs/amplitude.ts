@@ -3,6 +3,7 @@ import { type GratingSpectrum, interpolateSpectrumInto } from "../poling/mod.ts"
 import type { Axis } from "./axis.ts";
 import type { Curve } from "./curve.ts";
 import type { PumpSpectrum } from "./pump.ts";
+import { lookUp, pumpTable } from "./pump_table.ts";
 
 /** Wave numbers of the three waves against angular frequency, as curves that are cheap to evaluate. */
 export interface WaveNumbers {
@@ -36,11 +37,14 @@ export interface Scratch {
   delta: Float64Array;
   psiRe: Float64Array;
   psiIm: Float64Array;
+  /** … and everything in F but ψ. */
+  factorRe: Float64Array;
+  factorIm: Float64Array;
 }
 
 export function newScratch(): Scratch {
   const none = new Float64Array(0);
-  return { re: none, im: none, delta: none, psiRe: none, psiIm: none };
+  return { re: none, im: none, delta: none, psiRe: none, psiIm: none, factorRe: none, factorIm: none };
 }
 
 /** Grids and pump on which an amplitude is asked for, with the Δβ that it will look up. */
@@ -54,13 +58,9 @@ export interface PreparedGrid {
   readonly lowest: number;
   readonly highest: number;
   readonly scratch: Scratch;
+  /** What the factors in the scratch were computed for: gratings that share it differ in ψ only. Null: not yet. */
+  factorsFor: { readonly pump: PumpSpectrum; readonly centre: number; readonly strength: number } | null;
 }
-
-/** Least number of points on which the pump factor is tabulated. */
-const PUMP_POINTS = 2048;
-const MOST_PUMP_POINTS = 32768;
-/** Largest change of the pump factor's phase from point to point, rad. */
-const PUMP_PHASE_STEP = 0.1;
 
 /**
  * First half of a joint amplitude: which cells the pump lights, and their Δβ = k_p − k_s − k_i.
@@ -106,7 +106,7 @@ export function prepareGrid(
       if (d > highest) highest = d;
     }
   }
-  return { signal, idler, from, to, cells, lowest, highest, scratch };
+  return { signal, idler, from, to, cells, lowest, highest, scratch, factorsFor: null };
 }
 
 /**
@@ -125,50 +125,65 @@ export function fillAmplitude(
   const { signal, idler, from, to, cells, scratch } = grid;
   const rows = signal.omega.length;
   const cols = idler.omega.length;
-  const { re, im, delta, psiRe, psiIm } = scratch;
+  const { re, im, delta, psiRe, psiIm, factorRe, factorIm } = scratch;
+  const { centre } = spectrum;
+  const held = grid.factorsFor;
+  if (held === null || held.pump !== pump || held.centre !== centre || held.strength !== strength) {
+    factorsInto(grid, k, pump, centre, strength);
+    grid.factorsFor = { pump, centre, strength };
+  }
   interpolateSpectrumInto(
     { ...spectrum, centre: 0 },
     delta.subarray(0, cells),
     psiRe.subarray(0, cells),
     psiIm.subarray(0, cells),
   );
-  const table = pumpTable(pump, k, spectrum.centre);
-  const a = { re: 0, im: 0 };
-  // e^{iΔβ·centre} less what the pump table carries: e^{i(Δβ₀ + k′_pΩ − k_s − k_i)·centre}, Ω = ω_s + ω_i − ω_p0
-  const z = spectrum.centre;
-  const u = phases(
-    signal,
-    k.signal,
-    k.pumpDelay,
-    pump.carrier,
-    k.mismatch,
-    z,
-    Math.sqrt(strength) / (2 * Math.PI),
-  );
-  const v = phases(idler, k.idler, k.pumpDelay, 0, 0, z, 1);
   let cell = 0;
   for (let j = 0; j < rows; j++) {
     const row = j * cols;
     const end = to[j]!;
     re.fill(0, row, row + from[j]!);
     im.fill(0, row, row + from[j]!);
-    const shift = signal.omega[j]! - pump.carrier;
-    const uRe = u.re[j]!;
-    const uIm = u.im[j]!;
     for (let l = from[j]!; l < end; l++, cell++) {
-      lookUp(table, idler.omega[l]! + shift, a);
-      const aRe = a.re * psiRe[cell]! - a.im * psiIm[cell]!;
-      const aIm = a.re * psiIm[cell]! + a.im * psiRe[cell]!;
-      const wRe = uRe * v.re[l]! - uIm * v.im[l]!;
-      const wIm = uRe * v.im[l]! + uIm * v.re[l]!;
-      re[row + l] = aRe * wRe - aIm * wIm;
-      im[row + l] = aRe * wIm + aIm * wRe;
+      re[row + l] = factorRe[cell]! * psiRe[cell]! - factorIm[cell]! * psiIm[cell]!;
+      im[row + l] = factorRe[cell]! * psiIm[cell]! + factorIm[cell]! * psiRe[cell]!;
     }
     re.fill(0, row + end, row + cols);
     im.fill(0, row + end, row + cols);
   }
   const size = rows * cols;
   return { rows, cols, re: re.subarray(0, size), im: im.subarray(0, size), from, to };
+}
+
+/** α(ω_s + ω_i)·e^{iΔβ·centre}·√(strength·w_sw_i)/2π of every lit cell. */
+function factorsInto(
+  grid: PreparedGrid,
+  k: WaveNumbers,
+  pump: PumpSpectrum,
+  z: number,
+  strength: number,
+): void {
+  const { signal, idler, from, to, scratch } = grid;
+  const { factorRe, factorIm } = scratch;
+  const table = pumpTable(pump, k, z);
+  const a = { re: 0, im: 0 };
+  // e^{iΔβ·z} less what the pump table carries: e^{i(Δβ₀ + k′_pΩ − k_s − k_i)·z}, Ω = ω_s + ω_i − ω_p0
+  const scale = Math.sqrt(strength) / (2 * Math.PI);
+  const u = phases(signal, k.signal, k.pumpDelay, pump.carrier, k.mismatch, z, scale);
+  const v = phases(idler, k.idler, k.pumpDelay, 0, 0, z, 1);
+  let cell = 0;
+  for (let j = 0; j < signal.omega.length; j++) {
+    const shift = signal.omega[j]! - pump.carrier;
+    const uRe = u.re[j]!;
+    const uIm = u.im[j]!;
+    for (let l = from[j]!; l < to[j]!; l++, cell++) {
+      lookUp(table, idler.omega[l]! + shift, a);
+      const wRe = uRe * v.re[l]! - uIm * v.im[l]!;
+      const wIm = uRe * v.im[l]! + uIm * v.re[l]!;
+      factorRe[cell] = a.re * wRe - a.im * wIm;
+      factorIm[cell] = a.re * wIm + a.im * wRe;
+    }
+  }
 }
 
 function phases(
@@ -193,52 +208,9 @@ function phases(
   return { re, im };
 }
 
-/** The pump's factor α(Ω)·e^{i(k_p − k_p0 − k′_p0Ω)·centre}, tabulated over its support. */
-interface PumpTable {
-  readonly lo: number;
-  readonly perStep: number;
-  readonly re: Float64Array;
-  readonly im: Float64Array;
-}
-
-function pumpTable(pump: PumpSpectrum, k: WaveNumbers, centre: number): PumpTable {
-  const span = pump.hi - pump.lo;
-  const bend = (x: number) => pump.gdd * x * x / 2 + (k.pump.at(x) - k.pumpDelay * x) * centre;
-  // the phase is close to a parabola: its slope is largest at an end
-  const h = span * 1e-3;
-  const fastest = Math.max(
-    Math.abs(bend(pump.lo + h) - bend(pump.lo)),
-    Math.abs(bend(pump.hi) - bend(pump.hi - h)),
-  ) / h;
-  const wanted = Math.ceil(fastest * span / PUMP_PHASE_STEP);
-  const n = Math.min(Math.max(wanted, PUMP_POINTS), MOST_PUMP_POINTS);
-  const step = span / (n - 1);
-  const re = new Float64Array(n);
-  const im = new Float64Array(n);
-  for (let q = 0; q < n; q++) {
-    const x = q === n - 1 ? pump.hi : pump.lo + q * step;
-    const size = pump.envelope(x);
-    const phase = bend(x);
-    re[q] = size * Math.cos(phase);
-    im[q] = size * Math.sin(phase);
-  }
-  return { lo: pump.lo, perStep: 1 / step, re, im };
-}
-
-/** Cubic interpolation of the table at Ω. */
-function lookUp(table: PumpTable, x: number, out: { re: number; im: number }): void {
-  const u = (x - table.lo) * table.perStep;
-  const { re, im } = table;
-  const last = re.length - 4;
-  let i = Math.floor(u) - 1;
-  i = i < 0 ? 0 : i > last ? last : i;
-  const a = u - i, b = a - 1, c = a - 2, d = a - 3;
-  const w0 = -b * c * d / 6, w1 = a * c * d / 2, w2 = -a * b * d / 2, w3 = a * b * c / 6;
-  out.re = w0 * re[i]! + w1 * re[i + 1]! + w2 * re[i + 2]! + w3 * re[i + 3]!;
-  out.im = w0 * im[i]! + w1 * im[i + 1]! + w2 * im[i + 2]! + w3 * im[i + 3]!;
-}
+const ARRAYS = ["re", "im", "delta", "psiRe", "psiIm", "factorRe", "factorIm"] as const;
 
 function grow(scratch: Scratch, size: number): void {
   if (scratch.re.length >= size) return;
-  for (const key of ["re", "im", "delta", "psiRe", "psiIm"] as const) scratch[key] = new Float64Array(size);
+  for (const key of ARRAYS) scratch[key] = new Float64Array(size);
 }

@@ -1,8 +1,8 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { Axis, Segment } from "./axis.ts";
-import { exchangeOnLine } from "./line_exchange.ts";
+import { layExchange } from "./line_exchange.ts";
 import { NOT_CONTINUOUS } from "./figure_names.ts";
-import { intersect, type Line, lineOn, passes } from "./line.ts";
+import { intersect, type LaidLine, layLine, type Line, lineOn, passes } from "./line.ts";
 import { bandwidth } from "./marginals.ts";
 import { absent, type Outcome } from "./outcome.ts";
 import { refine } from "./schmidt.ts";
@@ -13,6 +13,7 @@ import {
   type PreparedSource,
   prepareSource,
   signalSide,
+  type SpectrumDraws,
 } from "./source.ts";
 import { type Band, NOT_SEPARABLE, openEnds } from "./window.ts";
 
@@ -34,33 +35,68 @@ interface LineResult {
  * the stated windows, filter shares, bandwidths, exchange overlap. No purity is claimed.
  * @throws RangeError for a pulsed pump, or a source that cannot be one
  */
-export function continuousSpectrum(source: PairSource): PairSpectrum {
+export const continuousSpectrum = (source: PairSource): PairSpectrum => continuousDraws(source).refined;
+
+/** {@link continuousSpectrum}, and the same source with other gratings on the grid before the last. See {@link SpectrumDraws}. */
+export function continuousDraws(source: PairSource): SpectrumDraws {
   if (source.pump.kind !== "continuous") throw new RangeError("Cannot take the line of a pulsed pump");
   const prepared = prepareSource(source);
-  const { windowS, windowI, separable } = prepared;
   const { points = POINTS, limit = Math.max(LIMIT, points), compare = true } = source.grid ?? {};
-  const compute = (n: number) => computeLine(prepared, n);
-  const refined = compare
-    ? refine(compute, (a, b) => b.stated > 0 ? Math.abs(a.stated / b.stated - 1) : 0, points, limit)
-    : { result: compute(points), points, change: NaN, converged: null };
-  const { result } = refined;
-  const idlerSide = mirrored(result.line.axis, source.omegaP);
-  const why = separable ? windowS.cut ?? windowI.cut : NOT_SEPARABLE;
-  const exchange = why === null ? exchangeOnLine(prepared, refined.points) : null;
+  const compute = (n: number) => {
+    const line = layLine(prepared, lineAxis(prepared, n));
+    return { points: n, line, result: computeLine(prepared, line, source.spectrum) };
+  };
+  const change = (a: LineResult, b: LineResult) => b.stated > 0 ? Math.abs(a.stated / b.stated - 1) : 0;
+  const fine = compare
+    ? refine(compute, (a, b) => change(a.result, b.result), points, limit)
+    : { result: compute(points), coarse: null, points, change: NaN, converged: null };
+  const base = fine.coarse ?? fine.result;
+  const unrefined = { points: base.points, change: NaN, converged: null };
+  // On one grid for all: a grid of its own for the exchange is laid only once.
+  const onBase = lineSpectrum(prepared, base.points);
   return {
-    made: result.stated,
-    madeOpen: result.total,
-    separable,
-    shares: separable ? filterShares(result) : null,
-    purity: absent(NOT_CONTINUOUS),
-    correlation: null,
-    exchange: exchange === null ? absent(why!) : exchange.value,
-    exchangeDelay: exchange === null ? null : exchange.delay,
-    windowS,
-    windowI,
-    bandwidthS: lineWidth(result.line.axis, result.spectrum, openEnds(windowS, windowI, source.omegaP)),
-    bandwidthI: lineWidth(idlerSide, result.spectrum.toReversed(), openEnds(windowI, windowS, source.omegaP)),
-    grid: { points: refined.points, change: refined.change, converged: refined.converged },
+    refined: lineSpectrum(prepared, fine.points)(fine.result.result, source.spectrum, {
+      points: fine.points,
+      change: fine.change,
+      converged: fine.converged,
+    }),
+    base: onBase(base.result, source.spectrum, unrefined),
+    draw: (spectrumOn) => onBase(computeLine(prepared, base.line, spectrumOn), spectrumOn, unrefined),
+  };
+}
+
+/** Puts a line's numbers together, with the exchange overlap on `points`. */
+function lineSpectrum(prepared: PreparedSource, points: number) {
+  const { source, windowS, windowI, separable } = prepared;
+  const why = separable ? windowS.cut ?? windowI.cut : NOT_SEPARABLE;
+  const exchangeOn = why === null ? layExchange(prepared, points) : null;
+  return (
+    result: LineResult,
+    spectrumOn: PairSource["spectrum"],
+    grid: PairSpectrum["grid"],
+  ): PairSpectrum => {
+    const { axis } = result.line;
+    const idlerSide = mirrored(axis, source.omegaP);
+    const exchange = exchangeOn === null ? null : exchangeOn(spectrumOn);
+    return {
+      made: result.stated,
+      madeOpen: result.total,
+      separable,
+      shares: separable ? filterShares(result) : null,
+      purity: absent(NOT_CONTINUOUS),
+      correlation: null,
+      exchange: exchange === null ? absent(why!) : exchange.value,
+      exchangeDelay: exchange === null ? null : exchange.delay,
+      windowS,
+      windowI,
+      bandwidthS: lineWidth(axis, result.spectrum, openEnds(windowS, windowI, source.omegaP)),
+      bandwidthI: lineWidth(
+        idlerSide,
+        result.spectrum.toReversed(),
+        openEnds(windowI, windowS, source.omegaP),
+      ),
+      grid,
+    };
   };
 }
 
@@ -69,9 +105,13 @@ const lineWidth = (axis: Axis, spectrum: Float64Array, ends: readonly number[]):
     ? absent("the windows hold no pair that conserves energy")
     : bandwidth(axis, spectrum, ends, 1e-6 * (axis.segments.at(-1)!.to - axis.segments[0]!.from));
 
-function computeLine(prepared: PreparedSource, points: number): LineResult {
+function computeLine(
+  prepared: PreparedSource,
+  laid: LaidLine,
+  spectrumOn: PairSource["spectrum"],
+): LineResult {
   const { separable } = prepared;
-  const line = lineOn(prepared, lineAxis(prepared, points));
+  const line = lineOn(prepared, laid, spectrumOn);
   const { axis, re, im, powerI } = line;
   const side = signalSide(prepared);
   const spectrum = new Float64Array(axis.omega.length);

@@ -15,6 +15,28 @@ const OVERSAMPLING = 8;
 const NEAR_BEST = 0.95;
 const GOLDEN = (Math.sqrt(5) - 1) / 2;
 
+/** Transform and work arrays of one size. */
+interface Plan {
+  readonly fft: FFT;
+  readonly input: Float64Array;
+  readonly output: Float64Array;
+  readonly squares: Float64Array;
+}
+
+// Kept between calls: the arrays are overwritten before they are read, so results do not depend on them.
+const plans = new Map<number, Plan>();
+
+function planFor(size: number): Plan {
+  let plan = plans.get(size);
+  if (plan === undefined) {
+    const numbers = () => new Float64Array(2 * size);
+    plan = { fft: new FFT(size), input: numbers(), output: numbers(), squares: new Float64Array(size) };
+    if (plans.size >= 8) plans.clear();
+    plans.set(size, plan);
+  }
+  return plan;
+}
+
 /**
  * Maximum over τ of |S(τ)|, S(τ) = Σ_k D_k·e^{iτk·step} (the frequency of D_0 does not matter): one FFT to find the
  * highest points, golden section around them. τ is searched over one period, −π/step … π/step.
@@ -28,15 +50,13 @@ export function maximiseOverDelay(
 ): DelayMaximum {
   let size = 2;
   while (size < OVERSAMPLING * re.length) size *= 2;
-  const fft = new FFT(size);
-  const input = fft.createComplexArray() as number[];
-  const output = fft.createComplexArray() as number[];
+  const { fft, input, output, squares } = planFor(size);
+  input.fill(0, 2 * re.length);
   for (let k = 0; k < re.length; k++) {
     input[2 * k] = re[k]!;
     input[2 * k + 1] = im[k]!;
   }
   fft.transform(output, input);
-  const squares = new Float64Array(size);
   let highest = 0;
   for (let q = 0; q < size; q++) {
     squares[q] = output[2 * q]! ** 2 + output[2 * q + 1]! ** 2;

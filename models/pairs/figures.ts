@@ -1,7 +1,7 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { lambdaOf, toNm } from "../../shared/units.ts";
 import { carContinuous, carPulsed, type PairDetection } from "./car.ts";
-import { continuousSpectrum } from "./continuous.ts";
+import { continuousDraws, continuousSpectrum } from "./continuous.ts";
 import { lowGainRemark } from "./counts.ts";
 import {
   NO_LIMIT,
@@ -21,9 +21,9 @@ import {
   type Stretch,
 } from "./heralding.ts";
 import { absent, combine, given, type Outcome } from "./outcome.ts";
-import { newPairScratch, type PairScratch, pulsedSpectrum } from "./pulsed.ts";
+import { newPairScratch, type PairScratch, pulsedDraws, pulsedSpectrum } from "./pulsed.ts";
 import { schmidtNumber } from "./schmidt.ts";
-import type { PairPump, PairSource, PairSpectrum } from "./source.ts";
+import type { PairPump, PairSource, PairSpectrum, SpectrumDraws } from "./source.ts";
 import { type Band, NOT_SEPARABLE } from "./window.ts";
 
 /** What one arm's photon meets behind the guide's inside; each 0…1, or null with the reason why it is not known. */
@@ -80,6 +80,18 @@ export function pairFigures(source: PairSource, chain: PairChain, scratch?: Pair
  */
 export function pairSpectrum(source: PairSource, scratch: PairScratch = newPairScratch()): PairSpectrum {
   return source.pump.kind === "pulsed" ? pulsedSpectrum(source, scratch) : continuousSpectrum(source);
+}
+
+/**
+ * {@link pairSpectrum} for a source of which several gratings are known: what they have in common is worked out once.
+ * @param scratch belongs to these draws until the last of them
+ * @throws RangeError for numbers that no guide has
+ */
+export function pairSpectrumDraws(
+  source: PairSource,
+  scratch: PairScratch = newPairScratch(),
+): SpectrumDraws {
+  return source.pump.kind === "pulsed" ? pulsedDraws(source, scratch) : continuousDraws(source);
 }
 
 /**

@@ -29,16 +29,24 @@ export function exchangeOverlap(
   for (let j = 0; j < n; j++) {
     const sj = powerS?.[j] ?? 1;
     const ij = powerI?.[j] ?? 1;
-    for (let l = 0; l < n; l++) {
+    here += sj * ij * (c.re[j * n + j]! ** 2 + c.im[j * n + j]! ** 2);
+    re[n - 1]! += sj * ij * (c.re[j * n + j]! ** 2 + c.im[j * n + j]! ** 2);
+    // The other half of the square is the mirror image: (l, j) adds the conjugate at −(j − l).
+    for (let l = 0; l < j; l++) {
       const sl = powerS?.[l] ?? 1;
       const il = powerI?.[l] ?? 1;
       const p = j * n + l;
       const q = l * n + j;
-      here += sj * il * (c.re[p]! ** 2 + c.im[p]! ** 2);
+      const [pRe, pIm, qRe, qIm] = [c.re[p]!, c.im[p]!, c.re[q]!, c.im[q]!];
+      here += sj * il * (pRe * pRe + pIm * pIm) + sl * ij * (qRe * qRe + qIm * qIm);
       const t = Math.sqrt(sj * il * sl * ij);
-      re[n - 1 + j - l]! += t * (c.re[p]! * c.re[q]! + c.im[p]! * c.im[q]!);
-      im[n - 1 + j - l]! += t * (c.im[p]! * c.re[q]! - c.re[p]! * c.im[q]!);
+      re[n - 1 + j - l]! += t * (pRe * qRe + pIm * qIm);
+      im[n - 1 + j - l]! += t * (pIm * qRe - pRe * qIm);
     }
+  }
+  for (let d = 1; d < n; d++) {
+    re[n - 1 - d] = re[n - 1 + d]!;
+    im[n - 1 - d] = -im[n - 1 + d]!;
   }
   if (here === 0) return { value: 0, delay: 0 };
   const { value, delay } = maximiseOverDelay(re, im, step);

@@ -2,7 +2,7 @@
 import { bandCovering, interpolateSpectrumInto } from "../poling/mod.ts";
 import type { Axis } from "./axis.ts";
 import { type Filter, transmission } from "./filters.ts";
-import type { PreparedSource } from "./source.ts";
+import type { PairSource, PreparedSource } from "./source.ts";
 import type { ArmWindow, Band } from "./window.ts";
 
 /** Amplitude of a continuous pump's pairs on the line ω_i = ω_p − ω_s. */
@@ -23,25 +23,44 @@ export function passes({ stated }: ArmWindow, filter: Filter | undefined, omega:
   return filter === undefined ? 1 : transmission(filter, omega);
 }
 
+/** An axis with the Δβ of its pairs: what gratings of one length have in common. */
+export interface LaidLine {
+  readonly axis: Axis;
+  readonly delta: Float64Array;
+  readonly powerI: Float64Array;
+  /** Range of Δβ, 1/m. */
+  readonly lowest: number;
+  readonly highest: number;
+}
+
+export function layLine({ source, k, windowI }: PreparedSource, axis: Axis): LaidLine {
+  const n = axis.omega.length;
+  const delta = new Float64Array(n);
+  const powerI = new Float64Array(n);
+  let lowest = Infinity;
+  let highest = -Infinity;
+  for (let j = 0; j < n; j++) {
+    const partner = source.omegaP - axis.omega[j]!;
+    const d = k.mismatch - k.signal.at(axis.omega[j]!) - k.idler.at(partner);
+    delta[j] = d;
+    lowest = Math.min(lowest, d);
+    highest = Math.max(highest, d);
+    powerI[j] = passes(windowI, source.filters?.idler, partner);
+  }
+  return { axis, delta, powerI, lowest, highest };
+}
+
 /** φ, scaled to pairs per second, on an axis of signal frequencies. */
-export function lineOn({ source, k, windowI, gain }: PreparedSource, axis: Axis): Line {
+export function lineOn(
+  { source, gain }: PreparedSource,
+  { axis, delta, powerI, lowest, highest }: LaidLine,
+  spectrumOn: PairSource["spectrum"],
+): Line {
   const n = axis.omega.length;
   const re = new Float64Array(n);
   const im = new Float64Array(n);
-  const powerI = new Float64Array(n);
   if (n === 0) return { axis, re, im, powerI };
-  const delta = new Float64Array(n);
-  for (let j = 0; j < n; j++) {
-    const partner = source.omegaP - axis.omega[j]!;
-    delta[j] = k.mismatch - k.signal.at(axis.omega[j]!) - k.idler.at(partner);
-    powerI[j] = passes(windowI, source.filters?.idler, partner);
-  }
-  const band = bandCovering(
-    delta.reduce((a, b) => Math.min(a, b)),
-    delta.reduce((a, b) => Math.max(a, b)),
-    source.length,
-  );
-  interpolateSpectrumInto(source.spectrum(band), delta, re, im);
+  interpolateSpectrumInto(spectrumOn(bandCovering(lowest, highest, source.length)), delta, re, im);
   for (let j = 0; j < n; j++) {
     const size = Math.sqrt(source.pump.averagePower * gain * axis.weight[j]! / (2 * Math.PI));
     re[j]! *= size;

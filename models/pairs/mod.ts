@@ -12,6 +12,7 @@ export {
   pairFigures,
   type PairResult,
   pairSpectrum,
+  pairSpectrumDraws,
 } from "./figures.ts";
 export { PAIR_FIGURES, type PairFigure } from "./figure_names.ts";
 export { type Filter, filterBand, transmission } from "./filters.ts";
@@ -58,6 +59,7 @@ export {
   type PairSpectrum,
   type PreparedSource,
   prepareSource,
+  type SpectrumDraws,
 } from "./source.ts";
 export { twoSourceDip } from "./two_sources.ts";
 export { armsSeparable, type ArmWindow, armWindow, type Band, unfilteredHalfWidth } from "./window.ts";

@@ -1,39 +1,40 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import { bandCovering } from "../poling/mod.ts";
-import { fillAmplitude, type JointAmplitude, newScratch, prepareGrid, type Scratch } from "./amplitude.ts";
-import { armAxis, type Axis, commonAxis, MOST_POINTS } from "./axis.ts";
+import { type JointAmplitude, newScratch, prepareGrid, type Scratch } from "./amplitude.ts";
+import type { Axis } from "./axis.ts";
 import type { DelayMaximum } from "./delay.ts";
 import type { CorrelationTerms } from "./g2.ts";
 import { gramMoments, type GramScratch, newGramScratch } from "./gram.ts";
 import { exchangeOverlap } from "./interference.ts";
+import { armAxes, bandOf, fillGrid, type Layout, layOut, POINTS, pulsesOf } from "./layout.ts";
 import { bandwidth, type PairSums, pairSums } from "./marginals.ts";
 import { absent, given } from "./outcome.ts";
 import { ratio, refine } from "./schmidt.ts";
-import { type PairSpectrum, type PreparedSource, prepareSource, signalSide } from "./source.ts";
-import type { PairSource } from "./source.ts";
 import { filterShares } from "./shares.ts";
-import { type ArmWindow, type Band, NOT_SEPARABLE, openEnds } from "./window.ts";
+import {
+  type PairSource,
+  type PairSpectrum,
+  type PreparedSource,
+  prepareSource,
+  type SpectrumDraws,
+} from "./source.ts";
+import { NOT_SEPARABLE, openEnds } from "./window.ts";
 
-/** Memory for one worker: hand the same one to every call and nothing is allocated anew. */
+/** Memory for one worker: hand the same one to every call and little is allocated anew. */
 export interface PairScratch {
   readonly main: Scratch;
   readonly exchange: Scratch;
   readonly gram: GramScratch;
+  /** For the grid that the next finer one is compared with: both are needed at a time. */
+  readonly other: { readonly main: Scratch; readonly exchange: Scratch };
 }
 export const newPairScratch = (): PairScratch => ({
   main: newScratch(),
   exchange: newScratch(),
   gram: newGramScratch(),
+  other: { main: newScratch(), exchange: newScratch() },
 });
 
-const POINTS = 128;
 const LIMIT = 512;
-
-/**
- * The pump's FWHM spans at least so many steps of each axis of the first grid. The midpoint rule errs by
- * 2·exp(−2π²(σ/step)²) for a Gaussian: below 1e-13 here, and still 6e-4 on the half as fine grid it is compared with.
- */
-const STEPS_PER_PUMP = 3;
 
 /** Joint amplitude F on its grids, so scaled that Σ|F|² is the mean number of pairs per pulse. */
 export interface GriddedAmplitude {
@@ -64,39 +65,16 @@ export function amplitudeAgainst(prepared: PreparedSource, signal: Axis, points:
   return { amplitude: amplitudeOn(prepared, signal, idler, newScratch(), false), signal, idler };
 }
 
-function armAxes(prepared: PreparedSource, points: number): [Axis, Axis] {
-  const { source, windowS, windowI, separable } = prepared;
-  const { pump, omegaP, filters } = source;
-  if (pump.kind !== "pulsed") {
-    throw new RangeError("Cannot lay a joint amplitude: found a continuous pump, need pulses");
-  }
-  // doubling the points must halve every step, or the comparison of two grids would say nothing
-  const longestStep = pump.spectrum.fwhm / STEPS_PER_PUMP * ((source.grid?.points ?? POINTS) / points);
-  const axis = (window: ArmWindow, side: Band, filter?: NonNullable<typeof filters>["signal"]) => {
-    const options = { points, longestStep };
-    if (!source.samePolarisation) return armAxis(window, filter, options);
-    // one polarisation: a break at ω_p/2 where pairs are counted on one side of it, else keep to the arm's own side
-    if (!separable) return armAxis(window, filter, { ...options, breaks: [omegaP / 2] });
-    const within: Band = [Math.min(side[0], window.stated[0]), Math.max(side[1], window.stated[1])];
-    return armAxis(window, filter, { ...options, within });
-  };
-  const own = signalSide(prepared);
-  const other: Band = own[0] > 0 ? [0, omegaP / 2] : [omegaP / 2, Infinity];
-  return [axis(windowS, own, filters?.signal), axis(windowI, other, filters?.idler)];
-}
-
 function amplitudeOn(
-  { source, k, gain }: PreparedSource,
+  prepared: PreparedSource,
   signal: Axis,
   idler: Axis,
   scratch: Scratch,
   withBlocked: boolean,
 ): JointAmplitude {
-  const pump = source.pump as Extract<PairSource["pump"], { kind: "pulsed" }>;
-  const grid = prepareGrid(pump.spectrum, k, signal, idler, scratch, withBlocked);
-  const [lo, hi] = grid.cells > 0 ? [grid.lowest, grid.highest] : [k.mismatch, k.mismatch];
-  const spectrum = source.spectrum(bandCovering(lo, hi, source.length));
-  return fillAmplitude(grid, k, pump.spectrum, spectrum, gain * pump.averagePower / pump.repetition);
+  const { source, k } = prepared;
+  const grid = prepareGrid(pulsesOf(source).spectrum, k, signal, idler, scratch, withBlocked);
+  return fillGrid(prepared, grid, source.spectrum(bandOf(prepared, [grid])));
 }
 
 interface GridResult {
@@ -108,62 +86,42 @@ interface GridResult {
   readonly idler: Axis;
 }
 
+/** Everything of one grating on a layout. */
 function computeOn(
   prepared: PreparedSource,
-  points: number,
+  layout: Layout,
+  spectrumOn: PairSource["spectrum"],
   why: string | null,
-  scratch: PairScratch,
+  gram: GramScratch,
 ): GridResult {
-  const { separable } = prepared;
-  const { amplitude, signal, idler } = jointAmplitude(prepared, points, scratch.main);
-  const side = signalSide(prepared);
-  const counted = (w: number) => separable || (w > side[0] && w < side[1]);
-  const sums = pairSums(amplitude, signal, idler, counted);
+  const { main, exchange } = layout;
+  const { signal, idler } = main;
+  const spectrum = spectrumOn(bandOf(prepared, exchange === null ? [main] : [main, exchange]));
+  const amplitude = fillGrid(prepared, main, spectrum);
+  const sums = pairSums(amplitude, signal, idler, layout.counted);
   if (why !== null || !(sums.both > 0)) {
     return { sums, purity: null, correlation: null, exchange: null, signal, idler };
   }
-  const moments = gramMoments(amplitude, signal.power, idler.power, scratch.gram);
+  const moments = gramMoments(amplitude, signal.power, idler.power, gram);
   return {
     sums,
     purity: ratio(moments.squareFiltered, moments.traceFiltered),
     correlation: { ...moments, heralds: sums.idler },
-    exchange: exchangeOn(prepared, signal, idler, amplitude, points, sums.both, scratch.exchange),
+    exchange: layout.exchangeBy === "nothing shared"
+      ? { value: 0, delay: 0 }
+      : exchange === null
+      ? exchangeOverlap(amplitude, signal.weight[0]!)
+      : exchangeOverlap(
+        fillGrid(prepared, exchange, spectrum),
+        exchange.signal.weight[0]!,
+        exchange.signal.power,
+        exchange.idler.power,
+        sums.both,
+      ),
     signal,
     idler,
   };
 }
-
-/**
- * Exchange overlap: the product of C and its exchanged self lives where both arms reach, so one grid over what their
- * stated windows have in common serves both; the norm is that of all pairs behind the filters.
- */
-function exchangeOn(
-  prepared: PreparedSource,
-  signal: Axis,
-  idler: Axis,
-  amplitude: JointAmplitude,
-  points: number,
-  norm: number,
-  scratch: Scratch,
-): DelayMaximum {
-  const { source, windowS, windowI } = prepared;
-  const [s, i] = [windowS.stated, windowI.stated];
-  const band: Band = [Math.max(s[0], i[0]), Math.min(s[1], i[1])];
-  if (!(band[1] > band[0])) return { value: 0, delay: 0 };
-  const size = signal.omega.length;
-  const same = !windowS.filtered && !windowI.filtered && idler.omega.length === size &&
-    signal.omega.every((w, k) => Math.abs(w - idler.omega[k]!) < 1e-6 * signal.weight[0]!);
-  if (same) return exchangeOverlap(amplitude, signal.weight[0]!);
-  const step = Math.min(longestStated(signal), longestStated(idler), (band[1] - band[0]) / points);
-  const count = Math.min(Math.ceil((band[1] - band[0]) / step - 1e-9), MOST_POINTS);
-  const a = commonAxis(band, count, windowS, source.filters?.signal);
-  const b = commonAxis(band, count, windowI, source.filters?.idler);
-  const common = amplitudeOn(prepared, a, b, scratch, false);
-  return exchangeOverlap(common, a.weight[0]!, a.power, b.power, norm);
-}
-
-const longestStated = (axis: Axis): number =>
-  axis.segments.filter((x) => x.stated).reduce((most, x) => Math.max(most, (x.to - x.from) / x.count), 0);
 
 /**
  * Everything that the spectrum decides for a pulsed source: pairs per pulse, purity, what g2 is made of, filter shares,
@@ -172,18 +130,49 @@ const longestStated = (axis: Axis): number =>
  * @throws RangeError for a source that cannot be one
  */
 export function pulsedSpectrum(source: PairSource, scratch: PairScratch = newPairScratch()): PairSpectrum {
+  return pulsedDraws(source, scratch).refined;
+}
+
+/** {@link pulsedSpectrum}, and the same source with other gratings on the grid before the last. See {@link SpectrumDraws}. */
+export function pulsedDraws(source: PairSource, scratch: PairScratch = newPairScratch()): SpectrumDraws {
   const prepared = prepareSource(source);
   const { windowS, windowI, separable } = prepared;
   const { points = POINTS, limit = Math.max(LIMIT, points), compare = true } = source.grid ?? {};
   const why = separable ? windowS.cut ?? windowI.cut : NOT_SEPARABLE;
-  const compute = (n: number) => computeOn(prepared, n, why, scratch);
-  const refined = compare
-    ? refine(compute, largestChange, points, limit)
-    : { result: compute(points), points, change: NaN, converged: null };
-  const { sums, purity, correlation, exchange, signal, idler } = refined.result;
-  const width = source.pump.kind === "pulsed" ? source.pump.spectrum.fwhm : 0;
-  const capped = signal.capped || idler.capped;
-  const reason = why ?? "no pair passes the filters";
+  // Two memories in turn: the grid that the last one was compared with stays.
+  const memories = [scratch.other, scratch];
+  const compute = (n: number) => {
+    const memory = memories.reverse()[0]!;
+    const layout = layOut(prepared, n, memory, why === null);
+    return { points: n, layout, result: computeOn(prepared, layout, source.spectrum, why, scratch.gram) };
+  };
+  const fine = compare
+    ? refine(compute, (a, b) => largestChange(a.result, b.result), points, limit)
+    : { result: compute(points), coarse: null, points, change: NaN, converged: null };
+  const pairs = (result: GridResult, grid: PairSpectrum["grid"]) =>
+    spectrumOf(prepared, result, why ?? "no pair passes the filters", grid);
+  const base = fine.coarse ?? fine.result;
+  const unrefined = { points: base.points, change: NaN, converged: null };
+  return {
+    refined: pairs(fine.result.result, {
+      points: fine.points,
+      change: fine.change,
+      converged: isCapped(fine.result.result) ? false : fine.converged,
+    }),
+    base: pairs(base.result, unrefined),
+    draw: (spectrumOn) => pairs(computeOn(prepared, base.layout, spectrumOn, why, scratch.gram), unrefined),
+  };
+}
+
+const isCapped = ({ signal, idler }: GridResult): boolean => signal.capped || idler.capped;
+
+function spectrumOf(
+  { source, windowS, windowI, separable }: PreparedSource,
+  { sums, purity, correlation, exchange, signal, idler }: GridResult,
+  reason: string,
+  grid: PairSpectrum["grid"],
+): PairSpectrum {
+  const width = pulsesOf(source).spectrum.fwhm;
   return {
     made: sums.stated,
     madeOpen: sums.total,
@@ -197,7 +186,7 @@ export function pulsedSpectrum(source: PairSource, scratch: PairScratch = newPai
     windowI,
     bandwidthS: bandwidth(signal, sums.signalSpectrum, openEnds(windowS, windowI, source.omegaP), width),
     bandwidthI: bandwidth(idler, sums.idlerSpectrum, openEnds(windowI, windowS, source.omegaP), width),
-    grid: { points: refined.points, change: refined.change, converged: capped ? false : refined.converged },
+    grid,
   };
 }
 

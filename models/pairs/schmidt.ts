@@ -58,6 +58,8 @@ export function ratio(square: number, trace: number): number {
 /** A figure that was computed on finer and finer grids. */
 export interface Refined<T> {
   readonly result: T;
+  /** The result before the last, on half as many points. */
+  readonly coarse: T;
   readonly points: number;
   /** Change of the figures in the last doubling (NaN after a single grid). */
   readonly change: number;
@@ -90,7 +92,7 @@ export function refine<T>(
     const result = compute(n);
     const moved = change(coarse, result);
     if (moved < GRID_TOLERANCE || 2 * n > limit) {
-      return { result, points: n, change: moved, converged: moved < GRID_TOLERANCE };
+      return { result, coarse, points: n, change: moved, converged: moved < GRID_TOLERANCE };
     }
     coarse = result;
   }

@@ -84,6 +84,20 @@ export interface PairSpectrum {
   readonly grid: { readonly points: number; readonly change: number; readonly converged: boolean | null };
 }
 
+/**
+ * One source with several gratings of the same length: windows, curves, grids and the pump's part of the amplitude are
+ * common to all of them. Carry `refined` to another grating by the ratio of two coarse spectra, draw/base: what the coarse
+ * grid errs by cancels to first order.
+ */
+export interface SpectrumDraws {
+  /** The source itself, on a grid refined until it has converged. */
+  readonly refined: PairSpectrum;
+  /** The same on the coarser grid of the draws: the one before the last. */
+  readonly base: PairSpectrum;
+  /** The source with another grating (see {@link PairSource.spectrum}) on that grid. */
+  draw(spectrum: PairSource["spectrum"]): PairSpectrum;
+}
+
 /** Of the pairs made: shares with the signal, the idler, both through the filters; and each arm given the other. */
 export interface FilterShares {
   readonly signal: number;
