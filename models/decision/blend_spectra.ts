@@ -26,19 +26,24 @@ function combined(x: PairSpectrum, y: PairSpectrum, z: PairSpectrum, rule: Rule)
       ? r
       : given(rule(p.value, q.value, r.value));
   };
+  // A share that is all but 1 on two grids may come out a rounding above it.
+  const share = (pick: (s: PairSpectrum) => Outcome): Outcome => {
+    const found = outcome(pick);
+    return found.value === null ? found : given(Math.min(1, found.value));
+  };
   const { shares, correlation } = x;
   return {
     ...x,
     made: rule(x.made, y.made, z.made),
     madeOpen: rule(x.madeOpen, y.madeOpen, z.madeOpen),
     shares: shares === null || y.shares === null || z.shares === null ? z.shares : {
-      signal: rule(shares.signal, y.shares.signal, z.shares.signal),
-      idler: rule(shares.idler, y.shares.idler, z.shares.idler),
-      both: rule(shares.both, y.shares.both, z.shares.both),
-      signalGivenIdler: outcome((s) => s.shares!.signalGivenIdler),
-      idlerGivenSignal: outcome((s) => s.shares!.idlerGivenSignal),
+      signal: Math.min(1, rule(shares.signal, y.shares.signal, z.shares.signal)),
+      idler: Math.min(1, rule(shares.idler, y.shares.idler, z.shares.idler)),
+      both: Math.min(1, rule(shares.both, y.shares.both, z.shares.both)),
+      signalGivenIdler: share((s) => s.shares!.signalGivenIdler),
+      idlerGivenSignal: share((s) => s.shares!.idlerGivenSignal),
     },
-    purity: outcome((s) => s.purity),
+    purity: share((s) => s.purity),
     correlation: correlation === null || y.correlation === null || z.correlation === null ? z.correlation : {
       trace: rule(correlation.trace, y.correlation.trace, z.correlation.trace),
       traceFiltered: rule(
@@ -55,7 +60,7 @@ function combined(x: PairSpectrum, y: PairSpectrum, z: PairSpectrum, rule: Rule)
         z.correlation.squareFiltered,
       ),
     },
-    exchange: outcome((s) => s.exchange),
+    exchange: share((s) => s.exchange),
     bandwidthS: outcome((s) => s.bandwidthS),
     bandwidthI: outcome((s) => s.bandwidthI),
   };
