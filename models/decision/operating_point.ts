@@ -71,7 +71,7 @@ export function operatingPoints(
     };
   }
   const spectrumFor = peakSpectrum(question);
-  const nominal = matcher(model, question, waves, range, spectrumFor);
+  const nominal = matcher(model, question, waves, range, valid.range, spectrumFor);
   const tunedMatchers = new Map<number, Matcher | null>();
   const matcherAt = (lambdaP: number): Matcher | null => {
     const held = tunedMatchers.get(lambdaP);
@@ -79,21 +79,25 @@ export function operatingPoints(
     const tuned = retune(waves, lambdaP);
     const validThere = validTemperatures(model, tuned, geometry);
     const rangeThere = "reason" in validThere ? null : intersect(oven, validThere.range);
-    const made = rangeThere === null ? null : matcher(model, question, tuned, rangeThere, spectrumFor);
+    const made = "reason" in validThere || rangeThere === null
+      ? null
+      : matcher(model, question, tuned, rangeThere, validThere.range, spectrumFor);
     tunedMatchers.set(lambdaP, made);
     return made;
   };
   return {
     at(offset) {
       const found = nominal(offset);
-      if (found.roots.length > 0) return point(found, waves, false);
+      // A fixed oven is searched just around its temperature, and stays at it.
+      const within = (T: number) => Math.min(range[1], Math.max(range[0], T));
+      if (found.roots.length > 0) return point(found, waves, false, within);
       const tuned = tunable === null
         ? null
         : nearestPump(waves.lambdaP, tunable, (l) => matcherAt(l)?.(offset) ?? null);
       if (tuned === null) {
-        return { temperatureC: found.nearest, matched: false, others: [], waves, tuned: false };
+        return { temperatureC: within(found.nearest), matched: false, others: [], waves, tuned: false };
       }
-      return point(tuned.found, retune(waves, tuned.lambdaP), true);
+      return point(tuned.found, retune(waves, tuned.lambdaP), true, within);
     },
   };
 }
@@ -104,8 +108,13 @@ export function retune(waves: ThreeWaves, lambdaP: number): ThreeWaves {
   return { ...waves, lambdaP, lambdaS: waves.lambdaS * ratio, lambdaI: waves.lambdaI * ratio };
 }
 
-function point(found: Temperatures, waves: ThreeWaves, tuned: boolean): OperatingPoint {
-  return { temperatureC: found.roots[0]!, matched: true, others: found.roots.slice(1), waves, tuned };
+function point(
+  found: Temperatures,
+  waves: ThreeWaves,
+  tuned: boolean,
+  within: (T: number) => number,
+): OperatingPoint {
+  return { temperatureC: within(found.roots[0]!), matched: true, others: found.roots.slice(1), waves, tuned };
 }
 
 /** Temperatures, and on which side of the grating vector |Δβ| lies where nothing matches (the sign at `nearest`). */
@@ -119,6 +128,7 @@ function matcher(
   question: OperatingQuestion,
   waves: ThreeWaves,
   range: readonly [number, number],
+  valid: readonly [number, number],
   spectrumFor: (low: number, high: number) => GratingSpectrum | null,
 ): Matcher {
   const bare = mismatchOverTemperature(model.index, waves, question.geometry);
@@ -128,7 +138,9 @@ function matcher(
     return { ...found, side: Math.sign(scaled - 2 * Math.PI / period) };
   };
   // A fixed temperature is an oven too: either it matches there or nothing does; searched just around it.
-  const search = range[0] < range[1] ? range : [range[0] - 1e-3, range[0] + 1e-3] as const;
+  const search = range[0] < range[1]
+    ? range
+    : [Math.max(valid[0], range[0] - 1e-3), Math.min(valid[1], range[0] + 1e-3)] as const;
   if (question.walls === null) {
     const vector = (T: number) => 2 * Math.PI / (period * model.expansion(T));
     return (offset) => withSide(phaseMatchingTemperatures((T) => bare(T) + offset, vector, search), offset);

@@ -30,7 +30,14 @@ export function platformModel(platform: Platform, index: IndexModel, area: AreaM
   const coefficients = new Map(
     Object.entries(platform.nonlinear).map(([key, { d_pm_per_v, at_nm }]) => {
       const [pump, signal, idler] = key.split(/[>+]/) as ("TE" | "TM")[];
-      return [processName(pump!, signal!, idler!), { d: d_pm_per_v * 1e-12, at: nm(at_nm) }] as const;
+      // Miller's rule starts from the second harmonic of `at_nm`: no index there is the platform file's mistake.
+      const at = nm(at_nm);
+      millerScaled(material, 1, at, { p: axes[pump!], s: axes[signal!], i: axes[idler!] }, {
+        lambdaP: at / 2,
+        lambdaS: at,
+        lambdaI: at,
+      });
+      return [processName(pump!, signal!, idler!), { d: d_pm_per_v * 1e-12, at }] as const;
     }),
   );
   return {
@@ -73,7 +80,13 @@ export function validTemperatures(
       ["idler", waves.lambdaI, waves.polI],
     ] as const
   ) {
-    const range = model.index.range(pol);
+    let range: ReturnType<IndexModel["range"]>;
+    try {
+      range = model.index.range(pol);
+    } catch (error) {
+      if (error instanceof RangeError) return { reason: error.message }; // a table without this polarisation
+      throw error;
+    }
     if (lambda < range.lambda[0] || lambda > range.lambda[1]) {
       const [a, b] = range.lambda.map((x) => Math.round(x * 1e9));
       return {

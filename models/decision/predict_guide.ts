@@ -1,5 +1,5 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import { absent, given, type PairFigure, type PairScratch } from "../pairs/mod.ts";
+import { absent, given, PAIR_FIGURES, type PairFigure, type PairScratch } from "../pairs/mod.ts";
 import type { GeometryParameter } from "../guides/mod.ts";
 import type { Grating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
@@ -14,8 +14,9 @@ import { FigureDraws } from "./figure_draws.ts";
 import { basisOf } from "./figure_basis.ts";
 import { drawGrating, inspectedGrating } from "./grating_draws.ts";
 import type { GuideInputs } from "./guide_inputs.ts";
+import { drawOperatingPoints, type OperatingDraws } from "./operating_draws.ts";
 import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
-import { type PairNotes, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
+import { type PairNotes, type PairQuestion, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
 import { type PlatformModel, validTemperatures } from "./platform_model.ts";
 import { type Site, siteAt } from "./site.ts";
 
@@ -73,24 +74,26 @@ export function predictGuide(
   loss("loss_db_cm_signal", drawn.lossS);
   loss("loss_db_cm_idler", drawn.lossI);
   const walls = inspectedGrating(guide);
-  const points = guide.poledLength > 0
-    ? operatingPoints(model, question(checked, guide, walls))
-    : { reason: "the guide is not poled" };
+  const asked = question(checked, guide, walls);
+  const points = guide.poledLength > 0 ? operatingPoints(model, asked) : { reason: "the guide is not poled" };
   if ("reason" in points) return nowhere(checked, guide, out, points.reason);
-  const nominal = points.at(guide.offset?.value ?? 0);
-  const exists = drawPoints(points, drawn, nominal, out, checked);
-  const site = siteAt(
-    model,
-    guide,
-    checked.processKey,
-    nominal.waves,
-    nominal.temperatureC,
-    guide.offset?.value ?? 0,
+  const nominalOffset = guide.offset?.value ?? 0;
+  const nominal = points.at(nominalOffset);
+  const draws = drawOperatingPoints(model, asked, points, nominal, nominalOffset, drawn.offset);
+  const { exists, point, offset } = drawPoints(
+    points,
+    draws,
+    drawn.offset,
+    nominal,
+    nominalOffset,
+    out,
+    checked,
   );
+  const site = siteAt(model, guide, checked.processKey, point.waves, point.temperatureC, offset);
   if ("reason" in site) return nowhere(checked, guide, out, site.reason);
   const pairs = predictSite(site, checked, guide, drawn, walls, exists, out, options);
   const remarks = [...pairs?.remarks ?? [], ...indexRemarks(model, site)];
-  return conclude(checked, guide, out, exists, nominal, pairs, remarks);
+  return conclude(checked, guide, out, exists, point, pairs, remarks);
 }
 
 /**
@@ -135,24 +138,31 @@ const unmatchedReason = ({ request }: CheckedRequest): string =>
     ? ""
     : `, nor with the pump tuned over ${request.pump.tunable_nm.join("–")} nm`);
 
-/** Every draw re-tunes the oven. Without any root the nearest temperature is reported, and the draw does not exist. */
+/**
+ * Every draw re-tunes the oven. Without any root the nearest temperature is reported, and the draw does not exist.
+ * @returns which draws exist, and the point that stands for all of them: the nominal one, or where that does not match the
+ * one of the matching draw whose offset is nearest to it
+ */
 function drawPoints(
   points: OperatingPoints,
-  drawn: DrawnTraits,
+  draws: OperatingDraws,
+  offsets: Float64Array,
   nominal: OperatingPoint,
+  nominalOffset: number,
   out: Draws,
   checked: CheckedRequest,
-): Uint8Array {
-  const exists = new Uint8Array(DRAWS);
-  const reason = unmatchedReason(checked);
-  const certain = drawn.offset.every((x) => x === drawn.offset[0]);
+): { exists: Uint8Array; point: OperatingPoint; offset: number } {
+  const exists = draws.matched;
+  const unmatched = absent(unmatchedReason(checked));
+  let nearest = -1;
   for (let k = 0; k < DRAWS; k++) {
-    const here = certain ? nominal : points.at(drawn.offset[k]!);
-    exists[k] = here.matched ? 1 : 0;
-    out.set("operating_temperature_c", k, given(here.temperatureC));
-    out.set("operating_pump_nm", k, here.matched ? given(toNm(here.waves.lambdaP)) : absent(reason));
+    out.set("operating_temperature_c", k, given(draws.temperatureC[k]!));
+    out.set("operating_pump_nm", k, exists[k] === 1 ? given(toNm(draws.lambdaP[k]!)) : unmatched);
+    const off = (n: number) => Math.abs(offsets[n]! - nominalOffset);
+    if (exists[k] === 1 && (nearest < 0 || off(k) < off(nearest))) nearest = k;
   }
-  return exists;
+  if (nominal.matched || nearest < 0) return { exists, point: nominal, offset: nominalOffset };
+  return { exists, point: points.at(offsets[nearest]!), offset: offsets[nearest]! };
 }
 
 function predictSite(
@@ -176,22 +186,28 @@ function predictSite(
     out as FigureDraws<ConversionFigure>,
   );
   if (checked.request.process !== "pair-generation") return null;
-  const limit = checked.requirements.find((r) => r.figure === "g2_heralded")?.atMost;
-  return predictPairs(
-    {
-      site,
-      checked,
-      recorded: options.recorded,
-      drawn,
-      grating: (k) => gratings[k % gratings.length]!,
-      walls,
-      exists,
-      unmatched,
-      g2Limit: limit === undefined || limit === Infinity ? undefined : limit,
-    },
-    out as FigureDraws<PairFigure>,
-    options.scratch,
+  const limit = Math.min(
+    ...checked.requirements.filter((r) => r.figure === "g2_heralded").map((r) => r.atMost),
   );
+  const asked: PairQuestion = {
+    site,
+    checked,
+    recorded: options.recorded,
+    drawn,
+    grating: (k) => gratings[k % gratings.length]!,
+    walls,
+    exists,
+    unmatched,
+    g2Limit: limit === Infinity ? undefined : limit,
+  };
+  try {
+    return predictPairs(asked, out as FigureDraws<PairFigure>, options.scratch);
+  } catch (error) {
+    if (!(error instanceof RangeError)) throw error;
+    // A window or a pulse that reaches beyond the index: of this guide's platform nothing can be said, of others it can.
+    for (const name of PAIR_FIGURES) out.fill(name, absent(error.message));
+    return null;
+  }
 }
 
 function indexRemarks(model: PlatformModel, { waves, temperatureC }: Site): string[] {
