@@ -44,19 +44,35 @@ export function drawGrating(guide: GuideInputs, draw: PolingDraw, index: number)
   return realiseGrating({ ...at, duty: draw.duty, dutySd: draw.dutySd, missing: draw.merged }, random);
 }
 
-/** Windows as statistics at their middles, ascending; windows with one middle (repeats) are averaged by their domains. */
+/**
+ * Windows as statistics at their middles, ascending; windows with one middle (repeats) are averaged by their domains. Where
+ * all domains are missing none has a duty: it is taken from the windows beside, which is where domains fade out.
+ */
 export function windowStatistics(windows: readonly PolingWindow[]): WindowStatistics[] {
   const byCentre = new Map<number, PolingWindow[]>();
   for (const w of windows) {
     const centre = w.from + w.length / 2;
     byCentre.set(centre, [...byCentre.get(centre) ?? [], w]);
   }
-  return [...byCentre].sort(([a], [b]) => a - b).map(([centre, repeats]) => {
-    const domains = repeats.reduce((sum, w) => sum + w.domains, 0);
-    const average = (f: (w: PolingWindow) => number) =>
-      domains === 0
-        ? repeats.reduce((sum, w) => sum + f(w), 0) / repeats.length
-        : repeats.reduce((sum, w) => sum + f(w) * w.domains, 0) / domains;
+  const places = [...byCentre].sort(([a], [b]) => a - b).map(([centre, repeats]) => ({
+    centre,
+    repeats,
+    domains: repeats.reduce((sum, w) => sum + w.domains, 0),
+  }));
+  return places.map(({ centre, repeats, domains }) => {
+    const average = (f: (w: PolingWindow) => number): number => {
+      if (domains > 0) return repeats.reduce((sum, w) => sum + f(w) * w.domains, 0) / domains;
+      const before = places.findLast((p) => p.domains > 0 && p.centre < centre);
+      const after = places.find((p) => p.domains > 0 && p.centre > centre);
+      const of = (p: typeof places[number]) =>
+        p.repeats.reduce((sum, w) => sum + f(w) * w.domains, 0) / p.domains;
+      if (before === undefined || after === undefined) {
+        const only = before ?? after;
+        return only === undefined ? f(repeats[0]!) : of(only);
+      }
+      const t = (centre - before.centre) / (after.centre - before.centre);
+      return of(before) + t * (of(after) - of(before));
+    };
     return {
       centre,
       duty: average((w) => w.dutyMean),
@@ -70,5 +86,7 @@ export function windowStatistics(windows: readonly PolingWindow[]): WindowStatis
 export function convertingStretches(guide: GuideInputs, walls: Grating | null): Stretch[] {
   const from = walls?.start ?? guide.poledFrom;
   const to = walls?.end ?? guide.poledFrom + guide.poledLength;
-  return poledStretches(from, to, walls === null ? [] : unpoledGaps(walls, guide.period));
+  const stretches = poledStretches(from, to, walls === null ? [] : unpoledGaps(walls, guide.period));
+  // Walls at the ends and none between: nothing converts anywhere, and the place of a pair is as good as any.
+  return stretches.length > 0 ? stretches : [{ from, to }];
 }
