@@ -220,12 +220,15 @@ function facetPair(readings: LotReadings, reading: FringesRecord, guide: GuideRe
   let bare: Uncertain;
   try {
     // A fringe scan is taken at room temperature; the index moves R by less than 1e-5 per kelvin.
-    bare = bareReflectivity({ value: index.nEff(reading.polarisation, lambda, 25, geometryOf(guide)), u: 0 });
+    const n = index.nEff(reading.polarisation, lambda, 25, geometryOf(guide));
+    bare = bareReflectivity({ value: n, u: 0 }, readings.model.outsideIndex);
   } catch (error) {
     if (error instanceof RangeError) return error.message;
     throw error;
   }
-  if (reading.facet_state === "bare") return bare;
+  if (reading.facet_state === "bare") {
+    return bare.value > 0 ? bare : "a bare facet against its own index makes no fringes";
+  }
   const facets = (["in", "out"] as const).map((facet) => {
     const coating = readings.design.coatingOf.get(`${guide.die_id}|${facet}`);
     if (coating === undefined) return { value: bare, run: null };
@@ -237,6 +240,11 @@ function facetPair(readings: LotReadings, reading: FringesRecord, guide: GuideRe
   if (missing !== undefined) return missing as string;
   const [a, b] = facets as { value: Uncertain; run: string | null }[];
   if (a!.run === null && b!.run === null) return "read as coated, but lot.json lists no coating of this die";
+  for (const { value } of [a!, b!]) {
+    if (!(value.value > 0 && value.value < 1)) {
+      return `a facet of reflectivity ${value.value} makes no fringes that tell a loss`;
+    }
+  }
   return meanReflectivity(a!.value, b!.value, a!.run === b!.run ? 1 : 0);
 }
 
