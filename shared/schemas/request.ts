@@ -228,16 +228,16 @@ function checkPump(pump: NonNullable<Request["pump"]>, pulsed: boolean, problems
 }
 
 function checkPowers(request: Request, problems: RequestProblem[]): void {
-  const asksPower = request.require.some((r) => r.figure === "peak_conversion");
+  const asksPower = request.order_by === "peak_conversion" ||
+    request.require.some((r) => r.figure === "peak_conversion");
   if (!asksPower) return;
-  const given = [
-    request.pump?.average_power_mw,
-    request.signal.average_power_mw,
-    request.idler?.average_power_mw,
-  ];
-  if (given.every((p) => p === undefined)) {
+  // The wave that is made has no power to give: pump in second harmonic and sum frequency, idler in difference frequency.
+  const inputs = request.process === "difference-frequency"
+    ? [request.pump?.average_power_mw, request.signal.average_power_mw]
+    : [request.signal.average_power_mw, request.idler?.average_power_mw];
+  if (inputs.every((p) => p === undefined)) {
     problems.push({
-      field: "signal.average_power_mw",
+      field: request.process === "difference-frequency" ? "pump.average_power_mw" : "signal.average_power_mw",
       reason: "missing: peak_conversion needs the power of the strong input",
     });
   }
@@ -264,6 +264,12 @@ function checkRequirements(request: Request, pulsed: boolean, problems: RequestP
       return void problems.push({
         field: `require[${k}]`,
         reason: `at_least ${atLeast} is above at_most ${atMost}`,
+      });
+    }
+    if (r.figure === "g2_heralded" && atMost <= 0) {
+      return void problems.push({
+        field: `require[${k}].at_most`,
+        reason: `${atMost} is a limit that no source of pairs meets: need a number above 0`,
       });
     }
     out.push({ figure: r.figure, atLeast, atMost });

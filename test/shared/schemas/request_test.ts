@@ -88,3 +88,21 @@ Deno.test("requestSchema refuses an unknown key instead of ignoring a misspelt o
   );
   assert.equal(requestSchema.safeParse({ ...example, oven_c: [90, 20] }).success, false);
 });
+
+Deno.test("checkRequest() wants the power of an input for peak_conversion, not that of the wave that is made", () => {
+  const doubling = {
+    process: "second-harmonic",
+    pump: { average_power_mw: 20 },
+    signal: { wavelength_nm: 1550 },
+    idler: undefined,
+    require: [{ figure: "peak_conversion", at_least: 0.1 }],
+  };
+  assert.match(problems(doubling)[0]!, /^signal\.average_power_mw: missing/);
+  const signal = { wavelength_nm: 1550, average_power_mw: 20 };
+  assert.deepEqual(problems({ ...doubling, signal }), []);
+});
+
+Deno.test("checkRequest() refuses a limit on g2_heralded that nothing meets", () => {
+  const found = problems({ require: [{ figure: "g2_heralded", at_most: 0 }] });
+  assert.match(found[0]!, /^require\[0\]\.at_most: 0 is a limit that no source/);
+});
