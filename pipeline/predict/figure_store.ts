@@ -117,7 +117,7 @@ export class FigureStore {
         r.p.pairs?.exchangeDelay == null ? null : r.p.pairs.exchangeDelay * 1e12
       ),
       grid_points: rows.map((r) => r.p.pairs?.gridPoints ?? null),
-      remarks: rows.map((r) => r.p.remarks.length === 0 ? null : r.p.remarks.join("; ")),
+      remarks: rows.map((r) => r.p.remarks.length === 0 ? null : r.p.remarks.join("\n")),
     });
   }
 }

@@ -147,7 +147,7 @@ function entry(
       windows_nm: { signal: numbers(row.window_signal, " to "), idler: numbers(row.window_idler, " to ") },
     }),
     ...(row.exchange_delay_ps === null ? {} : { exchange_delay_ps: row.exchange_delay_ps as number }),
-    ...(row.remarks === null ? {} : { remarks: (row.remarks as string).split("; ") }),
+    ...(row.remarks === null ? {} : { remarks: (row.remarks as string).split("\n") }),
     figures: all,
   };
 }
