@@ -2,9 +2,7 @@
 // Titanium in-diffused LiNbO3: E. Strake, G. P. Bava & I. Montrosset, J. Lightwave Technol. 6, 1126 (1988); formulas
 // and constants from memory, 15 % when used as physics.
 import cdf from "@stdlib/stats-base-dists-normal-cdf";
-
-/** Titanium atoms per volume of the deposited film, 1/cm³. */
-const FILM_DENSITY = 5.67e22;
+import { FILM_DENSITY, INCREASE } from "./titanium_constants.ts";
 
 /** A diffused stripe: widths and lengths in m, temperature is in the diffusion lengths already. */
 export interface TitaniumStripe {
@@ -28,12 +26,17 @@ export function surfaceConcentration(stripe: TitaniumStripe, x: number): number 
 
 /** Index increase of the extraordinary wave, linear in the concentration (1/cm³); `lambda` in m. */
 export function titaniumStepExtraordinary(concentration: number, lambda: number): number {
-  const x = (lambda * 1e6) ** 2;
-  return 0.839 * x / (x - 0.0645) * 1.2e-23 * concentration;
+  return increase(INCREASE.extraordinary, concentration, lambda);
 }
 
 /** Index increase of the ordinary wave, to the power 0.55 of the concentration (1/cm³); `lambda` in m. */
 export function titaniumStepOrdinary(concentration: number, lambda: number): number {
-  const x = (lambda * 1e6) ** 2;
-  return 0.67 * x / (x - 0.13) * (1.3e-25 * concentration) ** 0.55;
+  return increase(INCREASE.ordinary, concentration, lambda);
+}
+
+type Law = typeof INCREASE[keyof typeof INCREASE];
+
+function increase({ strength, resonance, unit, power }: Law, concentration: number, lambda: number): number {
+  const squared = (lambda * 1e6) ** 2;
+  return strength * squared / (squared - resonance) * (unit * concentration) ** power;
 }
