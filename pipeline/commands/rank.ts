@@ -1,4 +1,4 @@
-import { type Cell, csvText, textTable } from "../console/mod.ts";
+import { type Cell, csvText, textTable, wrap } from "../console/mod.ts";
 import { type Figure, FIGURES } from "../../shared/schemas/figures.ts";
 import { openLedger } from "../ledger/mod.ts";
 import { type RankedEntry, rankGuides, type Ranking } from "../query/rank.ts";
@@ -68,17 +68,17 @@ function printTable(ranking: Ranking, request: LoadedRequest, options: RankComma
     3,
   );
   const columns = [
-    { title: options.allGuides ? "guide" : "die" },
-    ...(options.allGuides ? [] : [{ title: "guide" }]),
+    { title: "guide" },
     { title: "decision" },
-    { title: "prob.", align: "right" as const },
+    { title: "prob", align: "right" as const },
     { title: "T/°C", align: "right" as const },
     ...shown.map((f) => ({ title: SHORT[f] ?? f, align: "right" as const })),
     ...(options.allGuides ? [] : [{ title: "pass", align: "right" as const }]),
-    { title: "limited by" },
+    { title: "limit" },
   ];
   print(textTable(columns, dies.map((d) => tableRow(d, shown, options)), { width: 80 }));
   print(LEGEND);
+  printUnavailable(dies);
   const best = dies[0];
   if (best !== undefined && best.unavailable === undefined) print(`\n${budgetText(best, request)}`);
   for (const text of new Set(dies.flatMap((d) => d.remarks ?? []).map((r) => r.split(":", 1)[0]!))) {
@@ -88,10 +88,23 @@ function printTable(ranking: Ranking, request: LoadedRequest, options: RankComma
   }
 }
 
-const LEGEND = "m measured on the guide, d w l inferred from its die, wafer, lot, p platform's default";
+/** Why dies can't be shipped, one line per reason. */
+function printUnavailable(entries: readonly RankedEntry[]): void {
+  const byReason = new Map<string, Set<string>>();
+  for (const { die, unavailable } of entries) {
+    if (unavailable === undefined) continue;
+    byReason.set(unavailable, (byReason.get(unavailable) ?? new Set()).add(die));
+  }
+  for (const [reason, dies] of byReason) {
+    print(wrap(`unavailable, ${reason}: ${[...dies].join(", ")}`, 80).join("\n"));
+  }
+}
+
+const LEGEND = "m: measured on the guide; d, w, l: inferred from its die, wafer, lot; p: platform's default";
 
 /** Column headings that leave room for three figures in 80 columns. */
 const SHORT: Partial<Record<Figure, string>> = {
+  operating_temperature_c: "no root",
   efficiency_percent_per_w: "%/W",
   efficiency_percent_per_w_cm2: "%/Wcm²",
   peak_conversion: "convers.",
@@ -114,7 +127,7 @@ const SHORT: Partial<Record<Figure, string>> = {
 function tableRow(d: RankedEntry, shown: readonly Figure[], options: RankCommandOptions): Cell[] {
   const t = d.figures.operating_temperature_c;
   return [
-    ...(options.allGuides ? [d.guide] : [d.die, d.guide.slice(d.die.length + 1)]),
+    d.guide,
     d.decision,
     d.probability.toFixed(2),
     t.mean === null ? "–" : t.mean.toFixed(1),
@@ -123,7 +136,11 @@ function tableRow(d: RankedEntry, shown: readonly Figure[], options: RankCommand
       return mean === null ? "–" : `${Number(mean.toPrecision(3))} ${basis[0]}`;
     }),
     ...(options.allGuides ? [] : [`${d.qualifying_guides}/${d.guides_of_die}`]),
-    d.unavailable ?? d.limited_by ?? "",
+    d.unavailable !== undefined
+      ? "unavail."
+      : d.limited_by === null
+      ? ""
+      : SHORT[d.limited_by as Figure] ?? d.limited_by,
   ];
 }
 
