@@ -1,5 +1,4 @@
 import { bandForPeak, gratingFromWalls, gratingSpectrum, mainPeaks } from "../../models/poling/mod.ts";
-import { mismatch } from "../../models/guides/mod.ts";
 import { mm, um } from "../../shared/units.ts";
 import { sha256 } from "../json_file.ts";
 import { type Ledger, type Manifest, type TableStream, tableStream } from "../ledger/mod.ts";
@@ -93,27 +92,9 @@ async function walkWalls(
   return { reduced, peaks };
 }
 
-/** Δβ·scale (1/m) at the peak of a guide's |φ|², with the sign of the scanned process. */
+/** |Δβ|·scale (1/m) at the peak of a guide's |φ|², which is even in Δβ: the domains' signs are real. */
 function peakOf(readings: LotReadings, guideId: string, positions: Float64Array): number | null {
   const guide = readings.design.guideById.get(guideId)!;
-  const scan = readings.tuning.find((r) => r.guide_id === guideId)!;
-  const [polS, polI, polP] = scan.polarisations.split(/[+>]/) as ("TE" | "TM")[];
-  const lambda = scan.wavelength_nm * 1e-9;
-  let sign: number;
-  try {
-    const waves = {
-      lambdaP: lambda / 2,
-      lambdaS: lambda,
-      lambdaI: lambda,
-      polP: polP!,
-      polS: polS!,
-      polI: polI!,
-    };
-    sign = Math.sign(mismatch(readings.model.index, waves, scan.temperature_c, { width_um: guide.width_um }));
-  } catch (error) {
-    if (error instanceof RangeError) return null; // the scan itself is refused for it, with the reason
-    throw error;
-  }
   const period = um(guide.period_um);
   const poledLength = mm(guide.poled_length_mm);
   const grating = gratingFromWalls(positions.map(um), {
@@ -122,7 +103,7 @@ function peakOf(readings: LotReadings, guideId: string, positions: Float64Array)
     period,
     guideLength: mm(guide.length_mm),
   });
-  const vector = sign * 2 * Math.PI / period;
+  const vector = 2 * Math.PI / period;
   const spectrum = gratingSpectrum(
     grating,
     bandForPeak(vector, vector, period, grating.end - grating.start),

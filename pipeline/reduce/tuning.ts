@@ -2,16 +2,16 @@ import { effectiveLength, fitTuningScan, isRefused, mismatchSpread } from "../..
 import { mismatch } from "../../models/guides/mod.ts";
 import { mm, nm, um } from "../../shared/units.ts";
 import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
-import type { GuideRecord, TuningRecord } from "../records.ts";
+import type { TuningRecord } from "../records.ts";
 import { resolveGeometry } from "../traits/geometry.ts";
 import type { TraitPools } from "../traits/pools.ts";
 import { refsOf, type TraitRow } from "../traits/trait_row.ts";
-import { geometryOf, grouped, type LotReadings, placeOf, type Reduced } from "./lot_readings.ts";
+import { grouped, type LotReadings, placeOf, type Reduced } from "./lot_readings.ts";
 
 /** Correlation length (m) at which a spread of δβ is stated; a spread means nothing without one. */
 const CORRELATION_LENGTH = 1e-3;
 
-/** Peak of |φ|² over Δβ·scale (1/m) of guides whose walls are all known, by guide id. */
+/** Peak of |φ|² over |Δβ|·scale (1/m) of guides whose walls are all known, by guide id. */
 export type WallPeaks = ReadonlyMap<string, number>;
 
 /** Tuning scans: the offset of Δβ that moves the calculated centre onto the measured one, and what the width says. */
@@ -43,11 +43,12 @@ function reduceScan(
   const x = (r: TuningRecord) => overTemperature ? r.temperature_c : r.wavelength_nm;
   if (guide.poled_length_mm <= 0) return refuse("the guide is not poled");
   const { process, mismatchAt } = scanProcess(readings, first, resolveGeometry(pools, guide).geometry);
-  // Fitted against the calculated Δβ of each point, not against x: over a scan in temperature Δβ bends, and a sinc² in x
-  // would take the bend for a shift of the centre.
+  // Fitted against the calculated Δβ·scale of each point, on which alone φ depends, and not against x: over a scan in
+  // temperature Δβ bends and the period expands, and a sinc² in x would take both for a shift of the centre.
+  const { expansion } = readings.model;
   let points: { x: number; power: number }[];
   try {
-    points = scan.map((r) => ({ x: mismatchAt(r), power: r.power_rel }));
+    points = scan.map((r) => ({ x: mismatchAt(r) * expansion(r.temperature_c), power: r.power_rel }));
   } catch (error) {
     if (error instanceof RangeError) return refuse(error.message);
     throw error;
@@ -56,9 +57,10 @@ function reduceScan(
   if (isRefused(fit)) return refuse(fit.refused);
   const off = (k: number) => Math.abs(points[k]!.x - fit.centre.value);
   const nearest = scan[points.reduce((best, _, k) => off(k) < off(best) ? k : best, 0)]!;
-  const target =
-    (peaks.get(guide.guide_id) ?? Math.sign(fit.centre.value) * 2 * Math.PI / um(guide.period_um)) /
-    readings.model.expansion(nearest.temperature_c);
+  // Scans of several processes may be of one guide, and Δβ of either sign: the sign is the scan's own.
+  const peak = peaks.get(guide.guide_id) ?? 2 * Math.PI / um(guide.period_um);
+  const target = Math.sign(fit.centre.value) * peak;
+  const scale = expansion(nearest.temperature_c);
   const common = {
     ...placeOf(first, readings.design),
     wavelength_nm: nearest.wavelength_nm,
@@ -74,8 +76,8 @@ function reduceScan(
   out.traits.push({
     ...common,
     trait: "mismatch_offset_per_m",
-    value: target - fit.centre.value,
-    u: fit.centre.u,
+    value: (target - fit.centre.value) / scale,
+    u: fit.centre.u / scale,
   });
   const length = effectiveLength(fit.fwhm, 1);
   out.traits.push({ ...common, trait: "effective_length_mm", value: length.value * 1e3, u: length.u * 1e3 });
