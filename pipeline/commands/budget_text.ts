@@ -39,7 +39,8 @@ export function budgetText(best: RankedEntry, { request }: LoadedRequest): strin
     );
   }
   lines.push(
-    "Powers are estimates. Laser work follows IEC 60825-1 and the laboratory's laser-safety officer.",
+    "Powers are estimates. Laser work follows IEC 60825-1 and the laboratory's",
+    "laser-safety officer.",
   );
   return lines.join("\n");
 }
