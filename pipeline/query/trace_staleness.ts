@@ -1,0 +1,48 @@
+import type { Ledger, Manifest } from "../ledger/mod.ts";
+import { MODEL_VERSION } from "../model_version.ts";
+import type { LoadedPlatform } from "../platforms.ts";
+import type { PredictParameters } from "./trace_find.ts";
+
+/** What has changed since the prediction, in sentences. */
+export async function staleness(
+  now: Ledger,
+  past: Ledger,
+  run: Manifest,
+  reduced: Manifest,
+  parameters: PredictParameters,
+  loaded: LoadedPlatform,
+  requestFingerprint: string | undefined,
+): Promise<string[]> {
+  const lot = run.lot!;
+  const remarks: string[] = [];
+  const before = new Map((await past.activeFiles(lot)).map((f) => [f.name, `${f.sha256} ${f.run}`]));
+  const changed = (await now.activeFiles(lot)).filter((f) => before.get(f.name) !== `${f.sha256} ${f.run}`);
+  const inForce = (await now.runsInForce("reduce")).find((r) => r.lot === lot);
+  if (changed.length > 0) {
+    const names = changed.slice(0, 3).map((f) => f.name).join(", ");
+    const more = changed.length > 3 ? ` and ${changed.length - 3} more` : "";
+    remarks.push(
+      `the prediction is out of date: ${names}${more} taken in since; the trace shows what ${run.run} used; ` +
+        `run predict ${lot}`,
+    );
+  } else if (inForce !== undefined && inForce.run !== reduced.run) {
+    remarks.push(
+      `the prediction is out of date: the readings were reduced anew by ${inForce.run}; run predict ${lot}`,
+    );
+  }
+  if (loaded.fingerprint !== parameters.platform_sha256) {
+    remarks.push(
+      `platform ${parameters.platform} is not the one that ${run.run} used (${loaded.file} has another content): ` +
+        `values are the stored ones; is --platforms right?`,
+    );
+  }
+  if (run.model !== MODEL_VERSION) {
+    remarks.push(`${run.run} was made by model ${run.model}, this program's is ${MODEL_VERSION}`);
+  }
+  if (requestFingerprint !== undefined && requestFingerprint !== parameters.request_sha256) {
+    remarks.push(
+      `the file of request ${parameters.request} has changed since ${run.run}; run predict ${lot}`,
+    );
+  }
+  return remarks;
+}
