@@ -14,7 +14,13 @@ export function budgetText(best: RankedEntry, { request }: LoadedRequest): strin
     const others = best.other_temperatures_c === undefined
       ? ""
       : `; also at ${best.other_temperatures_c.join(", ")} °C`;
-    lines.push(`Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}`);
+    lines.push(
+      f.operating_pump_nm.mean === null
+        ? `Nothing matches in the oven; what follows is at the nearest temperature, ${
+          temperature.mean.toFixed(1)
+        } °C`
+        : `Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}`,
+    );
   }
   if (request.process !== "pair-generation") return lines.join("\n");
   const arms = ["signal", "idler"] as const;

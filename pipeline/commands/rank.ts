@@ -76,8 +76,9 @@ function printTable(ranking: Ranking, request: LoadedRequest, options: RankComma
     ...(options.allGuides ? [] : [{ title: "pass", align: "right" as const }]),
     { title: "limit" },
   ];
-  print(textTable(columns, dies.map((d) => tableRow(d, shown, options)), { width: 80 }));
+  print(textTable(columns, dies.map((d) => tableRow(d, shown, options, request)), { width: 80 }));
   print(LEGEND);
+  if (dies.some(isUnmatched)) print("(T): nothing matches in the oven; T is the nearest temperature");
   printUnavailable(dies);
   const best = dies[0];
   if (best !== undefined && best.unavailable === undefined) print(`\n${budgetText(best, request)}`);
@@ -104,7 +105,7 @@ const LEGEND = "m: measured on the guide; d, w, l: from its die, wafer, lot; p: 
 
 /** Column headings that leave room for three figures in 80 columns. */
 const SHORT: Partial<Record<Figure, string>> = {
-  operating_temperature_c: "no root",
+  operating_temperature_c: "oven/°C",
   efficiency_percent_per_w: "%/W",
   efficiency_percent_per_w_cm2: "%/Wcm²",
   peak_conversion: "convers.",
@@ -124,23 +125,34 @@ const SHORT: Partial<Record<Figure, string>> = {
   loss_db_cm_idler: "dB/cm i",
 };
 
-function tableRow(d: RankedEntry, shown: readonly Figure[], options: RankCommandOptions): Cell[] {
+/** No draw has an operating point: the temperature shown is only the nearest one. */
+const isUnmatched = ({ figures: { operating_temperature_c: t, operating_pump_nm: pump } }: RankedEntry) =>
+  t.mean !== null && pump.mean === null;
+
+function limitText({ limited_by }: RankedEntry, { requirements }: LoadedRequest): string {
+  if (limited_by === null) return "";
+  const asked = requirements.some((r) => r.figure === limited_by);
+  return asked ? SHORT[limited_by as Figure] ?? limited_by : "no root";
+}
+
+function tableRow(
+  d: RankedEntry,
+  shown: readonly Figure[],
+  options: RankCommandOptions,
+  request: LoadedRequest,
+): Cell[] {
   const t = d.figures.operating_temperature_c;
   return [
     d.guide,
     d.decision,
     d.probability.toFixed(2),
-    t.mean === null ? "–" : t.mean.toFixed(1),
+    t.mean === null ? "–" : isUnmatched(d) ? `(${t.mean.toFixed(1)})` : t.mean.toFixed(1),
     ...shown.map((f) => {
       const { mean, basis } = d.figures[f];
       return mean === null ? "–" : `${Number(mean.toPrecision(3))} ${basis[0]}`;
     }),
     ...(options.allGuides ? [] : [`${d.qualifying_guides}/${d.guides_of_die}`]),
-    d.unavailable !== undefined
-      ? "unavail."
-      : d.limited_by === null
-      ? ""
-      : SHORT[d.limited_by as Figure] ?? d.limited_by,
+    d.unavailable !== undefined ? "unavail." : limitText(d, request),
   ];
 }
 
