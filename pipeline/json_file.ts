@@ -7,6 +7,13 @@ export function sha256(data: Uint8Array | string): string {
   return createHash("sha256").update(data).digest("hex");
 }
 
+/**
+ * Fingerprint of what was made from some files: the file's own sha256 where there is one, so that it can be held against
+ * the file; else that of the files' sha256s, one per line.
+ */
+export const fingerprintOf = (hashes: readonly string[]): string =>
+  hashes.length === 1 ? hashes[0]! : sha256(hashes.join("\n"));
+
 /** Reads a small text file; a missing or unreadable one is an {@link InputError} that names it. */
 export async function readTextFile(path: string, what: string): Promise<string> {
   try {

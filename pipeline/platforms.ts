@@ -6,7 +6,7 @@ import { type PlatformModel, platformModel } from "../models/decision/mod.ts";
 import { bulkIndexModel, constantAreaModel, tableAreaModel, tableIndexModel } from "../models/guides/mod.ts";
 import { areaRowSchema, indexRowSchema, type Platform, platformSchema } from "../shared/schemas/platform.ts";
 import { InputError } from "../shared/errors.ts";
-import { issueLines, parseJson, readTextFile, sha256 } from "./json_file.ts";
+import { fingerprintOf, issueLines, parseJson, readTextFile, sha256 } from "./json_file.ts";
 
 export type IndexRow = z.infer<typeof indexRowSchema>;
 export type AreaRow = z.infer<typeof areaRowSchema>;
@@ -84,7 +84,7 @@ export async function loadPlatform(id: string, folder?: string): Promise<LoadedP
       { file, column: "effective_area_um2" },
     );
   }
-  return { platform, indexRows, areaRows, file, fingerprint: sha256(hashes.join("\n")) };
+  return { platform, indexRows, areaRows, file, fingerprint: fingerprintOf(hashes) };
 }
 
 /** What a model is built from: plain data, so that it can be handed to a worker. */

@@ -3,7 +3,7 @@ import { fileURLToPath } from "node:url";
 import { parse } from "csv-parse/sync";
 import { type CheckedRequest, checkRequest, requestSchema } from "../shared/schemas/request.ts";
 import { InputError } from "../shared/errors.ts";
-import { parseJson, readTextFile, sha256 } from "./json_file.ts";
+import { fingerprintOf, parseJson, readTextFile, sha256 } from "./json_file.ts";
 
 /** A sampled pump spectrum: vacuum wavelength in m, intensity per wavelength on a free scale. */
 export interface PumpSpectrum {
@@ -41,7 +41,7 @@ export async function loadRequestFile(path: string): Promise<LoadedRequest> {
     spectrum = parseSpectrum(spectrumText, file);
     hashes.push(sha256(spectrumText));
   }
-  return { ...checked, name: request.request, file: path, fingerprint: sha256(hashes.join("\n")), spectrum };
+  return { ...checked, name: request.request, file: path, fingerprint: fingerprintOf(hashes), spectrum };
 }
 
 /** The folders in which requests are looked for, in order; `--requests DIR` replaces `./requests`. */

@@ -20,8 +20,8 @@ export function traceText(trace: Trace, width = outputWidth()): string {
     `predicted by ${trace.run} (model ${trace.model}) from ${trace.runs.reduce}, ${
       trace.runs.ingest.join(", ")
     }`,
-    `request ${trace.request}, fingerprint ${short(trace.request_sha256)}; ` +
-    `platform ${platform.platform}, fingerprint ${short(platform.sha256)}`,
+    `request ${trace.request}, sha256 ${short(trace.request_sha256)}; ` +
+    `platform ${platform.platform}, sha256 ${short(platform.sha256)}`,
   ];
   const roots: Node[] = [
     leafOf(`${trace.figure} of ${trace.guide} for ${trace.request}: ${figureText(trace)}`, [

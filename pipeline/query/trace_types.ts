@@ -101,7 +101,7 @@ export interface TracedDesign extends Source {
 export interface Trace {
   readonly figure: Figure;
   readonly request: string;
-  /** Fingerprint of the request's file (and of its spectrum) in the run's parameters. */
+  /** Of the request's file; with a spectrum of its own, of both files' sha256s, one per line. */
   readonly request_sha256: string;
   readonly lot: string;
   readonly die: string;
@@ -124,7 +124,7 @@ export interface Trace {
   readonly traits: readonly TracedTrait[];
   readonly platform: {
     readonly platform: string;
-    /** Fingerprint of the platform's file (and of its tables) in the run's parameters. */
+    /** Of the platform's file; with tables, of all files' sha256s, one per line. */
     readonly sha256: string;
     readonly defaults: readonly TracedDefault[];
   };

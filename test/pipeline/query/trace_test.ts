@@ -198,6 +198,14 @@ Deno.test("another platform file is said; values stay the stored ones and readin
   }
 });
 
+Deno.test("the sha256 of request and platform are those of their files", () =>
+  withTracedLot(async ({ ledger, requests }) => {
+    const found = await trace(ledger, "K07-1/05/g01", "purity");
+    const builtIn = new URL("../../../models/platforms/bulk-ktp.json", import.meta.url);
+    assert.equal(found.request_sha256, sha256(await Deno.readFile(join(requests, "pairs.json"))));
+    assert.equal(found.platform.sha256, sha256(await Deno.readFile(builtIn)));
+  }));
+
 Deno.test("a request whose file has changed since is said", () =>
   withTracedLot(async ({ ledger, requests }) => {
     const { fingerprint } = await loadRequestFile(join(requests, "pairs.json"));
