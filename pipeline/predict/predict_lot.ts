@@ -11,6 +11,7 @@ import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_tra
 import { completeWalls, streamWalls } from "../traits/guide_walls.ts";
 import { loadTraits } from "../traits/load_traits.ts";
 import { TraitPools } from "../traits/pools.ts";
+import { powerCautions } from "./cautions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import type { Job, WorkerSetup } from "./jobs.ts";
 import { type JobPool, openPool } from "./pool.ts";
@@ -169,7 +170,8 @@ async function compute(
   const total = design.guides.length * requests.length;
   let finished = 0;
   const pool = openPool(setup, options.workers, total, ({ request, guide, prediction }) => {
-    stores[request]!.set(guide, prediction);
+    const cautions = powerCautions(loaded.platform, requests[request]!.request, prediction.figures);
+    stores[request]!.set(guide, { ...prediction, remarks: [...prediction.remarks, ...cautions] });
     options.onProgress?.(++finished, total);
   });
   try {

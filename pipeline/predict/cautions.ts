@@ -1,0 +1,28 @@
+import type { GuidePrediction } from "../../models/decision/mod.ts";
+import type { Platform } from "../../shared/schemas/platform.ts";
+import type { Request } from "../../shared/schemas/request.ts";
+
+/**
+ * Remarks on power above what the platform's notes allow: stated by the request, or suggested by a figure. The limit is an
+ * estimate of the platform file, for continuous power in the guide.
+ */
+export function powerCautions(
+  { notes }: Pick<Platform, "notes">,
+  { pump, signal, idler }: Pick<Request, "pump" | "signal" | "idler">,
+  figures: GuidePrediction["figures"],
+): string[] {
+  const limit = notes.pump_limit_mw;
+  if (limit === undefined) return [];
+  const stated = [["pump", pump], ["signal", signal], ["idler", idler]] as const;
+  const suggested = figures.find((f) => f.figure === "pump_power_at_g2_mw")?.mean ?? 0;
+  const above = [
+    ...stated.map(([wave, arm]) => [`the request's ${wave}`, arm?.average_power_mw ?? 0] as const),
+    ["pump_power_at_g2_mw", suggested] as const,
+  ].filter(([, power]) => power > limit);
+  const why = notes.caution === undefined ? "" : ` (${notes.caution})`;
+  return above.map(([what, power]) =>
+    `above_power_limit: ${what}, ${
+      Number(power.toPrecision(3))
+    } mW, is above the platform's ${limit} mW${why}`
+  );
+}
