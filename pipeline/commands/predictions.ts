@@ -2,6 +2,7 @@ import { progressBar } from "../console/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import { type Ledger, openLedger } from "../ledger/mod.ts";
 import { predictLot } from "../predict/predict_lot.ts";
+import { checkRanges } from "../predict/request_range.ts";
 import { lotsOf } from "../records.ts";
 import { reduceLot } from "../reduce/reduce_lot.ts";
 import type { LoadedRequest } from "../requests.ts";
@@ -33,8 +34,8 @@ export async function chosenLots(ledger: Ledger, lots: readonly string[]): Promi
 }
 
 /**
- * Brings traits and predictions of some lots up to date: each stage computes only what has changed. Readings are reduced
- * before anything is predicted, so that a bad platform or request ends the call with nothing predicted.
+ * Brings traits and predictions of some lots up to date: each stage computes only what has changed. A platform or request
+ * that can't be used ends the call before the first lot is touched.
  */
 export async function bringUpToDate(
   options: CommonOptions,
@@ -43,8 +44,10 @@ export async function bringUpToDate(
   { quiet = false } = {},
 ): Promise<Predicted[]> {
   await using ledger = await openLedger(options.ledger, { write: true });
+  const chosen = await chosenLots(ledger, lots);
+  await checkRanges(ledger, chosen, requests, options.platforms);
   const out: Predicted[] = [];
-  for (const lot of await chosenLots(ledger, lots)) {
+  for (const lot of chosen) {
     const { remarks } = await reduceLot(ledger, lot, options.platforms);
     if (!quiet) noteAll(remarks.map((r) => r.statement));
     using bar = progressBar(`predicting ${lot}`);

@@ -1,5 +1,4 @@
 import { DRAWS, SPECTRAL_DRAWS } from "../../models/decision/mod.ts";
-import { materialRange } from "../../models/materials/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import { sha256 } from "../json_file.ts";
 import { type Ledger, type Manifest, type TableShape, tableStream } from "../ledger/mod.ts";
@@ -15,6 +14,7 @@ import { powerCautions } from "./cautions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import type { Job, WorkerSetup } from "./jobs.ts";
 import { type JobPool, openPool } from "./pool.ts";
+import { checkRange } from "./request_range.ts";
 
 export interface PredictLotOptions {
   readonly platforms?: string;
@@ -110,29 +110,6 @@ export async function predictLot(
   }
   const order = new Map(requests.map((r, k) => [r.name, k]));
   return done.sort((a, b) => order.get(a.request)! - order.get(b.request)!);
-}
-
-/** A wavelength at which the material has no index is the request's mistake, and said before anything is computed. */
-function checkRange(request: LoadedRequest, { platform }: LoadedPlatform): void {
-  const { waves } = request;
-  for (
-    const [field, lambda, pol] of [
-      ["pump.wavelength_nm", waves.lambdaP, waves.polP],
-      ["signal.wavelength_nm", waves.lambdaS, waves.polS],
-      ["idler.wavelength_nm", waves.lambdaI, waves.polI],
-    ] as const
-  ) {
-    const [low, high] = materialRange(platform.material, platform.axes[pol]).lambda;
-    if (lambda >= low && lambda <= high) continue;
-    const text = (l: number) => (l * 1e9).toFixed(1);
-    throw new InputError(
-      `Cannot use request ${request.file} on platform ${platform.platform}: ${field} is ${
-        text(lambda)
-      } nm, ` +
-        `outside the index of ${platform.material} for ${pol} (${text(low)}–${text(high)} nm)`,
-      { file: request.file, column: field, value: text(lambda) },
-    );
-  }
 }
 
 interface Computed {
