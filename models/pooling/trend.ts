@@ -1,0 +1,67 @@
+// Pure: no I/O, no clock, no hidden randomness.
+import type { SpreadPrior } from "./components.ts";
+import { type Design, designOf, type DesignQuestion, type TrendShape } from "./design.ts";
+import { spreadsOf } from "./lot_fit.ts";
+
+/** A trend that was tried, and how much more probable it makes the readings than no trend. */
+export interface TrendTrial {
+  readonly shape: TrendShape;
+  /** ln of the Bayes factor against no trend. */
+  readonly logFactor: number;
+}
+
+export interface TrendChoice {
+  /** The trend taken; null: the readings do not support one. */
+  readonly taken: TrendShape | null;
+  readonly trials: readonly TrendTrial[];
+  readonly design: Design;
+}
+
+/**
+ * A trend is taken only when the readings are this much more probable with it than without: "strong" on the scale of
+ * R. E. Kass & A. E. Raftery, J. Am. Stat. Assoc. 90, 773 (1995) (from memory). If there is no trend, a Bayes factor above 20
+ * turns up in at most one data set of 20 (Markov's inequality), in practice far less often.
+ */
+export const STRONG_EVIDENCE = 20;
+
+const SHAPES = [
+  { radial: true, linear: false },
+  { radial: false, linear: true },
+  { radial: true, linear: true },
+];
+
+/**
+ * Chooses the trend over the wafer by the evidence, slopes and spreads integrated (spreads by Laplace's method). Slopes have
+ * the prior of the question, centred on 0: few dies then say neither yes nor no, and no trend is taken.
+ */
+export function chooseTrend(
+  question: Omit<DesignQuestion, "trend">,
+  prior: SpreadPrior,
+  need: number = STRONG_EVIDENCE,
+): TrendChoice {
+  const none = designOf({ ...question, trend: null });
+  const { leaves, places, lot } = question;
+  const dies = new Set(leaves.map((l) => l.die).filter((d) => d !== undefined));
+  if (dies.size < 3 || [...dies].some((d) => !places.has(d))) {
+    return { taken: null, trials: [], design: none };
+  }
+  const without = spreadsOf(leaves, none, prior).mode;
+  const lots = new Set(leaves.map((l) => l.lot));
+  // A trend of one lot needs dies of that lot; with a single lot it is the same as a common one.
+  const reach: ("all" | "own")[] = lots.size > 1 && lots.has(lot) ? ["all", "own"] : ["all"];
+  const tried = reach.flatMap((of) =>
+    SHAPES.map((s) => {
+      const shape: TrendShape = { ...s, lots: of };
+      const design = designOf({ ...question, trend: shape });
+      const { logEvidence } = spreadsOf(leaves, design, prior, without.at).mode;
+      return { shape, logFactor: logEvidence - without.logEvidence, design };
+    })
+  );
+  const best = tried.reduce((a, b) => b.logFactor > a.logFactor ? b : a);
+  const taken = best.logFactor >= Math.log(need);
+  return {
+    taken: taken ? best.shape : null,
+    trials: tried.map(({ shape, logFactor }) => ({ shape, logFactor })),
+    design: taken ? best.design : none,
+  };
+}
