@@ -11,7 +11,7 @@ import {
 } from "../../models/metrology/mod.ts";
 import { mm, nm, toDbPerCm } from "../../shared/units.ts";
 import type { Uncertain } from "../../shared/vocabulary.ts";
-import type { CutbackRecord, FringesRecord, GuideRecord } from "../records.ts";
+import type { CutbackRecord, FacetsRecord, FringesRecord, GuideRecord } from "../records.ts";
 import { refsOf, type TraitRow } from "../traits/trait_row.ts";
 import {
   geometryOf,
@@ -192,7 +192,7 @@ export function reduceFringes(readings: LotReadings): Reduced {
       u: toDbPerCm(loss.alpha.u),
       u_from: from,
       method: `fringe contrast, ${reading.facet_state} facets`,
-      readings: refsOf("fringes", [reading]),
+      readings: [...refsOf("fringes", [reading]), ...refsOf("facets", reflectivity.witnesses)],
       detail: `facet reflectivity ${reflectivity.value.toPrecision(4)}, u ${reflectivity.u.toPrecision(2)}`,
     });
   }
@@ -213,8 +213,13 @@ function guideOf({ design }: LotReadings, reading: FringesRecord): GuideRecord |
   return first;
 }
 
+/** A reflectivity and the witness readings that it is from; none for bare facets. */
+interface FacetPair extends Uncertain {
+  readonly witnesses: readonly FacetsRecord[];
+}
+
 /** R = √(R_in·R_out) at the reading's wavelength, or why it is not known. */
-function facetPair(readings: LotReadings, reading: FringesRecord, guide: GuideRecord): Uncertain | string {
+function facetPair(readings: LotReadings, reading: FringesRecord, guide: GuideRecord): FacetPair | string {
   const lambda = nm(reading.wavelength_nm);
   const { index } = readings.model;
   let bare: Uncertain;
@@ -227,25 +232,29 @@ function facetPair(readings: LotReadings, reading: FringesRecord, guide: GuideRe
     throw error;
   }
   if (reading.facet_state === "bare") {
-    return bare.value > 0 ? bare : "a bare facet against its own index makes no fringes";
+    return bare.value > 0
+      ? { ...bare, witnesses: [] }
+      : "a bare facet against its own index makes no fringes";
   }
   const facets = (["in", "out"] as const).map((facet) => {
     const coating = readings.design.coatingOf.get(`${guide.die_id}|${facet}`);
-    if (coating === undefined) return { value: bare, run: null };
+    if (coating === undefined) return { value: bare, run: null, witnesses: [] };
     const spectrum = spectrumOf(readings, coating.coating_run, facet);
     const found = coatedReflectivity(spectrum, lambda);
-    return isRefused(found) ? `${facet} facet: ${found.refused}` : { value: found, run: coating.coating_run };
+    if (isRefused(found)) return `${facet} facet: ${found.refused}`;
+    return { value: found, run: coating.coating_run, witnesses: found.used.map((k) => spectrum[k]!.reading) };
   });
   const missing = facets.find((f) => typeof f === "string");
   if (missing !== undefined) return missing as string;
-  const [a, b] = facets as { value: Uncertain; run: string | null }[];
+  const [a, b] = facets as { value: Uncertain; run: string | null; witnesses: FacetsRecord[] }[];
   if (a!.run === null && b!.run === null) return "read as coated, but lot.json lists no coating of this die";
   for (const { value } of [a!, b!]) {
     if (!(value.value > 0 && value.value < 1)) {
       return `a facet of reflectivity ${value.value} makes no fringes that tell a loss`;
     }
   }
-  return meanReflectivity(a!.value, b!.value, a!.run === b!.run ? 1 : 0);
+  const mean = meanReflectivity(a!.value, b!.value, a!.run === b!.run ? 1 : 0);
+  return { value: mean.value, u: mean.u, witnesses: [...a!.witnesses, ...b!.witnesses] };
 }
 
 /** Readings of a coating run's witness for one facet. */
@@ -256,6 +265,7 @@ export function spectrumOf(
 ) {
   return readings.facets.filter((f) => f.coating_run === run && f.facet === facet).map((f) => ({
     lambda: nm(f.wavelength_nm),
+    reading: f,
     reflectivity: f.reflectivity,
     u: uncertaintyOf(f.u_reflectivity, readings.platform.defaults.u_reflectivity).u,
   }));

@@ -50,6 +50,20 @@ Deno.test("a pooled loss leads to every unit that it was pooled from", () =>
     assertClose(loss.measured[1]!.value, (2.95 - 2.75) / 0.4, { rel: 1e-9 });
   }));
 
+Deno.test("a loss from fringes between coated facets leads to the witness readings of the coating, too", () =>
+  withTracedLot(async ({ ledger }) => {
+    const [loss] = (await trace(ledger, "K07-1/06/g02", "loss_db_cm_idler")).traits;
+    assert.equal(loss!.basis, "measured");
+    assert.deepEqual(
+      loss!.measured[0]!.readings.map((r) => [r.file_name, r.source_line, r.quantity, r.value]),
+      [
+        ["readings/fringes.csv", 2, "contrast", 0.03],
+        ["readings/facets.csv", 3, "reflectivity", 0.006],
+        ["readings/facets.csv", 4, "reflectivity", 0.004],
+      ],
+    );
+  }));
+
 Deno.test("each axis of a mode shows its own column, and the wavelength that it was carried over", () =>
   withTracedLot(async ({ ledger }) => {
     const found = await trace(ledger, "K07-1/05/g01", "coupling_signal");

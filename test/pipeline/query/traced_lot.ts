@@ -45,11 +45,16 @@ const FILES: Record<string, string | object> = {
     coatings: [
       { coating_run: "C1", facet: "out", dies: ["K07-1/05", "K07-1/06"] },
       { coating_run: "C2", facet: "out", dies: ["K07-1/05"] },
+      { coating_run: "C3", facet: "out", dies: ["K07-1/06"] },
     ],
   },
   "guides.csv": GUIDES,
   "readings/cutback.csv": CUTBACK,
-  "readings/facets.csv": "coating_run,facet,wavelength_nm,reflectivity,u_reflectivity\nC2,out,1582,0.004,\n",
+  "readings/facets.csv":
+    "coating_run,facet,wavelength_nm,reflectivity,u_reflectivity\nC2,out,1582,0.004,\nC3,out,1535,0.006,\nC3,out,1545,0.004,\n",
+  // 06/g02 is read between its coated output facet (C3 replaces C1) and its bare input facet.
+  "readings/fringes.csv": "wafer,die,guide,wavelength_nm,polarisation,contrast,u_contrast,facet_state\n" +
+    "K07-1,06,g02,1540,TM,0.03,0.0002,coated\n",
   "readings/modes.csv": "wafer,die,guide,wavelength_nm,polarisation,mfd_x_um,mfd_y_um\n" +
     "K07-1,05,g01,1550,TE,8.1,6.2\n",
   "readings/poling.csv":
