@@ -40,6 +40,7 @@ export async function loadRequestFile(path: string): Promise<LoadedRequest> {
     const spectrumText = await readTextFile(file, "pump spectrum");
     spectrum = parseSpectrum(spectrumText, file);
     hashes.push(sha256(spectrumText));
+    requirePumpWithin(spectrum, checked.waves.lambdaP, file);
   }
   return { ...checked, name: request.request, file: path, fingerprint: fingerprintOf(hashes), spectrum };
 }
@@ -117,6 +118,18 @@ async function isFolder(path: string): Promise<boolean> {
   }
 }
 
+/** A spectrum of another laser, or in another unit, would leave no pump light at all and every figure of pairs empty. */
+function requirePumpWithin({ lambda }: PumpSpectrum, lambdaP: number, file: string): void {
+  const [first, last] = [lambda[0]!, lambda[lambda.length - 1]!];
+  if (lambdaP >= first && lambdaP <= last) return;
+  const text = (l: number) => Number((l * 1e9).toPrecision(7));
+  throw new InputError(
+    `Cannot use pump spectrum ${file}: it reaches from ${text(first)} to ${text(last)} nm, ` +
+      `need the request's pump wavelength ${text(lambdaP)} nm inside`,
+    { file, column: "wavelength_nm" },
+  );
+}
+
 function parseSpectrum(text: string, file: string): PumpSpectrum {
   let records: { record: Record<string, string>; info: { lines: number } }[];
   try {
@@ -143,6 +156,13 @@ function parseSpectrum(text: string, file: string): PumpSpectrum {
     }
     return row;
   }).sort((a, b) => a.lambda - b.lambda);
+  const twice = rows.find((r, k) => k > 0 && r.lambda === rows[k - 1]!.lambda);
+  if (twice !== undefined) {
+    throw new InputError(
+      `Cannot use pump spectrum ${file}: ${twice.lambda} nm stands there twice, need one intensity each`,
+      { file, column: "wavelength_nm", value: String(twice.lambda) },
+    );
+  }
   if (rows.length < 3 || !rows.some((r) => r.intensity > 0)) {
     throw new InputError(`Cannot use pump spectrum ${file}: need at least 3 rows with intensity above 0`, {
       file,
