@@ -13,7 +13,7 @@ import { loadReadings, type LotReadings, type Reduced } from "./lot_readings.ts"
 import { reduceCutback, reduceFringes } from "./loss.ts";
 import { reduceFacets, reduceModes } from "./optics.ts";
 import { reducePoling, reduceWalls } from "./poling.ts";
-import { reduceTuning, type WallPeaks } from "./tuning.ts";
+import { reduceTuning, type WallPeak, type WallPeaks } from "./tuning.ts";
 
 export interface ReduceResult {
   readonly run: Manifest;
@@ -78,7 +78,7 @@ async function walkWalls(
 ): Promise<{ reduced: Reduced; peaks: WallPeaks }> {
   const scanned = new Set(readings.tuning.map((r) => r.guide_id));
   const reduced: Reduced = { traits: [], remarks: [] };
-  const peaks = new Map<string, number>();
+  const peaks = new Map<string, WallPeak>();
   for await (const walls of streamWalls(ledger, readings.lot)) {
     const { traits, remarks } = reduceWalls(readings, walls);
     reduced.traits.push(...traits);
@@ -86,7 +86,7 @@ async function walkWalls(
     const complete = traits.some((t) => t.trait === "walls_complete" && t.value === 1);
     if (complete && scanned.has(walls.guide_id)) {
       const peak = peakOf(readings, walls.guide_id, walls.positions_um);
-      if (peak !== null) peaks.set(walls.guide_id, peak);
+      if (peak !== null) peaks.set(walls.guide_id, { deltaBeta: peak, refs: walls.refs });
     }
   }
   return { reduced, peaks };

@@ -5,14 +5,19 @@ import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocab
 import type { TuningRecord } from "../records.ts";
 import { resolveGeometry } from "../traits/geometry.ts";
 import type { TraitPools } from "../traits/pools.ts";
-import { refsOf, type TraitRow } from "../traits/trait_row.ts";
+import { type ReadingRef, refsOf, type TraitRow } from "../traits/trait_row.ts";
 import { grouped, type LotReadings, placeOf, type Reduced } from "./lot_readings.ts";
 
 /** Correlation length (m) at which a spread of δβ is stated; a spread means nothing without one. */
 const CORRELATION_LENGTH = 1e-3;
 
-/** Peak of |φ|² over |Δβ|·scale (1/m) of guides whose walls are all known, by guide id. */
-export type WallPeaks = ReadonlyMap<string, number>;
+/** Peak of |φ|² over |Δβ|·scale (1/m) of a guide whose walls are all known, and the lines that they stand on. */
+export interface WallPeak {
+  readonly deltaBeta: number;
+  readonly refs: readonly ReadingRef[];
+}
+/** By guide id. */
+export type WallPeaks = ReadonlyMap<string, WallPeak>;
 
 /** Tuning scans: the offset of Δβ that moves the calculated centre onto the measured one, and what the width says. */
 export function reduceTuning(readings: LotReadings, peaks: WallPeaks, pools: TraitPools): Reduced {
@@ -42,7 +47,8 @@ function reduceScan(
   const overTemperature = distinct((r) => r.temperature_c) > distinct((r) => r.wavelength_nm);
   const x = (r: TuningRecord) => overTemperature ? r.temperature_c : r.wavelength_nm;
   if (guide.poled_length_mm <= 0) return refuse("the guide is not poled");
-  const { process, mismatchAt } = scanProcess(readings, first, resolveGeometry(pools, guide).geometry);
+  const { geometry, errors } = resolveGeometry(pools, guide);
+  const { process, mismatchAt } = scanProcess(readings, first, geometry);
   // Fitted against the calculated Δβ·scale of each point, on which alone φ depends, and not against x: over a scan in
   // temperature Δβ bends and the period expands, and a sinc² in x would take both for a shift of the centre.
   const { expansion } = readings.model;
@@ -58,7 +64,7 @@ function reduceScan(
   const off = (k: number) => Math.abs(points[k]!.x - fit.centre.value);
   const nearest = scan[points.reduce((best, _, k) => off(k) < off(best) ? k : best, 0)]!;
   // Scans of several processes may be of one guide, and Δβ of either sign: the sign is the scan's own.
-  const peak = peaks.get(guide.guide_id) ?? 2 * Math.PI / um(guide.period_um);
+  const peak = peaks.get(guide.guide_id)?.deltaBeta ?? 2 * Math.PI / um(guide.period_um);
   const target = Math.sign(fit.centre.value) * peak;
   const scale = expansion(nearest.temperature_c);
   const common = {
@@ -68,7 +74,12 @@ function reduceScan(
     process,
     u_from: "fit" as const,
     method: `tuning scan ${first.scan} over ${overTemperature ? "temperature" : "wavelength"}`,
-    readings: refsOf("tuning", scan),
+    // The offset is what the scan leaves beside the guide's geometry and, where they are known, its walls.
+    readings: [
+      ...refsOf("tuning", scan),
+      ...peaks.get(guide.guide_id)?.refs ?? [],
+      ...errors.flatMap((e) => e.resolved.used.flatMap((k) => pools.rows[k]!.readings)),
+    ],
     detail: `peak near ${x(nearest)} ${overTemperature ? "°C" : "nm"}, width ${
       fit.fwhm.value.toPrecision(4)
     } 1/m in Δβ`,
