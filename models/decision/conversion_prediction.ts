@@ -19,8 +19,8 @@ import {
   acceptanceScan,
   conversionOf,
   efficiencyOf,
+  responder,
   type Response,
-  response,
   type Site,
   siteLength,
 } from "./site.ts";
@@ -50,12 +50,10 @@ export function predictConversion(question: ConversionQuestion, out: FigureDraws
   const { site, checked, drawn, gratings } = question;
   const { process } = checked.request;
   const conversion = conversionOf(process, site);
-  const scan = acceptanceScan(process, site.waves);
   const alphas = (k: number) => ({ p: drawn.lossP[k]!, s: drawn.lossS[k]!, i: drawn.lossI[k]! });
   const weights = Array.from({ length: DRAWS }, (_, k) => conversion.weight(alphas(k)));
-  const responses: Response[] = gratings.map((grating, j) =>
-    response(site, grating, weights[j]!.decay, scan)
-  );
+  const respond = responder(site, acceptanceScan(process, site.waves));
+  const responses: Response[] = gratings.map((grating, j) => respond(grating, weights[j]!.decay));
   const power = inputPower(checked);
   for (let k = 0; k < DRAWS; k++) {
     if (question.exists[k] !== 1) {

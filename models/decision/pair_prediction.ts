@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { lossyUniform, pairWeight } from "../conversion/mod.ts";
-import { bareReflectivity, modeOverlap } from "../metrology/mod.ts";
+import { bareReflectivity, centredOverlap } from "../metrology/mod.ts";
 import {
   absent,
   type ArmOptics,
@@ -145,15 +145,11 @@ function armOptics(
     : "reason" in traits.mode
     ? traits.mode.reason
     : null;
-  const exact = (micrometres: number) => ({ value: um(micrometres), u: 0 });
   return (k) => ({
     facet: given(1 - (drawn.reflectivity === null ? bare : drawn.reflectivity[k]!)),
-    coupling: unknown !== null ? absent(unknown) : given(
-      modeOverlap(
-        { x: exact(drawn.modeX![k]!), y: exact(drawn.modeY![k]!) },
-        { x: exact(fibre!), y: exact(fibre!) },
-      ).value,
-    ),
+    coupling: unknown !== null
+      ? absent(unknown)
+      : given(centredOverlap([um(drawn.modeX![k]!), um(drawn.modeY![k]!)], [um(fibre!), um(fibre!)])),
     detector,
     dark: request?.detector?.dark_hz ?? 0,
   });

@@ -56,6 +56,23 @@ export function modeOverlap(
   return { value, u: value * Math.sqrt(variance) };
 }
 
+/**
+ * The value of {@link modeOverlap} alone, for centred modes and in draws.
+ * @param a,b mode-field diameters along x and y, m
+ * @throws RangeError for a diameter that is not positive and finite
+ */
+export function centredOverlap(a: readonly [number, number], b: readonly [number, number]): number {
+  let value = 1;
+  for (let axis = 0; axis < 2; axis++) {
+    const [p, q] = [a[axis]!, b[axis]!];
+    if (!(p > 0 && p < Infinity && q > 0 && q < Infinity)) {
+      throw new RangeError(`Cannot overlap modes: found widths ${p} m and ${q} m, need > 0`);
+    }
+    value *= 2 * p * q / (p * p + q * q);
+  }
+  return value;
+}
+
 const NO_OFFSET = { x: { value: 0, u: 0 }, y: { value: 0, u: 0 } };
 
 /** One axis: factor, and first and second derivatives of its logarithm, each times the u of its inputs (w₁, w₂, d). */

@@ -78,7 +78,8 @@ export function bandwidth(
 ): Outcome {
   const x: number[] = [];
   const y: number[] = [];
-  for (const run of runsOf(axis)) refineRun(axis.omega, spectrum, run, x, y);
+  const highest = spectrum.reduce((a, b) => Math.max(a, b), 0);
+  for (const run of runsOf(axis)) refineRun(axis.omega, spectrum, run, highest, x, y);
   const half = y.reduce((a, b) => Math.max(a, b), 0) / 2;
   if (!(half > 0)) return absent("no pair passes the filters");
   const n = x.length;
@@ -119,17 +120,61 @@ function runsOf(axis: Axis): Run[] {
 /** Points between two grid points at which the cubic through the nearest four is evaluated. */
 const FINER = 8;
 
+/** Weights of the four points about an interval of an even grid, at q/8 of it. */
+const EVEN = Array.from({ length: FINER }, (_, q) => {
+  const t = q / FINER;
+  return [
+    -t * (t - 1) * (t - 2) / 6,
+    (t + 1) * (t - 1) * (t - 2) / 2,
+    -(t + 1) * t * (t - 2) / 2,
+    (t + 1) * t * (t - 1) / 6,
+  ] as const;
+});
+
+/**
+ * Where all points about an interval are below this share of the highest grid point, no point of the cubic reaches half
+ * of the maximum: the weights' absolute values sum up to at most 1.64 (outer intervals), and 1.64·0.3 < ½.
+ */
+const FAR_BELOW = 0.3;
+
 /** Appends a run from edge to edge, the cubic through the nearest four points carried half a step to the edges. */
-function refineRun(omega: Float64Array, spectrum: Float64Array, run: Run, x: number[], y: number[]): void {
+function refineRun(
+  omega: Float64Array,
+  spectrum: Float64Array,
+  run: Run,
+  highest: number,
+  x: number[],
+  y: number[],
+): void {
   const { from, to, first, end } = run;
-  const push = (at: number) => {
+  const put = (at: number, value: number) => {
     x.push(at);
-    y.push(Math.max(0, lagrange(omega, spectrum, first, end, at)));
+    y.push(Math.max(0, value));
   };
+  const push = (at: number) => put(at, lagrange(omega, spectrum, first, end, at));
   push(from);
   for (let k = first; k < end; k++) {
     const next = k + 1 < end ? omega[k + 1]! : to;
-    for (let q = 0; q < FINER; q++) push(omega[k]! + q / FINER * (next - omega[k]!));
+    const width = next - omega[k]!;
+    let about = 0;
+    for (let n = Math.max(first, k - 3); n < Math.min(end, k + 4); n++) about = Math.max(about, spectrum[n]!);
+    if (about < FAR_BELOW * highest) {
+      put(omega[k]!, spectrum[k]!);
+      continue;
+    }
+    const even = k > first && k + 2 < end && Math.abs(omega[k]! - omega[k - 1]! - width) < 1e-9 * width &&
+      Math.abs(omega[k + 2]! - next - width) < 1e-9 * width;
+    for (let q = 0; q < FINER; q++) {
+      const at = omega[k]! + q / FINER * width;
+      if (!even) push(at);
+      else {
+        const w = EVEN[q]!;
+        put(
+          at,
+          w[0] * spectrum[k - 1]! + w[1] * spectrum[k]! + w[2] * spectrum[k + 1]! + w[3] * spectrum[k + 2]!,
+        );
+      }
+    }
   }
   push(to);
 }

@@ -4,6 +4,7 @@ export { type JointAmplitude, newScratch, type Scratch, type WaveNumbers } from 
 export type { Axis } from "./axis.ts";
 export { carContinuous, carPulsed, type Darkness, type PairDetection } from "./car.ts";
 export { LOW_GAIN_LIMIT, lowGainRemark, type PairStrength, parametricStrength } from "./counts.ts";
+export { type Curve, tabulate } from "./curve.ts";
 export { type DelayMaximum, maximiseOverDelay } from "./delay.ts";
 export {
   type ArmOptics,

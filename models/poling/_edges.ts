@@ -49,6 +49,7 @@ export function gatherEdges(grating: Grating, setting: SpectrumSetting): Edges {
   }
   const start = grating.start * scale;
   const end = grating.end * scale;
+  if (setting.profile === undefined) return plainEdges(grating, start, end, scale);
   let size = 0;
   let piece = pieces[0]!;
   const put = (at: number, w: number) => {
@@ -79,6 +80,37 @@ export function gatherEdges(grating: Grating, setting: SpectrumSetting): Edges {
     }
   }
   return centred(size);
+}
+
+/** Edges without a profile: no phase and no slope but zeros. */
+function plainEdges({ walls, firstSign }: Grating, start: number, end: number, scale: number): Edges {
+  const size = walls.length + 2;
+  theta.fill(0, 0, size);
+  delta.fill(0, 0, size);
+  slope.fill(0, 0, size);
+  let sign: number = firstSign;
+  z[0] = start;
+  weight[0] = -sign;
+  for (let j = 0; j < walls.length; j++) {
+    z[j + 1] = scale * walls[j]!;
+    weight[j + 1] = 2 * sign;
+    sign = -sign;
+  }
+  z[size - 1] = end;
+  weight[size - 1] = sign;
+  const sumOfWeights = 2 * walls.length + 2;
+  return {
+    size,
+    z,
+    theta,
+    delta,
+    slope,
+    weight,
+    meanDelta: 0,
+    largestDelta: 0,
+    largestSlope: 0,
+    sumOfWeights,
+  };
 }
 
 /** Takes the middle of the range out of δβ and finds the largest numbers. */

@@ -109,3 +109,26 @@ Deno.test("nothing is extrapolated", () => {
   throws(() => bandCovering(2, 1, length), RangeError);
   throws(() => bandCovering(0, 1e12, length), RangeError);
 });
+
+Deno.test("many points are read from a finer table, to 1e-6 of the peak and as strictly", () => {
+  const grating = realiseGrating({ start: 1e-3, length, period, dutySd: 0.1, missing: 0.1 }, randomFrom(3));
+  const s = gratingSpectrum(grating, bandCovering(vector - 3000, vector + 3000, length));
+  const [lo, hi] = [s.first, s.first + (s.re.length - 1) * s.step];
+  const points = Float64Array.from(
+    { length: 20 * s.re.length },
+    (_, k) => lo + (hi - lo) * k / (20 * s.re.length - 1),
+  );
+  const re = new Float64Array(points.length);
+  const im = new Float64Array(points.length);
+  interpolateSpectrumInto(s, points, re, im);
+  let peak = 0;
+  for (let k = 0; k < s.re.length; k++) peak = Math.max(peak, Math.hypot(s.re[k]!, s.im[k]!));
+  points.forEach((x, k) => {
+    const { re: a, im: b } = interpolateSpectrum(s, x);
+    const [c, sn] = [Math.cos(x * s.centre), Math.sin(x * s.centre)];
+    const error = Math.hypot(re[k]! - (c * a - sn * b), im[k]! - (c * b + sn * a)) / peak;
+    ok(error < 3e-8, `relative error ${error} at ${x}`);
+  });
+  points[7] = hi + s.step;
+  throws(() => interpolateSpectrumInto(s, points, re, im), RangeError);
+});
