@@ -30,7 +30,7 @@ export interface IndexSlice {
 
 /** One platform's index for any geometry. `lambda`: vacuum wavelength, m; `temperatureC`: °C. */
 export interface IndexModel {
-  readonly from: "bulk" | "table";
+  readonly from: "bulk" | "table" | "solver";
   /** @throws RangeError naming the limits, if asked beyond them */
   nEff(pol: Polarisation, lambda: number, temperatureC: number, geometry: GuideGeometry): number;
   /** n_eff − λ·dn_eff/dλ. @throws RangeError naming the limits, if asked beyond them */

@@ -22,3 +22,4 @@ export {
 } from "./index_model.ts";
 export { propagationAxis } from "./propagation_axis.ts";
 export { type IndexTableRow, tableIndexModel } from "./table_index.ts";
+export * from "./solver/mod.ts";

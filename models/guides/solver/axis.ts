@@ -74,7 +74,7 @@ export function unknownRange({ nodes, low, high }: Axis): { first: number; count
 }
 
 /** Areas of the nodes of both axes, as weights for sums over the whole grid: x running fastest, m². */
-export function areaWeights(x: Axis, y: Axis): Float64Array {
+export function areaWeights(x: Pick<Axis, "nodes">, y: Pick<Axis, "nodes">): Float64Array {
   const wx = nodeWeights(x.nodes);
   const wy = nodeWeights(y.nodes);
   const out = new Float64Array(wx.length * wy.length);

@@ -23,6 +23,10 @@ export interface Eigenpair {
 const SETTLED = 1e-12;
 const ROUNDING = 2 ** -52;
 const ROUNDS = 40;
+/** Where modes above one are counted, as a share of μ; two modes nearer than this cannot be told apart. */
+const BESIDE = 1e-7;
+/** Share of the largest value below which a sign says nothing. */
+const NOISE = 1e-5;
 
 function factor(matrix: ModeMatrix, shift: number, memory: Memory): BandFactors {
   const factors = factorBand(shiftedBand(matrix, shift, memory.band));
@@ -50,7 +54,7 @@ export function eigenpair(
     // The mode sought is the first below the shift, or the last above it.
     if (factors.negative === order || factors.negative === order + 1) {
       const found = inverseIteration(matrix, factors, options.guess, start);
-      if (found !== null && isSought(found, factors.negative, options.guess, order, floor)) {
+      if (found !== null && isSought(matrix, found, order, floor, memory)) {
         return { ...found, order };
       }
     }
@@ -66,26 +70,35 @@ export function eigenpair(
     if (step < 3 || hi - lo > 0.02 * (lo + matrix.highest / 50)) continue;
     const factors = factor(matrix, hi, memory);
     const found = inverseIteration(matrix, factors, hi, start);
-    if (found !== null && found.mu > lo && isSought(found, factors.negative, hi, order, floor)) {
+    if (found !== null && isSought(matrix, found, order, floor, memory)) {
       return { ...found, order };
     }
   }
   throw new RangeError(
-    `Cannot solve the mode of order ${order}: two modes are nearly degenerate near μ = ${hi}`,
+    `Cannot solve the mode of order ${order}: found two modes too near to each other at μ = ${hi}, need a larger distance`,
   );
 }
 
-/** Whether a pair that iteration at a shift led to is the mode of this order: on the right side of the shift, with nothing between. */
+/**
+ * Proof that a pair is the mode of this order. The fundamental mode alone has no sign change (the couplings are
+ * positive: Perron and Frobenius); for the others, the number of modes above them is counted.
+ */
 function isSought(
-  found: { mu: number; residual: number },
-  above: number,
-  shift: number,
+  matrix: ModeMatrix,
+  { mu, vector }: { mu: number; vector: Float64Array },
   order: number,
   floor: number,
+  memory: Memory,
 ): boolean {
-  // Iteration leads to the mode nearest to the shift, and on that side none is nearer than the one sought.
-  if (found.mu <= floor) return false;
-  return above === order ? found.mu <= shift : found.mu >= shift;
+  if (mu <= floor) return false;
+  if (order > 0) return modesAbove(matrix, mu * (1 + BESIDE), memory) === order;
+  let lowest = 0;
+  let highest = 0;
+  for (const value of vector) {
+    lowest = Math.min(lowest, value);
+    highest = Math.max(highest, value);
+  }
+  return Math.min(-lowest, highest) < NOISE * Math.max(-lowest, highest);
 }
 
 /** Inverse iteration at one shift until the Rayleigh quotient stands still. Null if it does not settle. */

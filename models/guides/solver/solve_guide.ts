@@ -23,6 +23,8 @@ export interface SolvedMode extends ModeField {
   readonly gridError: number;
   /** Even modes are numbered 0, 1 … by falling index, odd ones likewise. */
   readonly order: number;
+  /** What was solved for (E, or n²E for a field across the surface) at the unknown nodes of the grid. */
+  readonly vector: Float64Array;
 }
 
 /** No guided mode: a result, not an error. */
@@ -48,7 +50,7 @@ export const DEFAULT_CELLS: GridCells = { x: 100, y: 152 };
 const TAILS = 9;
 /** First guess of the reach, and the farthest that a grid goes, m. */
 const FIRST_REACH = 40e-6;
-const FARTHEST = 250e-6;
+export const FARTHEST = 250e-6;
 const NEAREST = 8e-6;
 /** A mode that still has e^−3 of its field at the farthest end is called cut off. */
 const HELD_TAILS = 3;
@@ -111,6 +113,7 @@ export function solveGuide(
     grids: [index(coarse?.mu ?? NaN), index(middle?.mu ?? NaN), index(fine.mu)],
     gridError: error / (2 * nEff),
     order,
+    vector: fine.vector,
     ...modeField(fineMatrix, fine, parity, field?.kind === "across"),
   };
 }
