@@ -184,10 +184,22 @@ function combine(
   priorSd: number,
 ): Level | null {
   if (units.length + direct.length === 0) return null;
-  const sd = units.length >= UNITS_FOR_OWN_SPREAD ? ownSpread(units) : priorSd;
+  const sd = units.length >= UNITS_FOR_OWN_SPREAD
+    ? ownSpread(units)
+    : priorSd > 0
+    ? priorSd
+    : unknownSpread(units);
   const scattered = units.map((x) => ({ value: x.value, u: Math.hypot(x.u, sd) }));
   const { value, u } = weightedMean([...scattered, ...direct]);
   return { value, u, sd, used: [...units.flatMap((x) => x.used), ...direct.map((o) => o.index)] };
+}
+
+/**
+ * Spread where the platform gives none: what few units show, and for one unit its own error. Taken as 0, counts of rare
+ * events would weigh by 1/u², which favours the units that happened to have none.
+ */
+function unknownSpread(units: readonly Uncertain[]): number {
+  return units.length >= 2 ? ownSpread(units) : units[0]?.u ?? 0;
 }
 
 /** Spread between units, their own reading variance taken off (method of moments, not below 0). */
