@@ -8,7 +8,7 @@ export interface LatticePoint {
 }
 
 /** Distance of the points in standard deviations, by dimension: the rectangle rule's error for a normal is 2e^(−2π²/h²). */
-const STEPS = [1, 0.75, 0.75, 1, 1.25];
+const STEPS = [1, 0.75, 1, 1.25, 1.5];
 /** Points this much less probable than the best (natural logarithm) carry nothing that counts. */
 const DEPTH = 8;
 /** Bound on the work for densities far from normal. */

@@ -60,7 +60,7 @@ export function contradictions(
       if (p < least) [least, worst] = [p, deletion];
     }
     // A reading that hides itself looks better than it is: the exact answer is asked for well above the limit.
-    if (worst === null || least > Math.min(0.05, 100 * limit)) break;
+    if (worst === null || least > Math.min(0.05, 20 * limit)) break;
     const without = new Set([...aside, ...worst.members]);
     const next = refit(without);
     if (next === null) break;

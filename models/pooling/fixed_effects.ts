@@ -1,5 +1,5 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import { CholeskyDecomposition, Matrix } from "ml-matrix";
+import { backwardInPlace, factorInPlace, forwardInPlace } from "./_cholesky.ts";
 import type { Sweep } from "./sweep.ts";
 
 /** Normal priors of the fixed effects, independent; an infinite standard deviation is no prior at all. */
@@ -23,54 +23,50 @@ export interface FixedEffects {
  * @throws RangeError when the readings leave an effect without a prior open
  */
 export function fixedEffects(sweep: Sweep, prior: EffectPrior): FixedEffects {
-  const { factor, right, logLikelihood } = solveEffects(sweep, prior);
-  const p = right.rows;
-  const estimate = factor.solve(right).to1DArray();
-  const covariance = p === 0 ? [] : factor.solve(Matrix.eye(p)).to1DArray();
-  return { logLikelihood, estimate: Float64Array.from(estimate), covariance: Float64Array.from(covariance) };
+  const { lower, whitened, logLikelihood } = solveEffects(sweep, prior);
+  const p = whitened.length;
+  backwardInPlace(lower, p, whitened);
+  const covariance = new Float64Array(p * p);
+  for (let j = 0; j < p; j++) {
+    const column = new Float64Array(p);
+    column[j] = 1;
+    forwardInPlace(lower, p, column);
+    backwardInPlace(lower, p, column);
+    covariance.set(column, j * p);
+  }
+  return { logLikelihood, estimate: whitened, covariance };
 }
 
 /** Only the likelihood of {@link fixedEffects}. */
 export const logLikelihood = (sweep: Sweep, prior: EffectPrior): number =>
   solveEffects(sweep, prior).logLikelihood;
 
+/** Normal equations A β = b with the prior added, factored: A = LLᵀ; `whitened` is L⁻¹b. */
 function solveEffects({ cross, logDet }: Sweep, { mean, sd }: EffectPrior) {
   const p = mean.length;
   const q = p + 1;
-  const normal = new Matrix(p, p);
-  const right = new Matrix(p, 1);
+  const lower = new Float64Array(p * p);
+  const whitened = new Float64Array(p);
   let quadratic = cross[0]!;
   let logPrior = 0;
   for (let i = 0; i < p; i++) {
     const precision = 1 / sd[i]! ** 2;
-    for (let j = i; j < p; j++) {
-      const x = cross[(i + 1) * q + j + 1]! + (i === j ? precision : 0);
-      normal.set(i, j, x);
-      normal.set(j, i, x);
-    }
-    right.set(i, 0, cross[i + 1]! + precision * mean[i]!);
+    for (let j = i; j < p; j++) lower[j * p + i] = cross[(i + 1) * q + j + 1]!;
+    lower[i * p + i]! += precision;
+    whitened[i] = cross[i + 1]! + precision * mean[i]!;
     quadratic += precision * mean[i]! ** 2;
     if (precision > 0) logPrior += Math.log(precision);
   }
-  const factor = new CholeskyDecomposition(normal);
-  if (!factor.isPositiveDefinite()) {
+  const logNormal = factorInPlace(lower, p);
+  if (Number.isNaN(logNormal)) {
     throw new RangeError(`Cannot estimate ${p} fixed effects: the readings leave one open, need a prior`);
   }
-  const lower = factor.lowerTriangularMatrix;
-  // bᵀA⁻¹b = |L⁻¹b|², by forward substitution.
-  const y = new Float64Array(p);
+  forwardInPlace(lower, p, whitened);
   let explained = 0;
-  let logNormal = 0;
-  for (let i = 0; i < p; i++) {
-    let t = right.get(i, 0);
-    for (let j = 0; j < i; j++) t -= lower.get(i, j) * y[j]!;
-    y[i] = t / lower.get(i, i);
-    explained += y[i]! ** 2;
-    logNormal += 2 * Math.log(lower.get(i, i));
-  }
+  for (let i = 0; i < p; i++) explained += whitened[i]! ** 2;
   return {
-    factor,
-    right,
+    lower,
+    whitened,
     logLikelihood: -0.5 * (logDet + logNormal - logPrior + quadratic - explained),
   };
 }

@@ -12,7 +12,7 @@ import type { Design } from "./design.ts";
 import { fixedEffects } from "./fixed_effects.ts";
 import { type Forest, forestOf, type Leaf } from "./forest.ts";
 import { lattice } from "./_lattice.ts";
-import { type LotState, lotState } from "./lot_state.ts";
+import { LotStates } from "./lot_state.ts";
 import { type Sweep, sweepFor, sweepInto, type Variances } from "./sweep.ts";
 
 /** Normal distributions of one quantity, one for each point of the integration over the spreads. */
@@ -77,14 +77,13 @@ export function fitLot(
   const open = openLevels(prior);
   const places = lattice(density, mode, mode.curvature.map((c) => curvatureAtLeast(c, prior)));
   const sweep = sweepFor(forest);
-  const states: LotState[] = [];
+  const answers = new LotStates(forest, lot);
   const points = places.map(({ at, share }) => {
     const variances = variancesAt(at, open);
-    states.push(
-      lotState(forest, sweepInto(forest, variances, sweep), variances, fixedEffects(sweep, effects), lot),
-    );
+    answers.add(share, sweepInto(forest, variances, sweep), variances, fixedEffects(sweep, effects));
     return { share, variances };
   });
+  const { states } = answers;
   const share = Float64Array.from(points, (p) => p.share);
   const variances = variancesAt(mode.at, open);
   return {
@@ -102,16 +101,9 @@ export function fitLot(
       return { name, value: mixed.value + (i === 0 ? reference : 0), u: mixed.u };
     }),
     ask(asked) {
-      const row = design.rowOf(asked);
       const extra = design.newWidthVariance(asked.widthUm);
-      const mean = new Float64Array(states.length);
-      const variance = new Float64Array(states.length);
-      states.forEach((state, k) => {
-        const { m, v } = state.at(asked, row);
-        mean[k] = m + reference;
-        variance[k] = v + extra;
-      });
-      return { share, mean, variance };
+      const { share, mean, variance } = answers.ask(asked, design.rowOf(asked));
+      return { share, mean: mean.map((m) => m + reference), variance: variance.map((v) => v + extra) };
     },
   };
 }

@@ -1,95 +1,176 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { FixedEffects } from "./fixed_effects.ts";
 import type { Forest } from "./forest.ts";
-import type { Asked } from "./lot_fit.ts";
+import type { Asked, Mixture } from "./lot_fit.ts";
 import type { NodeSums, Sweep, Variances } from "./sweep.ts";
 
-/** Posterior of everything in one lot for one set of variances. */
-export interface LotState {
-  readonly effects: FixedEffects;
-  /** Mean and variance; `row` is the unit's row of the design. */
-  at(asked: Asked, row: readonly number[]): { m: number; v: number };
+/**
+ * Posterior of a node for one set of variances: smoothed rows (what the readings say of the sum of effects down to there,
+ * for the values and for every design column) and the variance of that sum, the fixed effects taken as known.
+ */
+interface Nodes {
+  readonly mean: Float64Array;
+  readonly variance: Float64Array;
 }
 
-interface Node {
-  /** Smoothed rows: what the readings say of the sum of effects down to here, for the values and every design column. */
-  readonly mean: Float64Array;
-  readonly variance: number;
+/** Posterior of everything in one lot for one set of variances. */
+interface State {
+  readonly effects: FixedEffects;
+  readonly variances: Variances;
+  readonly lot: Nodes;
+  readonly wafers: Nodes;
+  readonly dies: Nodes;
+}
+
+/** Where something asked for sits among the nodes of a lot; −1 where nothing was read. */
+interface Path {
+  readonly wafer: number;
+  readonly die: number;
+  readonly leaf: number;
 }
 
 /**
- * Walks from the lot down. A node's effects sum to κ·(sum above) + (1 − κ)·(mean of its readings), κ = 1/(1 + σ²·weight),
- * with variance σ²κ + κ²·(variance above); the readings' residuals are linear in the fixed effects, so the same walk over
- * the design columns gives what their uncertainty adds.
+ * Answers for one lot at every point of an integration over variances.
+ *
+ * A node's effects sum to κ·(sum above) + (1 − κ)·(mean of its readings), κ = 1/(1 + σ²·weight), with variance
+ * σ²κ + κ²·(variance above): one walk from the lot down. What the readings say is linear in the fixed effects, so the same
+ * walk over the design columns gives what the fixed effects' uncertainty adds.
  */
-export function lotState(
-  forest: Forest,
-  sweep: Sweep,
-  variances: Variances,
-  effects: FixedEffects,
-  lot: string,
-): LotState {
-  const { columns: q } = forest;
-  const [lotVar, waferVar, dieVar, guideVar] = variances;
-  const wafers = new Map<string, Node>();
-  const dies = new Map<string, Node>();
-  const leaves = new Map<string, { leaf: number; die: Node }>();
-  const step = (above: Node, sums: NodeSums, i: number, own: number): Node =>
-    blend(above, sums.weight[i]!, sums.mean, i * q, own, q);
-  const l = forest.lots.indexOf(lot);
-  const nothing: Node = { mean: new Float64Array(q), variance: 0 };
-  const top = l < 0 ? { mean: nothing.mean, variance: lotVar } : step(nothing, sweep.lots, l, lotVar);
-  if (l >= 0) {
-    for (let w = forest.firstWafer[l]!; w < forest.firstWafer[l + 1]!; w++) {
-      const wafer = step(top, sweep.wafers, w, waferVar);
-      wafers.set(forest.wafers[w]!, wafer);
-      for (let d = forest.firstDie[w]!; d < forest.firstDie[w + 1]!; d++) {
-        const id = forest.dies[d]!;
-        if (id === null) continue;
-        const die = step(wafer, sweep.dies, d, dieVar);
-        dies.set(id, die);
-        for (let k = forest.firstLeaf[d]!; k < forest.firstLeaf[d + 1]!; k++) {
-          const { guide } = forest.leaves[k]!;
-          if (guide !== undefined) leaves.set(guide, { leaf: k, die });
+export class LotStates {
+  readonly #forest: Forest;
+  readonly #lot: number;
+  readonly #firstWafer: number;
+  readonly #firstDie: number;
+  readonly #wafers = new Map<string, number>();
+  readonly #dies = new Map<string, number>();
+  readonly #leaves = new Map<string, number>();
+  readonly #states: State[] = [];
+  readonly #share: number[] = [];
+
+  constructor(forest: Forest, lot: string) {
+    this.#forest = forest;
+    this.#lot = forest.lots.indexOf(lot);
+    const { firstWafer, firstDie, firstLeaf } = forest;
+    this.#firstWafer = this.#lot < 0 ? 0 : firstWafer[this.#lot]!;
+    this.#firstDie = firstDie[this.#firstWafer]!;
+    const last = this.#lot < 0 ? this.#firstWafer : firstWafer[this.#lot + 1]!;
+    for (let w = this.#firstWafer; w < last; w++) this.#wafers.set(forest.wafers[w]!, w - this.#firstWafer);
+    for (let d = this.#firstDie; d < firstDie[last]!; d++) {
+      const id = forest.dies[d];
+      if (id !== null && id !== undefined) this.#dies.set(id, d - this.#firstDie);
+    }
+    for (let k = firstLeaf[this.#firstDie]!; k < firstLeaf[firstDie[last]!]!; k++) {
+      const { guide } = forest.leaves[k]!;
+      if (guide !== undefined) this.#leaves.set(guide, k);
+    }
+  }
+
+  get states(): readonly State[] {
+    return this.#states;
+  }
+
+  /** Adds a point: the sweep at these variances is used up here and may be filled anew afterwards. */
+  add(share: number, sweep: Sweep, variances: Variances, effects: FixedEffects): void {
+    const q = this.#forest.columns;
+    const [lotVar, waferVar, dieVar] = variances;
+    const nodes = (n: number): Nodes => ({ mean: new Float64Array(n * q), variance: new Float64Array(n) });
+    const lot = nodes(1);
+    const [wafers, dies] = [nodes(this.#wafers.size), nodes(this.#countDies())];
+    lot.variance[0] = lotVar;
+    if (this.#lot >= 0) {
+      lot.variance[0] = 0;
+      blend(lot, 0, sweep.lots, this.#lot, lotVar, lot, 0, q);
+      for (const w of this.#wafers.values()) {
+        const at = this.#firstWafer + w;
+        blend(lot, 0, sweep.wafers, at, waferVar, wafers, w, q);
+        for (let d = this.#forest.firstDie[at]!; d < this.#forest.firstDie[at + 1]!; d++) {
+          blend(wafers, w, sweep.dies, d, dieVar, dies, d - this.#firstDie, q);
         }
       }
     }
+    this.#states.push({ effects, variances, lot, wafers, dies });
+    this.#share.push(share);
   }
-  const nodeOf = ({ wafer, die, guide }: Asked): Node => {
-    const atWafer = wafers.get(wafer) ?? grown(top, waferVar);
-    if (die === undefined) return atWafer;
-    const atDie = dies.get(die) ?? grown(atWafer, dieVar);
-    if (guide === undefined) return atDie;
-    const own = leaves.get(guide);
-    if (own === undefined) return grown(atDie, guideVar);
-    return blend(atDie, 1 / forest.variance[own.leaf]!, forest.rows, own.leaf * q, guideVar, q);
-  };
-  const { estimate, covariance } = effects;
-  const p = q - 1;
-  const difference = new Float64Array(p);
-  return {
-    effects,
-    at(asked, row) {
-      const node = nodeOf(asked);
-      let m = node.mean[0]!;
-      let v = node.variance;
-      for (let i = 0; i < p; i++) {
-        difference[i] = row[i]! - node.mean[i + 1]!;
-        m += difference[i]! * estimate[i]!;
-      }
-      for (let i = 0; i < p; i++) {
-        for (let j = 0; j < p; j++) v += difference[i]! * difference[j]! * covariance[i * p + j]!;
-      }
-      return { m, v };
-    },
-  };
+
+  #countDies(): number {
+    if (this.#lot < 0) return 0;
+    return this.#forest.firstDie[this.#firstWafer + this.#wafers.size]! - this.#firstDie;
+  }
+
+  /** @param row the design row of what is asked for */
+  ask({ wafer, die, guide }: Asked, row: readonly number[]): Mixture {
+    const path = {
+      wafer: this.#wafers.get(wafer) ?? -1,
+      die: (die === undefined ? undefined : this.#dies.get(die)) ?? -1,
+      leaf: (guide === undefined ? undefined : this.#leaves.get(guide)) ?? -1,
+    };
+    const depth = die === undefined ? 1 : guide === undefined ? 2 : 3;
+    const n = this.#states.length;
+    const out = {
+      share: Float64Array.from(this.#share),
+      mean: new Float64Array(n),
+      variance: new Float64Array(n),
+    };
+    const scratch = new Float64Array(this.#forest.columns);
+    for (let k = 0; k < n; k++) this.#answer(this.#states[k]!, path, depth, row, scratch, k, out);
+    return out;
+  }
+
+  #answer(
+    state: State,
+    { wafer, die, leaf }: Path,
+    depth: number,
+    row: readonly number[],
+    at: Float64Array,
+    k: number,
+    out: { readonly mean: Float64Array; readonly variance: Float64Array },
+  ): void {
+    const { columns: q, rows, variance: readingVariance } = this.#forest;
+    const [, waferVar, dieVar, guideVar] = state.variances;
+    const [nodes, i] = depth > 1 && die >= 0
+      ? [state.dies, die]
+      : wafer >= 0
+      ? [state.wafers, wafer]
+      : [state.lot, 0];
+    let v = nodes.variance[i]!;
+    if (wafer < 0) v += waferVar;
+    if (depth > 1 && die < 0) v += dieVar;
+    let keep = 1;
+    if (depth > 2 && leaf < 0) v += guideVar;
+    else if (depth > 2) {
+      keep = 1 / (1 + guideVar / readingVariance[leaf]!);
+      v = guideVar * keep + keep * keep * v;
+    }
+    for (let c = 0; c < q; c++) {
+      at[c] = keep * nodes.mean[i * q + c]! + (leaf < 0 ? 0 : (1 - keep) * rows[leaf * q + c]!);
+    }
+    const { estimate, covariance } = state.effects;
+    const p = q - 1;
+    let m = at[0]!;
+    for (let a = 0; a < p; a++) {
+      const da = row[a]! - at[a + 1]!;
+      m += da * estimate[a]!;
+      for (let b = 0; b < p; b++) v += da * (row[b]! - at[b + 1]!) * covariance[a * p + b]!;
+    }
+    out.mean[k] = m;
+    out.variance[k] = v;
+  }
 }
 
-const grown = ({ mean, variance }: Node, own: number): Node => ({ mean, variance: variance + own });
-
-function blend(above: Node, weight: number, rows: Float64Array, from: number, own: number, q: number): Node {
-  const keep = 1 / (1 + own * weight);
-  const mean = new Float64Array(q);
-  for (let i = 0; i < q; i++) mean[i] = keep * above.mean[i]! + (1 - keep) * rows[from + i]!;
-  return { mean, variance: own * keep + keep * keep * above.variance };
+/** Writes node `to` of `out` from the node above it and its own readings. */
+function blend(
+  above: Nodes,
+  a: number,
+  sums: NodeSums,
+  s: number,
+  own: number,
+  out: Nodes,
+  to: number,
+  q: number,
+): void {
+  const keep = 1 / (1 + own * sums.weight[s]!);
+  for (let c = 0; c < q; c++) {
+    out.mean[to * q + c] = keep * above.mean[a * q + c]! + (1 - keep) * sums.mean[s * q + c]!;
+  }
+  out.variance[to] = own * keep + keep * keep * above.variance[a]!;
 }

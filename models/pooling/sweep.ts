@@ -53,11 +53,19 @@ export function sweepInto(forest: Forest, variances: Variances, out: Sweep): Swe
   const { lots, wafers, dies, leafWeight, cross } = out;
   cross.fill(0);
   let logDet = 0;
+  const zero = new Float64Array(q);
+  // Logarithms are dear: variances are multiplied up first, as far as the exponent reaches.
+  let product = 1;
   for (let k = 0; k < leafWeight.length; k++) {
     const variance = forest.variance[k]! + (forest.isGuide[k] === 1 ? guideVar : 0);
     leafWeight[k] = 1 / variance;
-    logDet += Math.log(variance);
+    product *= variance;
+    if (product < 1e-150 || product > 1e150) {
+      logDet += Math.log(product);
+      product = 1;
+    }
   }
+  logDet += Math.log(product);
   for (let d = 0; d < forest.dies.length; d++) {
     gather(forest.firstLeaf, d, leafWeight, forest.rows, q, dies, cross);
     logDet += lift(dies, d, forest.dies[d] === null ? 0 : dieVar);
@@ -69,7 +77,7 @@ export function sweepInto(forest: Forest, variances: Variances, out: Sweep): Swe
   for (let l = 0; l < forest.lots.length; l++) {
     gather(forest.firstWafer, l, wafers.lifted, wafers.mean, q, lots, cross);
     logDet += lift(lots, l, lotVar);
-    scatter(cross, lots.lifted[l]!, lots.mean, l * q, null, 0, q);
+    scatter(cross, lots.lifted[l]!, lots.mean, l * q, zero, 0, q);
   }
   out.logDet = logDet;
   return out;
@@ -100,20 +108,21 @@ function gather(
   for (let c = from; c < to; c++) scatter(cross, childWeight[c]!, childMean, c * q, mean, base, q);
 }
 
-/** cross += w (a − b)(a − b)ᵀ, upper triangle; b = 0 without an array. */
+/** cross += w (a − b)(a − b)ᵀ, upper triangle. */
 function scatter(
   cross: Float64Array,
   w: number,
   a: Float64Array,
   aFrom: number,
-  b: Float64Array | null,
+  b: Float64Array,
   bFrom: number,
   q: number,
 ): void {
   for (let i = 0; i < q; i++) {
-    const di = w * (a[aFrom + i]! - (b === null ? 0 : b[bFrom + i]!));
+    const di = w * (a[aFrom + i]! - b[bFrom + i]!);
+    // The mean's column is the same everywhere, most others are the same within a die.
     if (di === 0) continue;
-    for (let j = i; j < q; j++) cross[i * q + j]! += di * (a[aFrom + j]! - (b === null ? 0 : b[bFrom + j]!));
+    for (let j = i, c = i * q + i; j < q; j++, c++) cross[c]! += di * (a[aFrom + j]! - b[bFrom + j]!);
   }
 }
 
