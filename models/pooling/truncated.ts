@@ -40,7 +40,7 @@ export function truncated(
   const shift = (fa - fb) / mass;
   const variance = 1 + ((a === -Infinity ? 0 : a * fa) - (b === Infinity ? 0 : b * fb)) / mass -
     shift * shift;
-  const at = (q: number) => Math.min(high, Math.max(low, value + u * normalQuantile(pa + q * mass, 0, 1)));
+  const at = (q: number) => Math.min(high, Math.max(low, value + u * lowerQuantile(pa + q * mass)));
   return { value: value + u * shift, u: u * Math.sqrt(Math.max(0, variance)), lo: at(0.025), hi: at(0.975) };
 }
 
@@ -62,3 +62,18 @@ function exponentialTail(high: number, low: number, length: number): Truncated {
 }
 
 const normalDensity = (z: number): number => Math.exp(-0.5 * z * z) / Math.sqrt(2 * Math.PI);
+
+/** Quantile of a standard normal that keeps its digits in the lower tail, where the library's has none below 1e−12. */
+function lowerQuantile(p: number): number {
+  if (p > 1e-6) return normalQuantile(p, 0, 1);
+  const log = Math.log(p);
+  let z = -Math.sqrt(-2 * log - Math.log(-4 * Math.PI * log));
+  // Newton's method on ln Φ, which is nearly a parabola out there.
+  for (let i = 0; i < 20; i++) {
+    const tail = normalCdf(z, 0, 1);
+    const step = (Math.log(tail) - log) * tail / normalDensity(z);
+    z -= step;
+    if (Math.abs(step) < 1e-13 * -z) break;
+  }
+  return z;
+}
