@@ -215,4 +215,5 @@ function processResponse(
 }
 
 const nm = (lambda: number) => Number((lambda * 1e9).toFixed(1));
-const shown = (geometry: DesignGeometry) => Object.entries(geometry).map(([k, v]) => `${k} ${v}`).join(", ");
+const shown = (geometry: DesignGeometry) =>
+  Object.entries(geometry).map(([k, v]) => `${k} ${Number(v.toPrecision(6))}`).join(", ");

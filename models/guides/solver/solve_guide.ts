@@ -19,7 +19,7 @@ export interface SolvedMode extends ModeField {
   readonly excess: number;
   /** n_eff on the three grids (steps 4h, 2h, h), before extrapolation. */
   readonly grids: readonly [number, number, number];
-  /** What the last extrapolation moved n_eff by: larger than the error that is left. */
+  /** Twice what the last extrapolation moved n_eff by: above the error that is left on every grid tried. */
   readonly gridError: number;
   /** Even modes are numbered 0, 1 … by falling index, odd ones likewise. */
   readonly order: number;
@@ -129,9 +129,9 @@ export function extrapolated(
 ): { mu: number; error: number } {
   if (middle === null) return { mu: fine, error: Infinity };
   const second = (4 * fine - middle) / 3;
-  if (coarse === null) return { mu: second, error: Math.abs(second - fine) };
+  if (coarse === null) return { mu: second, error: 2 * Math.abs(second - fine) };
   const first = (4 * middle - coarse) / 3;
-  return { mu: second + (second - first) / 15, error: Math.abs(second - first) / 15 };
+  return { mu: second + (second - first) / 15, error: 2 * Math.abs(second - first) / 15 };
 }
 
 const given = (guess: number | undefined): { guess?: number } => guess === undefined ? {} : { guess };
