@@ -75,17 +75,14 @@ interface Level extends Uncertain {
  * 1/(u² + sd²), sd the spread between them (one-way random effects with known variances; S. R. Searle, G. Casella &
  * C. E. McCulloch, *Variance Components*, Wiley 1992, ch. 3; from memory).
  *
- * @param given prior spreads; all 0 when the platform gives none
  * @param fallback the platform's default, or null when it has none: then a guide with nothing to inherit is a RangeError
  */
 export function inherit(
   observations: readonly Observation[],
-  given: Spread,
+  spread: Spread,
   fallback: (Uncertain & { readonly from: string }) | null,
   lot: string,
 ): Pool {
-  const unknown = given.guideSd + given.dieSd + given.waferSd === 0;
-  const spread = unknown ? { ...given, guideSd: spreadOfGuides(observations) } : given;
   const byDie = groupBy(observations.filter((o) => o.die !== undefined), (o) => o.die!);
   const byWafer = groupBy(observations, (o) => o.wafer);
   const cache = new Map<string, Level | null>();
@@ -191,18 +188,6 @@ function combine(
   const scattered = units.map((x) => ({ value: x.value, u: Math.hypot(x.u, sd) }));
   const { value, u } = weightedMean([...scattered, ...direct]);
   return { value, u, sd, used: [...units.flatMap((x) => x.used), ...direct.map((o) => o.index)] };
-}
-
-/**
- * Spread of the guides where the platform gives none: what all guides that were read show, and of a single one its own
- * error. Taken as 0, counts of rare events would weigh by 1/u², which favours the guides that happened to have none.
- */
-function spreadOfGuides(observations: readonly Observation[]): number {
-  const guides = [...groupBy(observations.filter((o) => o.guide !== undefined), (o) => o.guide!).values()]
-    .map(
-      together,
-    );
-  return guides.length >= 2 ? ownSpread(guides) : guides[0]?.u ?? 0;
 }
 
 /** Spread between units, their own reading variance taken off (method of moments, not below 0). */

@@ -122,6 +122,7 @@ export class TraitPools {
         });
       }
     }
+    const weighed = trait === "merged" ? withSharedU(observations) : observations;
     const fallback = defaultOf(this.platform, trait, polarisation);
     const at = fallback?.at_nm ?? null;
     const carried = fallback === null ? null : {
@@ -131,7 +132,7 @@ export class TraitPools {
       from: this.platform.platform,
     };
     return {
-      pool: inherit(observations, spreadOf(this.platform, trait, fallback), carried, this.design.lot.lot),
+      pool: inherit(weighed, spreadOf(this.platform, trait, fallback), carried, this.design.lot.lot),
       distances,
     };
   }
@@ -230,6 +231,22 @@ export class TraitPools {
     if (found === null || found.basis === "measured") return found;
     return defaultOf(this.platform, "mismatch_offset_per_m", null) === null ? null : found;
   }
+}
+
+/**
+ * The u of a share of rare events goes with the share itself: weighed by 1/u², guides that happened to count none would
+ * outweigh all others. Within a wafer every guide's share gets the root mean square of their u, so that all weigh alike.
+ */
+function withSharedU(observations: readonly Observation[]): Observation[] {
+  const byWafer = new Map<string, { squares: number; count: number }>();
+  for (const { wafer, u } of observations) {
+    const { squares, count } = byWafer.get(wafer) ?? { squares: 0, count: 0 };
+    byWafer.set(wafer, { squares: squares + u * u, count: count + 1 });
+  }
+  return observations.map((o) => {
+    const { squares, count } = byWafer.get(o.wafer)!;
+    return { ...o, u: Math.sqrt(squares / count) };
+  });
 }
 
 /** A mode's size goes with the wavelength; a loss does not. */

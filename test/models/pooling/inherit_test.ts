@@ -105,28 +105,3 @@ Deno.test("spreadFromDefault() shares out exactly the default's variance", () =>
   const s = spreadFromDefault(0.2);
   assertClose(Math.hypot(s.lotSd, s.waferSd, s.dieSd, s.guideSd), 0.2, { rel: 1e-12 });
 });
-
-Deno.test("inherit() without a prior spread does not trust the units that happened to count no rare event", () => {
-  const none = { lotSd: 0, waferSd: 0, dieSd: 0, guideSd: 0 };
-  // Shares of missing domains with the u of their counts: 0, 0.11 and 0.003 of about 390.
-  const shares = [[0, 0.0018], [0.11, 0.016], [0.0026, 0.0031]] as const;
-  const pool = inherit(shares.map(([v, u], k) => at(`A/01/g${k}`, v, u, k)), none, null, "L");
-  const found = pool.estimate(guide("A/01/g9"));
-  assertClose(found.value, (0 + 0.11 + 0.0026) / 3, { rel: 0.05 });
-  assert.ok(found.u > 0.05, `u ${found.u}`);
-  const one = inherit([at("A/01/g1", 0.11, 0.016, 0)], none, null, "L");
-  assert.ok(one.estimate(guide("A/01/g2")).u > one.estimate(guide("A/01/g1")).u);
-});
-
-Deno.test("inherit() without a prior spread lets one guide of a die stand for no more than one guide", () => {
-  const none = { lotSd: 0, waferSd: 0, dieSd: 0, guideSd: 0 };
-  const rows = [["A/01/g1", 0, 0.002], ["A/01/g2", 0.11, 0.016], ["A/02/g1", 0, 0.002], [
-    "A/03/g1",
-    0.05,
-    0.015,
-  ]] as const;
-  const pool = inherit(rows.map(([id, v, u], k) => at(id, v, u, k)), none, null, "L");
-  const found = pool.estimate(guide("A/04/g1"));
-  assert.equal(found.basis, "wafer");
-  assert.ok(found.value > 0.025 && found.value < 0.055, `${found.value}`);
-});
