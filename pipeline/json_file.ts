@@ -72,6 +72,8 @@ export function issueLines(issue: z.core.$ZodIssue, prefix: PropertyKey[] = []):
     const best = issue.errors.reduce((a, b) => deepest(b) > deepest(a) ? b : a);
     return best.flatMap((inner) => issueLines(inner, path));
   }
+  // What a key should look like stands one level down.
+  if (issue.code === "invalid_key") return issue.issues.flatMap((inner) => issueLines(inner, path));
   const input = issue.input;
   const found = input === undefined || (typeof input === "object" && input !== null)
     ? ""
