@@ -1,0 +1,110 @@
+import { deepEqual, equal, match, notEqual, ok, rejects, throws } from "node:assert/strict";
+import { join } from "node:path";
+import { buildModel, loadPlatform, platformIds } from "../../pipeline/platforms.ts";
+import { InputError } from "../../shared/errors.ts";
+import { withFolder } from "./ledger/a_ledger.ts";
+
+const BUILT_IN = ["bulk-ktp", "bulk-ln", "rb-ktp-zcut", "tfln-xcut", "ti-ln-zcut"];
+const KTP = {
+  platform: "mine",
+  material: "KTP",
+  axes: { TE: "y", TM: "z" },
+  index: { from: "bulk" },
+  effective_area_um2: 40,
+  nonlinear: { "TE>TE+TM": { d_pm_per_v: 3.92, at_nm: 1064 } },
+};
+const refusal = (says: RegExp) => (error: unknown) => {
+  ok(error instanceof InputError, String(error));
+  equal(error.exitCode, 2);
+  match(error.message, says);
+  return true;
+};
+const write = (folder: string, name: string, content: unknown) =>
+  Deno.writeTextFile(join(folder, name), typeof content === "string" ? content : JSON.stringify(content));
+
+Deno.test("every built-in platform loads and makes a model", async () => {
+  deepEqual(await platformIds(), BUILT_IN);
+  for (const id of BUILT_IN) {
+    const loaded = await loadPlatform(id);
+    const model = buildModel(loaded);
+    equal(model.id, id);
+    equal(model.expansion(25), 1);
+    match(loaded.fingerprint, /^[0-9a-f]{64}$/);
+  }
+});
+
+Deno.test("a user's folder adds platforms and goes before those built in; every byte is in the fingerprint", () =>
+  withFolder(async (folder) => {
+    await write(folder, "mine.json", KTP);
+    await write(folder, "bulk-ktp.json", { ...KTP, platform: "bulk-ktp" });
+    deepEqual(await platformIds(folder), [...BUILT_IN, "mine"].sort());
+    const [mine, theirs, own] = [
+      await loadPlatform("mine", folder),
+      await loadPlatform("bulk-ktp"),
+      await loadPlatform("bulk-ktp", folder),
+    ];
+    equal(own.file, join(folder, "bulk-ktp.json"));
+    equal(new Set([mine.fingerprint, theirs.fingerprint, own.fingerprint]).size, 3);
+    equal((await loadPlatform("bulk-ln", folder)).platform.material, "CLN");
+    await write(folder, "mine.json", `${JSON.stringify(KTP)}\n`);
+    notEqual((await loadPlatform("mine", folder)).fingerprint, mine.fingerprint);
+  }));
+
+Deno.test("an unknown platform is refused with those that are known; a folder that is not there is named", () =>
+  withFolder(async (folder) => {
+    await write(folder, "mine.json", KTP);
+    await rejects(
+      loadPlatform("nine", folder),
+      refusal(/Unknown platform "nine": known are bulk-ktp, bulk-ln, mine, /),
+    );
+    await rejects(loadPlatform("mine", join(folder, "no")), refusal(/Cannot read the platform folder .*no/));
+  }));
+
+Deno.test("a bad platform file is refused with the field, what was found and what is wanted", () =>
+  withFolder(async (folder) => {
+    const { effective_area_um2: _, ...noArea } = KTP;
+    for (
+      const [content, says] of [
+        ["{", /mine\.json.*not valid JSON/],
+        [{ ...KTP, platform: "other" }, /calls itself "other", its file name says "mine"/],
+        [{ ...KTP, material: "BBO" }, /material: .*"KTP".*\(found "BBO"\)/],
+        [{ ...KTP, colour: 1 }, /colour/],
+        [{ ...KTP, nonlinear: { "TE>TE": { d_pm_per_v: 1, at_nm: 1064 } } }, /pump>signal\+idler/],
+        [{ ...KTP, nonlinear: { "TE>TE+TM": { d_pm_per_v: 0, at_nm: 1064 } } }, /coefficient other than 0/],
+        [{ ...KTP, defaults: { loss_db_cm: { value: 0.5, u: -1 } } }, /defaults\.loss_db_cm.*u/],
+        [noArea, /no effective area; give effective_area_um2/],
+        [
+          { ...KTP, index: { from: "table", n_eff: "n.csv" } },
+          /platform table .*n\.csv: there is no such file/,
+        ],
+      ] as const
+    ) {
+      await write(folder, "mine.json", content);
+      await rejects(loadPlatform("mine", folder), refusal(says));
+    }
+    await write(folder, "mine.json", { ...KTP, axes: { TE: "o", TM: "z" } });
+    const loaded = await loadPlatform("mine", folder);
+    throws(() => buildModel(loaded), refusal(/Cannot use platform .*mine\.json: /));
+  }));
+
+Deno.test("a bad row of a platform's table is refused with its line", () =>
+  withFolder(async (folder) => {
+    await write(folder, "mine.json", { ...KTP, index: { from: "table", n_eff: "n.csv" } });
+    const head = "wavelength_nm,polarisation,temperature_c,width_um,n_eff\n";
+    for (
+      const [text, says] of [
+        [`${head}1550,TE,25,4,1.75\n1550,TX,25,4,1.75\n`, /n\.csv:3: polarisation: /],
+        [`${head}1550,TE,25,4,oops\n`, /n\.csv:2: n_eff: /],
+        [`${head}1550,TE,25,4\n`, /n\.csv/],
+        [`${head.replace("n_eff", "n")}1550,TE,25,4,1.7\n`, /n\.csv:2: .*n_eff/],
+      ] as const
+    ) {
+      await write(folder, "n.csv", text);
+      await rejects(loadPlatform("mine", folder), refusal(says));
+    }
+    // Rows that are right one by one but make no table: said when the model is built.
+    const [a, b, c] = ["1550,TE,25,4,1.75\n", "1600,TE,25,4,1.74\n", "1550,TE,50,4,1.76\n"];
+    await write(folder, "n.csv", `${head}${a}${b}${c}`);
+    const loaded = await loadPlatform("mine", folder);
+    throws(() => buildModel(loaded), refusal(/Cannot use platform/));
+  }));
