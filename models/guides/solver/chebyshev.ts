@@ -34,10 +34,14 @@ export function chebyshevDerivative(c: Float64Array): Float64Array {
   return d;
 }
 
-/** Σ c_m T_m(t) by Clenshaw's recurrence. */
-export function chebyshevSum(c: Float64Array, t: number): number {
+/** Σ c_m T_m(t) by Clenshaw's recurrence, over `count` coefficients from `start`. */
+export function chebyshevSum(c: Float64Array, t: number, start = 0, count = c.length): number {
   let b1 = 0;
   let b2 = 0;
-  for (let m = c.length - 1; m > 0; m--) [b1, b2] = [c[m]! + 2 * t * b1 - b2, b1];
-  return c[0]! + t * b1 - b2;
+  for (let m = start + count - 1; m > start; m--) {
+    const b = c[m]! + 2 * t * b1 - b2;
+    b2 = b1;
+    b1 = b;
+  }
+  return c[start]! + t * b1 - b2;
 }

@@ -6,7 +6,7 @@ import { designMode, geometryParameters, type SolverDesign } from "./design.ts";
 import { geometryGrid, geometryNodes, SOLVER_VERSION, TABLE_GRID, type TableGrid } from "./design_table.ts";
 import type { Memory } from "./eigen.ts";
 import { ModesCutOff } from "./modes_cut_off.ts";
-import { polynomialCorners } from "./polynomial_weights.ts";
+import { polynomialWeights } from "./polynomial_weights.ts";
 import { threeWaveArea } from "./three_wave_area.ts";
 
 /** Areas of one process at fixed wavelengths over the design's geometry nodes; storable. */
@@ -63,7 +63,7 @@ export function solverAreaModel({ design, waves, areas, version }: DesignAreas):
       }
       if ("reason" in areas) throw new ModesCutOff(`Cannot overlap modes: ${areas.reason}`);
       const parameters = geometryParameters(design.process);
-      const { weights } = polynomialCorners(parameters, axes, geometry, design.geometry, null);
+      const weights = polynomialWeights(parameters, axes, geometry, design.geometry, null);
       return Math.exp(weights.reduce((sum, w, k) => sum + w * Math.log(areas[k]!), 0));
     },
   };

@@ -7,7 +7,7 @@ import { chebyshevCoefficients, chebyshevDerivative, chebyshevSum } from "./cheb
 import { designRemarks, geometryParameters, type ProcessParameter } from "./design.ts";
 import { type DesignTable, type PolarisationTable, SOLVER_VERSION } from "./design_table.ts";
 import { ModesCutOff } from "./modes_cut_off.ts";
-import { polynomialCorners } from "./polynomial_weights.ts";
+import { polynomialWeights } from "./polynomial_weights.ts";
 
 /** An index model that rests on solved modes. */
 export interface SolverIndexModel extends IndexModel {
@@ -80,23 +80,8 @@ export function solverIndexModel(stored: DesignTable): SolverIndexModel {
     if (temperatureC >= lo - 1e-9 && temperatureC <= hi + 1e-9) return temperatureC;
     throw new RangeError(`Cannot look up a mode: found temperature_c ${temperatureC}, need ${lo} to ${hi}`);
   };
-  /** Coefficients at one geometry, or their derivative along a parameter. */
-  const line = (series: Series, geometry: GuideGeometry, along: GeometryParameter | null): Float64Array => {
-    const { offsets, weights } = polynomialCorners(
-      parameters,
-      geometryAxes,
-      geometry,
-      design.geometry,
-      along,
-    );
-    const { width, coefficients } = series;
-    const out = new Float64Array(width);
-    for (let c = 0; c < offsets.length; c++) {
-      const start = offsets[c]! * width;
-      for (let m = 0; m < width; m++) out[m]! += weights[c]! * coefficients[start + m]!;
-    }
-    return out;
-  };
+  const weightsOf = (geometry: GuideGeometry, along: GeometryParameter | null = null) =>
+    polynomialWeights(parameters, geometryAxes, geometry, design.geometry, along);
   const bulk = (pol: Polarisation, lambda: number, T: number) =>
     refractiveIndex(material, axes[pol], lambda, T);
   const bulkGroup = (pol: Polarisation, lambda: number, T: number) =>
@@ -106,11 +91,11 @@ export function solverIndexModel(stored: DesignTable): SolverIndexModel {
   const slice = (pol: Polarisation, temperatureC: number, geometry: GuideGeometry) => {
     const T = warm(temperatureC);
     const { table, excess, perBulkIndex } = at(pol);
-    const e = line(excess, geometry, null);
-    const b = line(perBulkIndex, geometry, null);
+    const weights = weightsOf(geometry);
+    const e = combined(excess, weights);
+    const b = combined(perBulkIndex, weights);
     const perLambda = 2 / (table.lambda[1] - table.lambda[0]);
-    const de = chebyshevDerivative(e);
-    const db = chebyshevDerivative(b);
+    let slopes: { e: Float64Array; b: Float64Array } | null = null; // made when a group index is asked for
     return {
       n(lambda: number) {
         const t = place(pol, table, lambda);
@@ -119,25 +104,42 @@ export function solverIndexModel(stored: DesignTable): SolverIndexModel {
       },
       ng(lambda: number) {
         const t = place(pol, table, lambda);
+        slopes ??= { e: chebyshevDerivative(e), b: chebyshevDerivative(b) };
         const warmed = bulk(pol, lambda, T) - bulk(pol, lambda, T0);
         const group = bulkGroup(pol, lambda, T);
-        const factor = chebyshevSum(b, t);
-        const slope = (chebyshevSum(de, t) + chebyshevSum(db, t) * warmed) * perLambda;
-        return group + chebyshevSum(e, t) - lambda * slope + factor * (group - bulkGroup(pol, lambda, T0));
+        const slope = (chebyshevSum(slopes.e, t) + chebyshevSum(slopes.b, t) * warmed) * perLambda;
+        return group + chebyshevSum(e, t) - lambda * slope +
+          chebyshevSum(b, t) * (group - bulkGroup(pol, lambda, T0));
       },
     };
+  };
+  /** Σ of the weights times the series' values at t. */
+  const valueAt = ({ width, coefficients }: Series, weights: Float64Array, t: number): number => {
+    let sum = 0;
+    for (let g = 0; g < weights.length; g++) {
+      sum += weights[g]! * chebyshevSum(coefficients, t, g * width, width);
+    }
+    return sum;
   };
 
   return {
     from: "solver",
-    nEff: (pol, lambda, temperatureC, geometry) => slice(pol, temperatureC, geometry).n(lambda),
+    nEff(pol, lambda, temperatureC, geometry) {
+      const { table, excess, perBulkIndex } = at(pol);
+      const t = place(pol, table, lambda);
+      const weights = weightsOf(geometry);
+      const n = bulk(pol, lambda, warm(temperatureC));
+      return n + valueAt(excess, weights, t) +
+        valueAt(perBulkIndex, weights, t) * (n - bulk(pol, lambda, T0));
+    },
     groupIndex: (pol, lambda, temperatureC, geometry) => slice(pol, temperatureC, geometry).ng(lambda),
     slice,
     overTemperature(pol, lambda, geometry) {
       const { table, excess, perBulkIndex } = at(pol);
       const t = place(pol, table, lambda);
-      const e = chebyshevSum(line(excess, geometry, null), t);
-      const b = chebyshevSum(line(perBulkIndex, geometry, null), t);
+      const weights = weightsOf(geometry);
+      const e = valueAt(excess, weights, t);
+      const b = valueAt(perBulkIndex, weights, t);
       const cold = bulk(pol, lambda, T0);
       return (temperatureC) => {
         const n = bulk(pol, lambda, warm(temperatureC));
@@ -149,15 +151,15 @@ export function solverIndexModel(stored: DesignTable): SolverIndexModel {
       const t = place(pol, table, lambda);
       if (!(parameters as readonly string[]).includes(parameter)) return 0;
       const warmed = bulk(pol, lambda, warm(temperatureC)) - bulk(pol, lambda, T0);
-      return chebyshevSum(line(excess, geometry, parameter), t) +
-        chebyshevSum(line(perBulkIndex, geometry, parameter), t) * warmed;
+      const weights = weightsOf(geometry, parameter);
+      return valueAt(excess, weights, t) + valueAt(perBulkIndex, weights, t) * warmed;
     },
     processSensitivity(pol, lambda, temperatureC, geometry, parameter) {
       const { table, perProcess } = at(pol);
       warm(temperatureC); // the response hardly depends on it; only its limits do
       const t = place(pol, table, lambda);
       const series = perProcess.get(parameter);
-      return series === undefined ? 0 : chebyshevSum(line(series, geometry, null), t);
+      return series === undefined ? 0 : valueAt(series, weightsOf(geometry), t);
     },
     range(pol) {
       const range: IndexRange = {
@@ -200,6 +202,16 @@ function solvedOf(stored: DesignTable, pol: Polarisation): Solved | { readonly r
     perBulkIndex: series(table.perBulkIndex),
     perProcess: new Map(Object.entries(table.perProcess).map(([key, values]) => [key, series(values)])),
   };
+}
+
+/** Coefficients over wavelength at one geometry. */
+function combined({ width, coefficients }: Series, weights: Float64Array): Float64Array {
+  const out = new Float64Array(width);
+  for (let g = 0; g < weights.length; g++) {
+    const w = weights[g]!;
+    for (let m = 0; m < width; m++) out[m]! += w * coefficients[g * width + m]!;
+  }
+  return out;
 }
 
 const shown = (x: number): number => Number(x.toPrecision(8));

@@ -160,6 +160,23 @@ for (const name of ["titanium", "rubidium"] as const) {
   });
 }
 
+Deno.test("a semi-vectorial table holds the fields across the surface, and leaves those along it alone", () => {
+  const design: SolverDesign = { ...rubidium, field: "semi-vectorial", lambda: [1.4e-6, 1.65e-6] };
+  const model = solverIndexModel(solveDesign(design, { cells: CELLS, wavelengthNodes: 6 }));
+  const scalar = solverIndexModel(tables.rubidium);
+  const { geometry } = design;
+  for (const T of [15, 130]) {
+    const across = model.nEff("TM", 1.55e-6, T, geometry);
+    assertClose(across, solved(design, "TM", 1.55e-6, T).nEff, { abs: 2e-6 });
+    // Less of the field stands at the surface, and the depth diffracts more by n_z²/n_x²: both lower the index.
+    const lowered = scalar.nEff("TM", 1.55e-6, T, geometry) - across;
+    assert.ok(lowered > 5e-5 && lowered < 5e-4, `found ${lowered}`);
+    assertClose(model.nEff("TE", 1.55e-6, T, geometry), scalar.nEff("TE", 1.55e-6, T, geometry), {
+      abs: 1e-6,
+    });
+  }
+});
+
 Deno.test("areas at the process' wavelengths are those of the solved fields", () => {
   const waves = {
     lambdaP: 775e-9,
