@@ -66,8 +66,8 @@ export function capability(
 }
 
 /**
- * The same from a count, a mean and a standard deviation. `s` from ranges is allowed (the short-term capability); the intervals take it as
- * known as well as the standard deviation of `n` values.
+ * The same from a count, a mean and a standard deviation. `s` from ranges is allowed (the short-term capability); the
+ * intervals take it as known as well as the standard deviation of `n` values.
  */
 export function capabilityOf(
   sample: { readonly n: number; readonly mean: number; readonly s: number },

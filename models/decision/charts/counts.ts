@@ -20,8 +20,8 @@ export interface CountOptions extends ChartOptions {
 }
 
 /**
- * Chart of shares (p chart): `counts[i]` of `sizes[i]` units in the order of time. Only single points are judged unless rules are given.
- * A point with size 0 is missing.
+ * Chart of shares (p chart): `counts[i]` of `sizes[i]` units in the order of time. Only single points are judged
+ * unless rules are given. A point with size 0 is missing.
  * @throws RangeError for a count that is no integer in 0…size, or no unit behind the limits
  */
 export function shareChart(
@@ -44,8 +44,8 @@ export function shareChart(
 }
 
 /**
- * Chart of counts without an upper bound, defects say (c chart; with unequal `sizes`, an area say, the chart of counts per unit of size,
- * or u chart). Only single points are judged unless rules are given.
+ * Chart of counts without an upper bound, defects say (c chart; with unequal `sizes`, an area say, the chart of
+ * counts per unit of size, or u chart). Only single points are judged unless rules are given.
  * @throws RangeError for a count that is no integer ≥ 0, a size that is not ≥ 0, or nothing behind the limits
  */
 export function defectChart(

@@ -11,9 +11,10 @@ export interface EwmaSetting {
 }
 
 /**
- * Chart of the exponentially weighted mean e_i = λ·x_i + (1 − λ)·e_(i−1), e_0 = target, with three-sigma limits of its own standard deviation
- * σ·√(λ/(2 − λ)·[1 − (1 − λ)^2i]) (S. W. Roberts, Technometrics 1, 239 (1959); NIST/SEMATECH e-Handbook, 6.3.2.4).
- * A NaN leaves the mean as it was and is no point. Only single points are judged: neighbours are correlated by design.
+ * Chart of the exponentially weighted mean e_i = λ·x_i + (1 − λ)·e_(i−1), e_0 = target, with three-sigma limits of
+ * its own standard deviation σ·√(λ/(2 − λ)·[1 − (1 − λ)^2i]) (S. W. Roberts, Technometrics 1, 239 (1959);
+ * NIST/SEMATECH e-Handbook, 6.3.2.4). A NaN leaves the mean as it was and is no point. Only single points are judged:
+ * neighbours are correlated by design.
  * @throws RangeError for a weight outside (0, 1], a sigma that is not > 0 or a target that is not finite
  */
 export function ewmaChart(values: ArrayLike<number>, setting: EwmaSetting): ControlChart {

@@ -17,13 +17,15 @@ export interface GroupCharts {
 export type SpreadMeasure = "range" | "deviation";
 
 /**
- * Charts of group means with the ranges (X-bar and R) or standard deviations (X-bar and s) of the groups, in the order of time.
- * The limits of the means come from the spread *inside* the groups: they promise their false-alarm rate only where the mean of
- * a group differs from the next by nothing else. Where lots differ by nature, chart their means as individuals.
+ * Charts of group means with the ranges (X-bar and R) or standard deviations (X-bar and s) of the groups, in the
+ * order of time. The limits of the means come from the spread *inside* the groups: they promise their false-alarm
+ * rate only where the mean of a group differs from the next by nothing else. Where lots differ by nature, chart their
+ * means as individuals.
  *
- * Groups may differ in size. Then sigma is the mean of the groups' own estimates with weights of least variance
- * (I. W. Burr, J. Quality Technol. 1, 163 (1969), from memory), which for equal sizes is mean range/d2 or mean s/c4; the centre
- * is the mean of all values. NaN values are left out; a group without values is no point, one with a single value no spread.
+ * Groups may differ in size. Then sigma is the mean of the groups' own estimates with weights of least variance (I.
+ * W. Burr, J. Quality Technol. 1, 163 (1969), from memory), which for equal sizes is mean range/d2 or mean s/c4; the
+ * centre is the mean of all values. NaN values are left out; a group without values is no point, one with a single
+ * value no spread.
  * @throws RangeError if no group behind the limits has 2 values, or a range is asked of more than 100
  */
 export function groupCharts(

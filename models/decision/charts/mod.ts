@@ -10,7 +10,8 @@ export {
 } from "./control_chart.ts";
 export * from "./counts.ts";
 export * from "./ewma.ts";
+export * from "./false_alarms.ts";
 export * from "./group_means.ts";
 export * from "./individuals.ts";
 export * from "./run_rules.ts";
-export * from "./yield_intervals.ts";
+export * from "./grouped_yield.ts";

@@ -1,9 +1,9 @@
 // Pure: no I/O, no clock, no hidden randomness.
 
 /**
- * Rules that find a cause in a sequence of standardised points. The first three and `8_same_side` are those of the Western
- * Electric Statistical Quality Control Handbook (1956); all, with nine in place of eight on one side, those of L. S. Nelson,
- * J. Quality Technol. 16, 237 (1984). A point counts as beyond a line only strictly beyond it.
+ * Rules that find a cause in a sequence of standardised points. The first three and `8_same_side` are those of the
+ * Western Electric Statistical Quality Control Handbook (1956); all, with nine in place of eight on one side, those
+ * of L. S. Nelson, J. Quality Technol. 16, 237 (1984). A point counts as beyond a line only strictly beyond it.
  */
 export const RUN_RULES = {
   "beyond_3s": "one point beyond 3 standard deviations",
@@ -64,9 +64,10 @@ const ONE_SIDED: Partial<Record<RunRule, Sides>> = {
 };
 
 /**
- * Every signal of some rules in a sequence of z = (value − centre)/standard deviation, in the order of the points, at one
- * point in the order of `rules`. A pattern that goes on signals at each further point; {@link joinSignals} makes one of them.
- * NaN is no point: the rules see the points before and after it as neighbours, and positions still count it.
+ * Every signal of some rules in a sequence of z = (value − centre)/standard deviation, in the order of the points, at
+ * one point in the order of `rules`. A pattern that goes on signals at each further point; {@link joinSignals} makes
+ * one of them. NaN is no point: the rules see the points before and after it as neighbours, and positions still count
+ * it.
  * @throws RangeError for an unknown rule or one asked for twice
  */
 export function runSignals(

@@ -23,9 +23,9 @@ export interface FisherResult {
 const EQUAL = 1e-7;
 
 /**
- * Fisher's exact test (R. A. Fisher, The Design of Experiments (1935), chapter 2): the margins are held, the number of affected with
- * the attribute is hypergeometric. Weights are built in logarithms from the ratios of neighbours, so that tables of any size neither
- * overflow nor vanish; relative accuracy 1e-11 up to margins of 1e5.
+ * Fisher's exact test (R. A. Fisher, The Design of Experiments (1935), chapter 2): the margins are held, the number
+ * of affected with the attribute is hypergeometric. Weights are built in logarithms from the ratios of neighbours, so
+ * that tables of any size neither overflow nor vanish; relative accuracy 1e-11 up to margins of 1e5.
  * @throws RangeError unless the cells are integers ≥ 0
  */
 export function fisherExact(table: TwoByTwo): FisherResult {

@@ -4,8 +4,9 @@
 export type Correction = "holm" | "bonferroni";
 
 /**
- * Corrected p-values in the order given. Holm (S. Holm, Scand. J. Stat. 6, 65 (1979)): in ascending order the i-th (from 0) of m times
- * m − i, never below the one before; it blames whatever Bonferroni (each times m) does, and sometimes more.
+ * Corrected p-values in the order given. Holm (S. Holm, Scand. J. Stat. 6, 65 (1979)): in ascending order the i-th
+ * (from 0) of m times m − i, never below the one before; it blames whatever Bonferroni (each times m) does, and
+ * sometimes more.
  * @throws RangeError for a value outside 0…1
  */
 export function correctPValues(p: readonly number[], correction: Correction): number[] {

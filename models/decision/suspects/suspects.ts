@@ -2,14 +2,17 @@
 import { randomFrom } from "../../../shared/random.ts";
 import { checkShare } from "../tails.ts";
 import { type Correction, correctPValues } from "./multiple_tests.ts";
-import { type Block, shuffleTest } from "./shuffle_test.ts";
+import { type Block, shuffleTest } from "./shuffle.ts";
 
 /** A wafer or die with what happened to it. */
 export interface TracedUnit {
   readonly id: string;
   /** What it shares its fate with, smallest first: of a die its wafer and its lot, of a wafer its lot. May be empty. */
   readonly within: readonly string[];
-  /** Attribute → value, `"etch tool": "etcher-2"`. A missing attribute means that it does not apply; null that it is not known. */
+  /**
+   * Attribute → value, `"etch tool": "etcher-2"`. A missing attribute means that it does not apply; null that it is
+   * not known.
+   */
   readonly attributes: Readonly<Record<string, string | null>>;
 }
 
@@ -65,11 +68,11 @@ export interface SuspectOptions {
 /**
  * Which steps, tools, recipes, batches or coating runs are over-represented among the affected units.
  *
- * Each value of each attribute is one hypothesis, tested one-sidedly. An attribute that whole wafers carry is dealt among wafers, not
- * dies: twelve bad dies of one wafer are one piece of evidence about the wafer's tool. What varies inside a lot is compared inside the
- * lot, so that a bad lot does not make a suspect of everything that is frequent in it. For units that share their fate with
- * no others this is Fisher's exact test. The tests assume that the attribute was dealt without regard to anything else that
- * matters.
+ * Each value of each attribute is one hypothesis, tested one-sidedly. An attribute that whole wafers carry is dealt
+ * among wafers, not dies: twelve bad dies of one wafer are one piece of evidence about the wafer's tool. What varies
+ * inside a lot is compared inside the lot, so that a bad lot does not make a suspect of everything that is frequent
+ * in it. For units that share their fate with no others this is Fisher's exact test. The tests assume that the
+ * attribute was dealt without regard to anything else that matters.
  * @param attributes the attributes to look at; default all that occur
  * @throws RangeError for units with the same id, or that name different numbers of groups
  */
@@ -157,8 +160,9 @@ interface Dealt extends Block {
 }
 
 /**
- * What is dealt: the largest groups that carry a column wholly or not at all, each in the stratum of the mixed group around it. A lot with both
- * is compared inside itself, lots with one kind only are compared as wholes; each contributes what it can say.
+ * What is dealt: the largest groups that carry a column wholly or not at all, each in the stratum of the mixed group
+ * around it. A lot with both is compared inside itself, lots with one kind only are compared as wholes; each
+ * contributes what it can say.
  */
 function blocksOf(units: readonly TracedUnit[], column: Column, affected: number): Dealt[] {
   const known = units.map((unit, i) => ({ unit, has: column[i]!, bad: i < affected })).filter((m) =>

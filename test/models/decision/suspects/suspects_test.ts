@@ -142,7 +142,7 @@ Deno.test("suspects() has nothing to say without affected or unaffected units, a
 
 Deno.test("suspects() blames the innocent no more often than its level, with dies that share their fate", () => {
   const random = randomFrom("innocent");
-  const runs = 600;
+  const runs = 300;
   let blamed = 0;
   for (let run = 0; run < runs; run++) {
     const bad: TracedUnit[] = [];
@@ -164,8 +164,8 @@ Deno.test("suspects() blames the innocent no more often than its level, with die
     }
     if (suspects(bad, good).results.some((r) => r.verdict === "suspect")) blamed++;
   }
-  // Promised: at most 5 %; standard error 0.9 %.
-  assert.ok(blamed / runs < 0.07, `blamed in ${blamed} of ${runs} runs`);
+  // Promised: at most 5 %; standard error 1.3 %.
+  assert.ok(blamed / runs < 0.075, `blamed in ${blamed} of ${runs} runs`);
   assert.ok(blamed > 0);
 });
 

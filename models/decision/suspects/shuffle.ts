@@ -19,8 +19,8 @@ export interface ShuffleResult {
 }
 
 /**
- * Excesses are rounded to this grid, so that sums are integers and do not depend on the order of addition. Sums that are equal but for that
- * rounding differ by at most half a step per block.
+ * Excesses are rounded to this grid, so that sums are integers and do not depend on the order of addition. Sums that
+ * are equal but for that rounding differ by at most half a step per block.
  */
 const GRID = 1e-10;
 const MOST_STATES = 200_000;
@@ -29,12 +29,13 @@ const SAMPLES = 9_999;
 type Distribution = Map<number, number>;
 
 /**
- * Test of over-representation by dealing the attribute anew among the blocks of each stratum, as often as it occurs there. The statistic is the number of
- * affected units in carrying blocks less their expectation, units × share affected in the stratum, summed. For blocks of one unit
- * in one stratum this is Fisher's one-sided exact test; for larger blocks it allows that the units of a block share their fate, where Fisher's
- * would count every die of one bad wafer as evidence against the wafer's tool (permutation tests: R. A. Fisher, The Design of
- * Experiments (1935), chapter 3). All dealings are counted where their sums are few enough, else 9,999 are drawn and
- * p = (as extreme + 1)/10,000.
+ * Test of over-representation by dealing the attribute anew among the blocks of each stratum, as often as it occurs
+ * there. The statistic is the number of affected units in carrying blocks less their expectation, units × share
+ * affected in the stratum, summed. For blocks of one unit in one stratum this is Fisher's one-sided exact test; for
+ * larger blocks it allows that the units of a block share their fate, where Fisher's would count every die of one bad
+ * wafer as evidence against the wafer's tool (permutation tests: R. A. Fisher, The Design of Experiments (1935),
+ * chapter 3). All dealings are counted where their sums are few enough, else 9,999 are drawn and p = (as extreme +
+ * 1)/10,000.
  * @throws RangeError for impossible counts
  */
 export function shuffleTest(blocks: readonly Block[], random: Random): ShuffleResult {
