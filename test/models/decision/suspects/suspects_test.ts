@@ -183,3 +183,33 @@ Deno.test("suspects() gives the same report in whatever order units come", () =>
     );
   assert.deepEqual(byName(first), byName(second));
 });
+
+Deno.test("suspects() finds a tool that spoils most dies in four lots of six wafers, and says that three of four are too few", () => {
+  const random = randomFrom("guilty");
+  const runs = 60;
+  const found = ([[4, 6], [3, 4]] as const).map(([lots, wafers]) => {
+    let [shown, powerless] = [0, 0];
+    for (let run = 0; run < runs; run++) {
+      const bad: TracedUnit[] = [];
+      const good: TracedUnit[] = [];
+      for (let k = 0; k < lots * wafers; k++) {
+        const lot = k % lots;
+        const attributes = {
+          etch: `e${random.below(3)}`,
+          substrate: `s${lot}`,
+          order: `o${random.below(2)}`,
+        };
+        const risk = attributes.etch === "e0" ? 0.6 : 0.08;
+        for (const d of dies(`W${k}`, 12, attributes, `L${lot}`)) {
+          (random.uniform() < risk ? bad : good).push(d);
+        }
+      }
+      const etch = suspects(bad, good).results.find((r) => r.names.some((n) => n.value === "e0"));
+      if (etch?.verdict === "suspect") shown++;
+      if (etch?.verdict === "no_power") powerless++;
+    }
+    return { shown: shown / runs, powerless: powerless / runs };
+  });
+  assert.ok(found[0]!.shown > 0.85, JSON.stringify(found));
+  assert.ok(found[1]!.powerless > 0.85, JSON.stringify(found));
+});
