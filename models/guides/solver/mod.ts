@@ -16,6 +16,7 @@ export {
   type SolverProcess,
 } from "./design.ts";
 export { type DesignAreas, solveAreas, solverAreaModel } from "./design_area.ts";
+export { type DesignOutput, solveOutput } from "./design_output.ts";
 export {
   designKey,
   type DesignTable,
