@@ -18,9 +18,10 @@ import {
 import { writeAll } from "./disk.ts";
 import type { RunTable, TableWriter } from "./types.ts";
 
-// A row group is the least that a reader takes at once: small enough for bounded memory (lists of walls make a row
-// of 16 kB), large enough that a table of plain columns decodes in few calls.
-const MAX_GROUP_BYTES = 32e6;
+// A row group is the least that a reader takes at once, and it is held four times over on its way (file, decoder, Arrow
+// stream, JavaScript): small enough for bounded memory (lists of walls make a row of 80 kB), large enough that a table of
+// plain columns decodes in few calls.
+const MAX_GROUP_BYTES = 8e6;
 const MAX_GROUP_ROWS = 262_144;
 
 /** A Parquet file being written and hashed, batch by batch. */

@@ -171,10 +171,7 @@ function resolvePoling(
     distance: null,
   };
   if (walls !== null) {
-    const used = pools.positions("walls_complete").filter((k) => {
-      const row = pools.rows[k]!;
-      return row.guide_id === guide.guide_id && row.value === 1;
-    });
+    const used = pools.positions("walls_complete", guide.guide_id).filter((k) => pools.rows[k]!.value === 1);
     roles.push({
       ...common,
       trait: "walls",

@@ -5,6 +5,7 @@ import { InputError } from "../../shared/errors.ts";
 import type { DefaultTrait, Platform } from "../../shared/schemas/platform.ts";
 import { nm } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
+import { sha256 } from "../json_file.ts";
 import type { GuideRecord, LotDesign } from "../records.ts";
 import { defaultOf, spreadOf } from "./platform_defaults.ts";
 import type { TraitName, TraitRow } from "./trait_row.ts";
@@ -30,20 +31,20 @@ type PooledTrait = Extract<TraitName, DefaultTrait>;
 
 /** Traits of every guide of a lot: its own readings, else its die's, wafer's, lot's, else the platform's. */
 export class TraitPools {
-  readonly #pools = new Map<string, { pool: Pool; distances: ReadonlyMap<number, number> }>();
+  readonly #pools = new Map<string, { pool: Pool; describe: (used: readonly number[]) => UsedRows }>();
   readonly #byTrait = new Map<TraitName, number[]>();
+  readonly #byUnit = new Map<string, number[]>();
 
   constructor(readonly platform: Platform, readonly design: LotDesign, readonly rows: readonly TraitRow[]) {
     rows.forEach((row, k) => {
-      const held = this.#byTrait.get(row.trait);
-      if (held === undefined) this.#byTrait.set(row.trait, [k]);
-      else held.push(k);
+      append(this.#byTrait, row.trait, k);
+      append(this.#byUnit, `${row.trait}|${row.unit}`, k);
     });
   }
 
-  /** Positions of the rows of one trait. */
-  positions(trait: TraitName): readonly number[] {
-    return this.#byTrait.get(trait) ?? [];
+  /** Positions of the rows of one trait; of one unit (full id), if given. */
+  positions(trait: TraitName, unit?: string): readonly number[] {
+    return (unit === undefined ? this.#byTrait.get(trait) : this.#byUnit.get(`${trait}|${unit}`)) ?? [];
   }
 
   /**
@@ -78,17 +79,12 @@ export class TraitPools {
       throw error;
     }
     const { value, u, basis, from, used, otherWidth } = estimate;
-    const distance = used.reduce<number | null>((far, k) => {
-      const d = held.distances.get(k);
-      return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
-    }, null);
+    const { distance, list } = held.describe(used);
     return {
       value,
       u,
       basis,
-      key: basis === "platform"
-        ? `${key}|platform`
-        : `${trait}|${polarisation}|${process}|${from}|${used.join(",")}`,
+      key: basis === "platform" ? `${key}|platform` : `${trait}|${polarisation}|${process}|${from}|${list}`,
       trait,
       polarisation,
       wavelength_nm,
@@ -107,7 +103,7 @@ export class TraitPools {
   ) {
     const distances = new Map<number, number>();
     const observations: Observation[] = [];
-    for (const units of this.#byUnit(trait, polarisation, process)) {
+    for (const units of this.#unitByUnit(trait, polarisation, process)) {
       for (const [k, scale, distance] of chosen(this.rows, units, wavelength_nm, scales(trait))) {
         const row = this.rows[k]!;
         if (distance !== null) distances.set(k, distance);
@@ -133,12 +129,12 @@ export class TraitPools {
     };
     return {
       pool: inherit(weighed, spreadOf(this.platform, trait, fallback), carried, this.design.lot.lot),
-      distances,
+      describe: describer(distances),
     };
   }
 
   /** Rows of a trait, polarisation and process, unit by unit. */
-  #byUnit(trait: TraitName, polarisation: Polarisation | null, process: string | null): number[][] {
+  #unitByUnit(trait: TraitName, polarisation: Polarisation | null, process: string | null): number[][] {
     const units = new Map<string, number[]>();
     for (const k of this.positions(trait)) {
       const row = this.rows[k]!;
@@ -180,7 +176,7 @@ export class TraitPools {
     const coating = this.design.coatingOf.get(`${guide.die_id}|out`);
     if (coating === undefined) return { facet: { state: "bare", basis: "die" }, resolved: null };
     const unit = `${coating.coating_run}|out`;
-    const positions = this.positions("reflectivity").filter((k) => this.rows[k]!.unit === unit);
+    const positions = this.positions("reflectivity", unit);
     const readings = positions.map((k) => this.rows[k]!)
       .map((r) => ({ lambda: nm(r.wavelength_nm!), reflectivity: r.value, u: r.u }));
     const found = coatedReflectivity(readings, nm(wavelength_nm));
@@ -247,6 +243,41 @@ function withSharedU(observations: readonly Observation[]): Observation[] {
     const { squares, count } = byWafer.get(o.wafer)!;
     return { ...o, u: Math.sqrt(squares / count) };
   });
+}
+
+/** What is told of the rows that an estimate used: the farthest one's distance in wavelength, and their list. */
+interface UsedRows {
+  readonly distance: number | null;
+  readonly list: string;
+}
+
+/** Describes lists of rows; once each: a whole lot inherits from one list of thousands. */
+function describer(distances: ReadonlyMap<number, number>): (used: readonly number[]) => UsedRows {
+  const held = new WeakMap<readonly number[], UsedRows>();
+  return (used) => {
+    let rows = held.get(used);
+    if (rows === undefined) {
+      const distance = used.reduce<number | null>((far, k) => {
+        const d = distances.get(k);
+        return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
+      }, null);
+      rows = { distance, list: listOf(used) };
+      held.set(used, rows);
+    }
+    return rows;
+  };
+}
+
+/** Longer lists of rows are told apart by their hash: the text goes into keys, which go to the threads with every guide. */
+const LONGEST_LIST = 16;
+
+const listOf = (used: readonly number[]): string =>
+  used.length <= LONGEST_LIST ? used.join(",") : sha256(used.join(","));
+
+function append<K>(map: Map<K, number[]>, key: K, k: number): void {
+  const held = map.get(key);
+  if (held === undefined) map.set(key, [k]);
+  else held.push(k);
 }
 
 /** A mode's size goes with the wavelength; a loss does not. */
