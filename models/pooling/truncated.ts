@@ -5,7 +5,10 @@ import type { Uncertain } from "../../shared/vocabulary.ts";
 
 /** What is known of a bounded trait once the impossible part of its normal is cut off. */
 export interface Truncated extends Uncertain {
-  /** 2.5 % and 97.5 % quantiles. */
+  /**
+   * 2.5 % and 97.5 % quantiles; the bound itself where the uncut 95 % interval reaches beyond it, so that a true value on
+   * its bound (no loss at all, no domain missing) is inside.
+   */
   readonly lo: number;
   readonly hi: number;
 }
@@ -23,6 +26,18 @@ export function truncated(
   { low = -Infinity, high = Infinity }: { readonly low?: number; readonly high?: number },
 ): Truncated {
   if (!(low < high)) throw new RangeError(`Cannot cut at ${low} and ${high}: need low < high`);
+  const left = cut(value, u, low, high);
+  return {
+    ...left,
+    lo: value - HALF_WIDTH * u <= low ? low : left.lo,
+    hi: value + HALF_WIDTH * u >= high ? high : left.hi,
+  };
+}
+
+/** Half a 95 % interval of a standard normal. */
+const HALF_WIDTH = normalQuantile(0.975, 0, 1);
+
+function cut(value: number, u: number, low: number, high: number): Truncated {
   if (u === 0) {
     const at = Math.min(high, Math.max(low, value));
     return { value: at, u: 0, lo: at, hi: at };
@@ -30,7 +45,7 @@ export function truncated(
   const [a, b] = [(low - value) / u, (high - value) / u];
   // Mirrored so that the nearer tail is the lower one: upper tails of a cumulative distribution have no digits left.
   if (a > 0) {
-    const m = truncated({ value: -value, u }, { low: -high, high: -low });
+    const m = cut(-value, u, -high, -low);
     return { value: -m.value, u: m.u, lo: -m.hi, hi: -m.lo };
   }
   if (b < -FAR) return exponentialTail(high, low, u / -b);
