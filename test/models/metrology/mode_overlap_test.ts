@@ -1,7 +1,7 @@
-import { ok, throws } from "node:assert/strict";
+import { ok, strictEqual, throws } from "node:assert/strict";
 import fc from "fast-check";
 import { assertClose } from "../../assert_close.ts";
-import { modeOverlap } from "../../../models/metrology/mod.ts";
+import { centredOverlap, modeOverlap } from "../../../models/metrology/mod.ts";
 import { mean } from "../../../shared/statistics.ts";
 import { randomFrom } from "../../../shared/random.ts";
 
@@ -89,4 +89,12 @@ Deno.test("modeOverlap() refuses widths and offsets without meaning", () => {
   throws(() => modeOverlap(mode(1, 1), mode(1, NaN)), RangeError);
   throws(() => modeOverlap(mode(1, 1, -1), mode(1, 1)), RangeError);
   throws(() => modeOverlap(mode(1, 1), mode(1, 1), { x: exact(Infinity), y: exact(0) }), RangeError);
+});
+
+Deno.test("centredOverlap() is modeOverlap() without offset, and as strict", () => {
+  const [a, b] = [[8e-6, 6e-6], [10.4e-6, 10.4e-6]] as const;
+  const size = ([x, y]: readonly [number, number]) => ({ x: exact(x), y: exact(y) });
+  assertClose(centredOverlap(a, b), modeOverlap(size(a), size(b)).value, { rel: 1e-14 });
+  strictEqual(centredOverlap(a, a), 1);
+  for (const bad of [0, -1, NaN, Infinity]) throws(() => centredOverlap([bad, 1], b), RangeError);
 });
