@@ -1,6 +1,6 @@
 import assert from "node:assert/strict";
 import { mismatch } from "../../../models/guides/mod.ts";
-import { reduceTuning } from "../../../pipeline/reduce/tuning.ts";
+import { reduceTuning, type WallPeaks } from "../../../pipeline/reduce/tuning.ts";
 import type { LotReadings } from "../../../pipeline/reduce/lot_readings.ts";
 import { TraitPools } from "../../../pipeline/traits/pools.ts";
 import { assertClose } from "../../assert_close.ts";
@@ -43,7 +43,7 @@ function scan(offset: number, peak: number) {
   }));
 }
 
-function offsetOf(tuning: ReturnType<typeof scan>, peaks: ReadonlyMap<string, number>): number {
+function offsetOf(tuning: ReturnType<typeof scan>, peaks: WallPeaks): number {
   const design = { guideById: new Map([[guide.guide_id, guide]]), lot: { lot: "A" } };
   const platform = { defaults: {}, priors: {}, platform: "p" };
   const readings = { tuning, design, platform, model: ktp } as unknown as LotReadings;
@@ -61,5 +61,7 @@ Deno.test("reduceTuning() finds the offset of a process whose mismatch is negati
 });
 
 Deno.test("reduceTuning() holds a scan against the peak of inspected walls, whatever the sign of Δβ", () => {
-  assertClose(offsetOf(scan(25, K + 40), new Map([[guide.guide_id, K + 40]])), 25, { abs: 0.5 });
+  assertClose(offsetOf(scan(25, K + 40), new Map([[guide.guide_id, { deltaBeta: K + 40, refs: [] }]])), 25, {
+    abs: 0.5,
+  });
 });
