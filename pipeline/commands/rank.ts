@@ -101,7 +101,7 @@ function printUnavailable(entries: readonly RankedEntry[]): void {
   }
 }
 
-const LEGEND = "m: measured on the guide; d, w, l: from its die, wafer, lot; p: platform's default";
+const LEGEND = "m: measured on the guide; d, w, l: from die, wafer, lot; p: platform's default";
 
 /** Column headings that leave room for three figures in 80 columns. */
 const SHORT: Partial<Record<Figure, string>> = {
