@@ -124,6 +124,24 @@ command(
     return await sqlCommand(query, options);
   }));
 
+command("flag", "say what is out of line in a lot, and what may be behind it", "flag K07 --ledger ledger")
+  .argument("[lot]", "one lot (default: every lot of the ledger)")
+  .option(
+    "--request <request>",
+    "only for this request, by name or path; may repeat (default: those predicted that the lot can be tuned to)",
+    collect,
+    [],
+  )
+  .option("--rules <file>", "your own rules, in place of the built-in ones of the same names")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    workersOption(),
+  )
+  .addOption(formatOption())
+  .action(run(async (lot: string | undefined, options: Common & { request: string[]; rules?: string }) => {
+    const { flagCommand } = await import("./commands/flag.ts");
+    return await flagCommand(lot, options);
+  }));
+
 command("check", "verify every hash of the ledger", "check --ledger ledger")
   .addOption(ledgerOption()).addOption(formatOption())
   .action(run(async (options: Common) => {

@@ -1,0 +1,106 @@
+import { compareIds } from "../../../shared/ids.ts";
+import type { LotFacts, LotSummary } from "./facts.ts";
+import { earlierLots, lotChart } from "./lot_chart.ts";
+import {
+  coverageThin,
+  figureLimit,
+  noOperatingPoint,
+  outcomeResidual,
+  yieldFloor,
+} from "./prediction_rules.ts";
+import {
+  coatingOffTarget,
+  coatingUnknown,
+  quarantined,
+  readingRemarks,
+  unlistedCut,
+} from "./reading_rules.ts";
+import type { Rule } from "./rules.ts";
+import { seriesOf, summaryOf } from "./series.ts";
+import {
+  periodOff,
+  repeatedReadings,
+  scanResidual,
+  spreadGrowth,
+  traitLimit,
+  waferContrast,
+} from "./trait_rules.ts";
+import { TRAIT_NAMES } from "./facts.ts";
+import { type Flag, SEVERITY_ORDER } from "./types.ts";
+
+/**
+ * Every flag of a lot by some rules, worst first. Pure: the same facts give the same flags.
+ * @param summaries all lots of the platform, for what is compared over lots; the lot itself need not be among them
+ */
+export function flagsOf(facts: LotFacts, rules: readonly Rule[], summaries: readonly LotSummary[]): Flag[] {
+  const own = summaries.find((s) => s.lot === facts.lot) ?? summaryOfFacts(facts);
+  const order = new Map(rules.map((r, k) => [r.rule, k]));
+  const flags = rules.filter((r) => r.platform === undefined || r.platform === facts.platform.platform)
+    .flatMap((rule) => flagsOfRule(facts, rule, own, summaries));
+  return withoutEchoes(flags).sort((a, b) =>
+    SEVERITY_ORDER[a.severity] - SEVERITY_ORDER[b.severity] || order.get(a.rule)! - order.get(b.rule)! ||
+    compareIds(a.id, b.id)
+  );
+}
+
+function flagsOfRule(facts: LotFacts, rule: Rule, own: LotSummary, all: readonly LotSummary[]): Flag[] {
+  switch (rule.kind) {
+    case "trait_limit":
+      return traitLimit(facts, rule);
+    case "figure_limit":
+      return figureLimit(facts, rule);
+    case "wafer_contrast":
+      return waferContrast(facts, rule);
+    case "yield_floor":
+      return yieldFloor(facts, rule);
+    case "no_operating_point":
+      return noOperatingPoint(facts, rule);
+    case "coating_off_target":
+      return coatingOffTarget(facts, rule);
+    case "coating_unknown":
+      return coatingUnknown(facts, rule);
+    case "period_off":
+      return periodOff(facts, rule);
+    case "scan_residual":
+      return scanResidual(facts, rule);
+    case "reading_remarks":
+      return readingRemarks(facts, rule);
+    case "repeated_readings":
+      return repeatedReadings(facts, rule);
+    case "outcome_residual":
+      return outcomeResidual(facts, rule);
+    case "unlisted_cut":
+      return unlistedCut(facts, rule);
+    case "coverage_thin":
+      return coverageThin(facts, rule);
+    case "quarantine":
+      return quarantined(facts, rule);
+    case "lot_chart":
+      return lotChart(own, all, rule, facts.platform.platform);
+    case "spread_growth":
+      return spreadGrowth(facts, rule, earlierLots(own, all));
+  }
+}
+
+/** A wafer that is beyond a limit need not be told to differ from its twin in the same trait as well. */
+function withoutEchoes(flags: readonly Flag[]): Flag[] {
+  const key = (f: Flag) => `${f.scope}|${f.id}|${f.evidence.numbers.trait}`;
+  const contrasts = (f: Flag) =>
+    f.evidence.numbers.z !== undefined && f.evidence.numbers.others !== undefined;
+  const beyond = new Set(flags.filter((f) => f.evidence.numbers.limit !== undefined).map(key));
+  return flags.filter((f) => !(contrasts(f) && beyond.has(key(f))));
+}
+
+/** A lot as the others are summed up. */
+export function summaryOfFacts(facts: LotFacts): LotSummary {
+  return {
+    lot: facts.lot,
+    started: facts.started,
+    wafers: facts.wafers,
+    steps: facts.steps,
+    series: new Map(
+      seriesOf(facts.traits, TRAIT_NAMES, facts.platform).map((s) => [s.key, summaryOf(s)]),
+    ),
+    yields: new Map(),
+  };
+}

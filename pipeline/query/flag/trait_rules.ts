@@ -1,0 +1,322 @@
+import { fTail } from "../../../models/decision/tails.ts";
+import { defaultOf } from "../../traits/platform_defaults.ts";
+import type { TraitRow } from "../../traits/trait_row.ts";
+import type { LotFacts, LotSummary } from "./facts.ts";
+import type { RuleOf } from "./rules.ts";
+import {
+  isDefaultTrait,
+  oneSided,
+  type Series,
+  seriesOf,
+  seriesWords,
+  summaryOf,
+  unitOf,
+  type WaferMean,
+  waferMeans,
+} from "./series.ts";
+import { suspectsOfDies } from "./suspects_of.ts";
+import { type Flag, mergeRefs, num, plural } from "./types.ts";
+
+interface Limit {
+  readonly side: "above" | "below";
+  readonly at: number;
+  readonly words: string;
+}
+
+function limitsOf(rule: RuleOf<"trait_limit">, { trait, polarisation }: Series, facts: LotFacts): Limit[] {
+  const out: Limit[] = [];
+  const unit = unitOf(trait);
+  if (rule.at_most !== undefined) {
+    out.push({ side: "above", at: rule.at_most, words: `the limit ${num(rule.at_most)}${unit}` });
+  }
+  if (rule.at_least !== undefined) {
+    out.push({ side: "below", at: rule.at_least, words: `the limit ${num(rule.at_least)}${unit}` });
+  }
+  const known = isDefaultTrait(trait) ? defaultOf(facts.platform, trait, polarisation) : null;
+  if (known === null) return out;
+  const words = (sign: string, k: number) =>
+    `the platform's ${num(known.value)} ${sign} ${k} × ${num(known.u)}${unit}`;
+  const [up, down] = [rule.above_default_by_u, rule.below_default_by_u];
+  if (up !== undefined) out.push({ side: "above", at: known.value + up * known.u, words: words("+", up) });
+  if (down !== undefined) {
+    out.push({ side: "below", at: known.value - down * known.u, words: words("−", down) });
+  }
+  return out;
+}
+
+/** A wafer whose mean is beyond a limit with the confidence of the rule. */
+export function traitLimit(facts: LotFacts, rule: RuleOf<"trait_limit">): Flag[] {
+  const found = new Map<string, { wafer: WaferMean; series: Series; limit: Limit; margin: number }[]>();
+  const all = seriesOf(facts.traits, [rule.trait], facts.platform);
+  for (const series of all) {
+    for (const wafer of waferMeans(series)) {
+      for (const limit of limitsOf(rule, series, facts)) {
+        const bound = oneSided(rule.confidence, wafer.dies.length) * wafer.se;
+        const beyond = limit.side === "above" ? wafer.value - limit.at : limit.at - wafer.value;
+        if (!(beyond > bound)) continue;
+        const held = found.get(wafer.wafer) ?? [];
+        held.push({ wafer, series, limit, margin: beyond / Math.max(wafer.se, 1e-300) });
+        found.set(wafer.wafer, held);
+      }
+    }
+  }
+  return [...found].map(([id, hits]) => {
+    const [worst, ...more] = hits.sort((a, b) => b.margin - a.margin);
+    const { wafer, series, limit } = worst!;
+    const unit = unitOf(series.trait);
+    const others = waferMeans(series).filter((w) => w.wafer !== id);
+    const sentence =
+      `Wafer ${id}: ${seriesWords(series)} is ${num(wafer.value)}${unit} (standard error ${
+        num(wafer.se, 2)
+      }, ${plural(wafer.dies.length, "die")}), ${limit.side} ${limit.words}` +
+      (others.length === 0
+        ? ""
+        : `; ${others.map((w) => `${w.wafer} has ${num(w.value)}`).slice(0, 4).join(", ")}`) +
+      (more.length === 0 ? "" : `; also beyond: ${more.map((m) => seriesWords(m.series)).join(", ")}`);
+    return {
+      scope: "wafer",
+      id,
+      lot: facts.lot,
+      rule: rule.rule,
+      severity: rule.severity,
+      statement: sentence,
+      evidence: {
+        numbers: {
+          trait: series.trait,
+          wavelength_nm: series.wavelength_nm,
+          value: wafer.value,
+          standard_error: wafer.se,
+          limit: limit.at,
+          dies_read: wafer.dies.length,
+        },
+        readings: mergeRefs(hits.flatMap((h) => h.wafer.dies.flatMap((d) => d.refs))),
+        dies: wafer.dies.map((d) => d.unit),
+      },
+      suspects: suspectsOfDies(facts, diesOfWafers(facts, new Set(found.keys()))),
+    };
+  });
+}
+
+/** Every die of some wafers: what a wafer went through, all of them went through. */
+export const diesOfWafers = (facts: LotFacts, wafers: ReadonlySet<string>): Set<string> =>
+  new Set([...facts.design.guidesOfDie].filter(([, g]) => wafers.has(g[0]!.wafer)).map(([die]) => die));
+
+/** A wafer farther from the lot's other wafers than the platform's spread between wafers lets one expect. */
+export function waferContrast(facts: LotFacts, rule: RuleOf<"wafer_contrast">): Flag[] {
+  const hits = new Map<string, { series: Series; wafer: WaferMean; rest: number; z: number; u: number }>();
+  for (const series of seriesOf(facts.traits, rule.traits, facts.platform)) {
+    const wafers = waferMeans(series);
+    if (wafers.length < 2) continue;
+    for (const wafer of wafers) {
+      const others = wafers.filter((w) => w !== wafer);
+      const rest = others.reduce((sum, w) => sum + w.value, 0) / others.length;
+      const own = Math.hypot(wafer.se, series.spread.waferSd);
+      const theirs = Math.hypot(...others.map((w) => Math.hypot(w.se, series.spread.waferSd))) /
+        others.length;
+      const u = Math.hypot(own, theirs);
+      const z = (wafer.value - rest) / u;
+      // Of two wafers either is as far from the other: the one farther from the platform's default is out.
+      if (!(Math.abs(z) > rule.k) || (wafers.length === 2 && !isFarther(facts, series, wafer, others[0]!))) {
+        continue;
+      }
+      const key = `${wafer.wafer}|${series.trait}`;
+      if (Math.abs(z) > Math.abs(hits.get(key)?.z ?? 0)) hits.set(key, { series, wafer, rest, z, u });
+    }
+  }
+  return [...hits.values()].map(({ series, wafer, rest, z, u }) => ({
+    scope: "wafer",
+    id: wafer.wafer,
+    lot: facts.lot,
+    rule: rule.rule,
+    severity: rule.severity,
+    statement:
+      `Wafer ${wafer.wafer}: ${seriesWords(series)} is ${num(wafer.value)}${
+        unitOf(series.trait)
+      }, the lot's other wafers have ${num(rest)}: ${
+        num(Math.abs(z), 2)
+      } times what the readings and the platform's ` +
+      `spread between wafers allow (${num(u, 2)})`,
+    evidence: {
+      numbers: { trait: series.trait, value: wafer.value, others: rest, u, z },
+      readings: mergeRefs(wafer.dies.flatMap((d) => d.refs)),
+      dies: wafer.dies.map((d) => d.unit),
+    },
+    suspects: suspectsOfDies(facts, diesOfWafers(facts, new Set([wafer.wafer]))),
+  }));
+}
+
+function isFarther(facts: LotFacts, { trait, polarisation }: Series, a: WaferMean, b: WaferMean): boolean {
+  const known = isDefaultTrait(trait) ? defaultOf(facts.platform, trait, polarisation) : null;
+  const from = known?.value ?? 0;
+  return Math.abs(a.value - from) >= Math.abs(b.value - from);
+}
+
+/** Dies of a wafer that differ more than those of the lots before (variance ratio, Fisher's F). */
+export function spreadGrowth(
+  facts: LotFacts,
+  rule: RuleOf<"spread_growth">,
+  earlier: readonly LotSummary[],
+): Flag[] {
+  return seriesOf(facts.traits, rule.traits, facts.platform).flatMap((series): Flag[] => {
+    const own = summaryOf(series);
+    const before = earlier.map((l) => l.series.get(series.key)).filter((s) =>
+      s !== undefined && s.degreesOfFreedom > 0
+    ) as ReturnType<typeof summaryOf>[];
+    const degrees = before.reduce((sum, s) => sum + s.degreesOfFreedom, 0);
+    if (own.degreesOfFreedom < 2 || degrees < 4) return [];
+    const variance = before.reduce((sum, s) => sum + s.degreesOfFreedom * s.variance, 0) / degrees;
+    const ratio = own.variance / variance;
+    const p = fTail(ratio, own.degreesOfFreedom, degrees);
+    if (!(p < rule.alpha && Math.sqrt(ratio) >= rule.least_ratio)) return [];
+    const [now, then] = [Math.sqrt(own.variance), Math.sqrt(variance)];
+    const unit = unitOf(series.trait);
+    return [{
+      scope: "lot",
+      id: facts.lot,
+      lot: facts.lot,
+      rule: rule.rule,
+      severity: rule.severity,
+      statement:
+        `Lot ${facts.lot}: ${seriesWords(series)} differs between dies of a wafer by ${num(now)}${unit} ` +
+        `(standard deviation, ${plural(own.dies, "die")}), ${num(now / then, 2)} times the ${
+          num(then)
+        }${unit} of the ${plural(before.length, "lot")} before (p = ${num(p, 2)})`,
+      evidence: {
+        numbers: { trait: series.trait, sd: now, sd_before: then, p_value: p, lots_before: before.length },
+        readings: mergeRefs(series.dies.flatMap((d) => d.refs)),
+      },
+      suspects: [],
+    }];
+  });
+}
+
+/** Readings of the same thing that differ by more than k·u. */
+export function repeatedReadings(facts: LotFacts, rule: RuleOf<"repeated_readings">): Flag[] {
+  const groups = new Map<string, TraitRow[]>();
+  for (const row of facts.traits) {
+    if (!(rule.traits as string[]).includes(row.trait) || row.wafer === null) continue;
+    const key = [row.trait, row.unit, row.wavelength_nm, row.polarisation, row.process].join("|");
+    const held = groups.get(key);
+    if (held === undefined) groups.set(key, [row]);
+    else held.push(row);
+  }
+  const flags: Flag[] = [];
+  for (const rows of groups.values()) {
+    let worst: { a: TraitRow; b: TraitRow; z: number } | null = null;
+    for (const [k, a] of rows.entries()) {
+      for (const b of rows.slice(k + 1)) {
+        const z = Math.abs(a.value - b.value) / Math.hypot(a.u, b.u);
+        if (z > rule.k && z > (worst?.z ?? 0)) worst = { a, b, z };
+      }
+    }
+    if (worst === null) continue;
+    const { a, b, z } = worst;
+    const unit = unitOf(a.trait);
+    const shown = (r: TraitRow) => `${num(r.value)} ± ${num(r.u, 2)}${unit} (${r.method})`;
+    flags.push({
+      scope: "wafer",
+      id: a.wafer!,
+      lot: facts.lot,
+      rule: rule.rule,
+      severity: rule.severity,
+      statement: `${a.unit}: two readings of its ${seriesWords(a)} disagree, ${shown(a)} and ${shown(b)}: ${
+        num(z, 2)
+      } times their joint u`,
+      evidence: {
+        numbers: { trait: a.trait, first: a.value, second: b.value, z },
+        readings: mergeRefs([...a.readings, ...b.readings]),
+        ...(a.guide_id === null ? {} : { guides: [a.guide_id] }),
+      },
+      suspects: [],
+    });
+  }
+  return flags;
+}
+
+/** Scans of a lot that all lie on one side of the calculation: a finding about the platform file. */
+export function scanResidual(facts: LotFacts, rule: RuleOf<"scan_residual">): Flag[] {
+  const byProcess = new Map<string, TraitRow[]>();
+  for (const row of facts.traits) {
+    if (row.trait !== "mismatch_offset_per_m") continue;
+    byProcess.set(row.process ?? "", [...byProcess.get(row.process ?? "") ?? [], row]);
+  }
+  const stated = defaultOf(facts.platform, "mismatch_offset_per_m", null);
+  return [...byProcess].flatMap(([process, rows]): Flag[] => {
+    if (rows.length < rule.least_scans) return [];
+    const values = rows.map((r) => r.value);
+    const centre = values.reduce((a, b) => a + b, 0) / values.length;
+    const s = Math.sqrt(values.reduce((sum, v) => sum + (v - centre) ** 2, 0) / (values.length - 1));
+    const se = Math.max(s / Math.sqrt(values.length), Math.hypot(...rows.map((r) => r.u)) / values.length);
+    if (!(Math.abs(centre) > rule.k * se)) return [];
+    const beyond = stated === null || Math.abs(centre - stated.value) > rule.k * stated.u;
+    return [{
+      scope: "lot",
+      id: facts.lot,
+      lot: facts.lot,
+      rule: rule.rule,
+      severity: beyond ? rule.severity_beyond_platform : rule.severity,
+      statement:
+        `Platform ${facts.platform.platform}: ${
+          plural(rows.length, "scan")
+        } of lot ${facts.lot} (${process}) ` +
+        `${centre > 0 ? "lie above" : "lie below"} the calculated mismatch by ${
+          num(Math.abs(centre))
+        } 1/m (standard error ${num(se, 2)}); ` +
+        (stated === null
+          ? "the platform file states no uncertainty of its calculation (mismatch_offset_per_m)"
+          : beyond
+          ? `the platform file states only u = ${num(stated.u)} 1/m`
+          : `within the u = ${num(stated.u)} 1/m that the platform file states, and used as an offset`),
+      evidence: {
+        numbers: {
+          mean_per_m: centre,
+          standard_error_per_m: se,
+          scans: rows.length,
+          stated_u_per_m: stated?.u ?? null,
+        },
+        readings: mergeRefs(rows.flatMap((r) => r.readings)),
+        guides: rows.map((r) => r.unit),
+      },
+      suspects: [],
+    }];
+  });
+}
+
+/** A period found that is not the one drawn. */
+export function periodOff(facts: LotFacts, rule: RuleOf<"period_off">): Flag[] {
+  const off = facts.periods.filter(({ found_um, drawn_um, u_um }) => {
+    const difference = Math.abs(found_um - drawn_um);
+    return difference > rule.tolerance * drawn_um && difference > rule.k * u_um;
+  });
+  const byWafer = new Map<string, typeof off>();
+  for (const p of off) byWafer.set(p.wafer, [...byWafer.get(p.wafer) ?? [], p]);
+  return [...byWafer].map(([wafer, periods]) => {
+    const first = periods[0]!;
+    const read = facts.periods.filter((p) => p.wafer === wafer).length;
+    return {
+      scope: "wafer",
+      id: wafer,
+      lot: facts.lot,
+      rule: rule.rule,
+      severity: rule.severity,
+      statement:
+        `Wafer ${wafer}: the period of ${periods.length} of ${
+          plural(read, "inspected guide")
+        } is not the one drawn; ` +
+        `${first.guide_id} has ${num(first.found_um, 5)} µm (u ${
+          num(first.u_um, 2)
+        }, from ${first.from}), drawn ${num(first.drawn_um, 5)} µm`,
+      evidence: {
+        numbers: {
+          found_um: first.found_um,
+          drawn_um: first.drawn_um,
+          u_um: first.u_um,
+          guides_off: periods.length,
+        },
+        readings: mergeRefs(periods.flatMap((p) => p.readings)),
+        guides: periods.map((p) => p.guide_id),
+      },
+      suspects: suspectsOfDies(facts, diesOfWafers(facts, new Set(byWafer.keys()))),
+    };
+  });
+}
