@@ -9,8 +9,10 @@ export interface LatticePoint {
 
 /** Distance of the points in standard deviations, by dimension: the rectangle rule's error for a normal is 2e^(−2π²/h²). */
 const STEPS = [1, 0.75, 1, 1.25, 1.5];
-/** Points this much less probable than the best (natural logarithm) carry nothing that counts. */
-const DEPTH = 8;
+/** From points this much less probable than the best (natural logarithm) the search goes no further … */
+const DEPTH = 5.5;
+/** … and of the neighbours found last those below this carry nothing that counts. */
+const LEAST = 9;
 /** Bound on the work for densities far from normal. */
 const MOST_POINTS = 4000;
 
@@ -54,11 +56,11 @@ export function lattice(
         const at = place(next);
         const found = logDensity(at);
         best = Math.max(best, found);
-        if (found >= best - DEPTH) queue.push({ steps: next, at, log: found });
+        if (found >= best - LEAST) queue.push({ steps: next, at, log: found });
       }
     }
   }
-  const kept = queue.filter(({ log }) => log >= best - DEPTH);
+  const kept = queue.filter(({ log }) => log >= best - LEAST);
   const weights = kept.map(({ log }) => Math.exp(log - best));
   const total = weights.reduce((sum, w) => sum + w, 0);
   return kept.map(({ at }, k) => ({ at, share: weights[k]! / total }));

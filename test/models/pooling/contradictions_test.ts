@@ -22,7 +22,7 @@ const pool = ({ observations, places }: Pick<Simulated, "observations" | "places
   pooled(observations, places, SPREAD, DEFAULT, "L0", { trendFrom: Infinity });
 
 Deno.test("good readings are hardly ever named", () => {
-  const tries = 100;
+  const tries = 60;
   let named = 0;
   for (let n = 0; n < tries; n++) if (pool(lots(`good ${n}`)).contradictions().length > 0) named++;
   const { high } = yieldRange(new Float64Array(tries).fill(CONTRADICTION_ALPHA), 0.999);
