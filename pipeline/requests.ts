@@ -17,6 +17,8 @@ export interface LoadedRequest extends CheckedRequest {
   readonly file: string;
   readonly fingerprint: string;
   readonly spectrum: PumpSpectrum | null;
+  /** What was read and is not used, for people. */
+  readonly remarks: readonly string[];
 }
 
 const EXAMPLES = fileURLToPath(new URL("../fixtures/requests/", import.meta.url));
@@ -42,7 +44,23 @@ export async function loadRequestFile(path: string): Promise<LoadedRequest> {
     hashes.push(sha256(spectrumText));
     requirePumpWithin(spectrum, checked.waves.lambdaP, file);
   }
-  return { ...checked, name: request.request, file: path, fingerprint: fingerprintOf(hashes), spectrum };
+  return {
+    ...checked,
+    name: request.request,
+    file: path,
+    fingerprint: fingerprintOf(hashes),
+    spectrum,
+    remarks: ignoredFields(checked, path),
+  };
+}
+
+/** Pulse data of a pump without a pulse length: it counts as continuous, and what belongs to pulses is not used. */
+function ignoredFields({ request, pulsed }: CheckedRequest, path: string): string[] {
+  if (request.process !== "pair-generation" || pulsed) return [];
+  const given = (["repetition_mhz", "shape"] as const).filter((field) => request.pump?.[field] !== undefined);
+  return given.map((field) =>
+    `${path}: pump.${field} is not used: without fwhm_ps or fwhm_nm the pump is a continuous wave`
+  );
 }
 
 /** The folders in which requests are looked for, in order; `--requests DIR` replaces `./requests`. */

@@ -46,6 +46,7 @@ export async function bringUpToDate(
   await using ledger = await openLedger(options.ledger, { write: true });
   const chosen = await chosenLots(ledger, lots);
   await checkRanges(ledger, chosen, requests, options.platforms);
+  if (!quiet) noteAll(requests.flatMap((r) => r.remarks));
   const out: Predicted[] = [];
   for (const lot of chosen) {
     const { remarks } = await reduceLot(ledger, lot, options.platforms);

@@ -95,3 +95,25 @@ export function grouped<T>(rows: readonly T[], key: (row: T) => string): T[][] {
   }
   return [...groups.values()];
 }
+
+/** Kinds of which some reading has no u, neither its own nor the platform's: it counts as exact, and that has to be said. */
+export function unknownUncertainties(readings: LotReadings): ReduceRemark[] {
+  const { defaults } = readings.platform;
+  const kinds = [
+    ["cutback", readings.cutback.map((r) => r.u_insertion_loss_db), defaults.u_insertion_loss_db],
+    ["fringes", readings.fringes.map((r) => r.u_contrast), defaults.u_contrast],
+    ["facets", readings.facets.map((r) => r.u_reflectivity), defaults.u_reflectivity],
+    ["modes", readings.modes.map((r) => r.u_mfd_um), defaults.u_mfd_um],
+  ] as const;
+  return kinds.flatMap(([kind, stated, fallback]) => {
+    const without = stated.filter((u) => u === null).length;
+    if (without === 0 || fallback !== undefined) return [];
+    return [{
+      code: "u_unknown",
+      unit: readings.lot,
+      statement:
+        `${without} of ${stated.length} ${kind} readings of ${readings.lot} state no u, and platform ` +
+        `${readings.platform.platform} has no default for it: they count as exact`,
+    }];
+  });
+}

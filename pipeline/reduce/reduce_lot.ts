@@ -9,7 +9,7 @@ import { streamWalls } from "../traits/guide_walls.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { REDUCE_REMARK_SHAPE, type ReduceRemark, TRAIT_SHAPE, type TraitRow } from "../traits/trait_row.ts";
 import { reduceGeometry } from "./geometry.ts";
-import { loadReadings, type LotReadings, type Reduced } from "./lot_readings.ts";
+import { loadReadings, type LotReadings, type Reduced, unknownUncertainties } from "./lot_readings.ts";
 import { reduceCutback, reduceFringes } from "./loss.ts";
 import { reduceFacets, reduceModes } from "./optics.ts";
 import { reducePoling, reduceWalls } from "./poling.ts";
@@ -54,7 +54,7 @@ export async function reduceLot(ledger: Ledger, lot: string, platforms?: string)
     // A scan's offset is what is left beside the geometry, as the prediction will know it.
     reduceTuning(readings, walls.peaks, new TraitPools(loaded.platform, design, geometry.traits)),
   ];
-  const remarks = parts.flatMap((p) => p.remarks);
+  const remarks = [...unknownUncertainties(readings), ...parts.flatMap((p) => p.remarks)];
   const run = await ledger.commit({
     kind: "reduce",
     lot,

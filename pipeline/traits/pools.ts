@@ -5,7 +5,6 @@ import { InputError } from "../../shared/errors.ts";
 import type { DefaultTrait, Platform } from "../../shared/schemas/platform.ts";
 import { nm } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
-import { sha256 } from "../json_file.ts";
 import type { GuideRecord, LotDesign } from "../records.ts";
 import { defaultOf, spreadOf } from "./platform_defaults.ts";
 import type { TraitName, TraitRow } from "./trait_row.ts";
@@ -188,7 +187,7 @@ export class TraitPools {
         value: found.value,
         u: found.u,
         basis: "die",
-        key: `reflectivity|${unit}|${used.join(",")}|${wavelength_nm}`,
+        key: `reflectivity|${unit}|${wavelength_nm}`,
         distance: null,
         from: coating.coating_run,
         used,
@@ -245,7 +244,10 @@ function withSharedU(observations: readonly Observation[]): Observation[] {
   });
 }
 
-/** What is told of the rows that an estimate used: the farthest one's distance in wavelength, and their list. */
+/**
+ * What is told of the rows that an estimate used: the farthest one's distance in wavelength, and all their distances as text.
+ * With the unit they name the readings whatever else the lot holds: seeds made of positions would move with every new file.
+ */
 interface UsedRows {
   readonly distance: number | null;
   readonly list: string;
@@ -261,18 +263,12 @@ function describer(distances: ReadonlyMap<number, number>): (used: readonly numb
         const d = distances.get(k);
         return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
       }, null);
-      rows = { distance, list: listOf(used) };
+      rows = { distance, list: [...new Set(used.map((k) => distances.get(k) ?? 0))].sort().join(",") };
       held.set(used, rows);
     }
     return rows;
   };
 }
-
-/** Longer lists of rows are told apart by their hash: the text goes into keys, which go to the threads with every guide. */
-const LONGEST_LIST = 16;
-
-const listOf = (used: readonly number[]): string =>
-  used.length <= LONGEST_LIST ? used.join(",") : sha256(used.join(","));
 
 function append<K>(map: Map<K, number[]>, key: K, k: number): void {
   const held = map.get(key);

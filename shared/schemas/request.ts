@@ -228,6 +228,17 @@ function checkPump(pump: NonNullable<Request["pump"]>, pulsed: boolean, problems
 }
 
 function checkPowers(request: Request, problems: RequestProblem[]): void {
+  const { signal, idler } = request;
+  if (
+    request.process === "second-harmonic" && signal.average_power_mw !== undefined &&
+    idler?.average_power_mw !== undefined
+  ) {
+    problems.push({
+      field: "idler.average_power_mw",
+      reason:
+        "given beside the signal's: a second harmonic has one fundamental; give its whole power as the signal's",
+    });
+  }
   const asksPower = request.order_by === "peak_conversion" ||
     request.require.some((r) => r.figure === "peak_conversion");
   if (!asksPower) return;
