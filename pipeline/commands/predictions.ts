@@ -3,10 +3,11 @@ import { InputError } from "../../shared/errors.ts";
 import { type Ledger, openLedger } from "../ledger/mod.ts";
 import { predictLot } from "../predict/predict_lot.ts";
 import { checkRanges } from "../predict/request_range.ts";
+import { OutOfDate } from "../out_of_date.ts";
 import { lotsOf } from "../records.ts";
 import { reduceLot } from "../reduce/reduce_lot.ts";
 import type { LoadedRequest } from "../requests.ts";
-import { type CommonOptions, noteAll, threadsOf } from "./common.ts";
+import { type CommonOptions, note, noteAll, threadsOf } from "./common.ts";
 
 export interface Predicted {
   readonly lot: string;
@@ -35,7 +36,8 @@ export async function chosenLots(ledger: Ledger, lots: readonly string[]): Promi
 
 /**
  * Brings traits and predictions of some lots up to date: each stage computes only what has changed. A platform or request
- * that can't be used ends the call before the first lot is touched.
+ * that can't be used ends the call before the first lot is touched. The writer's lock is taken only when there is something
+ * to compute, so that many may ask a ledger at once.
  */
 export async function bringUpToDate(
   options: CommonOptions,
@@ -43,21 +45,57 @@ export async function bringUpToDate(
   requests: readonly LoadedRequest[],
   { quiet = false } = {},
 ): Promise<Predicted[]> {
+  if (!quiet) noteAll(requests.flatMap((r) => r.remarks));
+  try {
+    await using ledger = await openLedger(options.ledger, { write: false });
+    return await everyLot(ledger, options, lots, requests, quiet);
+  } catch (error) {
+    if (!(error instanceof OutOfDate)) throw error;
+  }
   await using ledger = await openLedger(options.ledger, { write: true });
+  return await everyLot(ledger, options, lots, requests, quiet);
+}
+
+async function everyLot(
+  ledger: Ledger,
+  options: CommonOptions,
+  lots: readonly string[],
+  requests: readonly LoadedRequest[],
+  quiet: boolean,
+): Promise<Predicted[]> {
   const chosen = await chosenLots(ledger, lots);
   await checkRanges(ledger, chosen, requests, options.platforms);
-  if (!quiet) noteAll(requests.flatMap((r) => r.remarks));
   const out: Predicted[] = [];
   for (const lot of chosen) {
-    const { remarks } = await reduceLot(ledger, lot, options.platforms);
+    const solving = solvingProgress(lot);
+    const { remarks } = await reduceLot(ledger, lot, options.platforms, {
+      workers: threadsOf(options),
+      onSolving: solving,
+    });
     if (!quiet) noteAll(remarks.map((r) => r.statement));
     using bar = progressBar(`predicting ${lot}`);
     const done = await predictLot(ledger, lot, requests, {
       ...(options.platforms === undefined ? {} : { platforms: options.platforms }),
       workers: threadsOf(options),
       onProgress: (n, of) => bar.update(n, of),
+      onSolving: solving,
     });
     out.push(...done.map((d) => ({ lot, ...d })));
   }
   return out;
+}
+
+/** Says that modes are being solved, and how far it is: seconds per drawn width, and only once per ledger. */
+export function solvingProgress(what: string): (done: number, of: number) => void {
+  let bar: ReturnType<typeof progressBar> | null = null;
+  return (done, of) => {
+    if (done === 0) {
+      note(
+        `solving the modes of ${what}'s designs (${of} ${of === 1 ? "piece" : "pieces"}; kept in the ledger)`,
+      );
+      bar = progressBar("solving modes");
+    }
+    bar?.update(done, of);
+    if (done === of) bar?.[Symbol.dispose]();
+  };
 }

@@ -1,8 +1,10 @@
 import { DRAWS, SPECTRAL_DRAWS } from "../../models/decision/mod.ts";
 import { InputError } from "../../shared/errors.ts";
+import { askedBy, designsFor, type SolveSetting } from "../designs/mod.ts";
 import { sha256 } from "../json_file.ts";
 import { type Ledger, type Manifest, type TableShape, tableStream } from "../ledger/mod.ts";
 import { MODEL_VERSION } from "../model_version.ts";
+import { OutOfDate } from "../out_of_date.ts";
 import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
 import { type GuideRecord, loadDesign, type LotDesign, recordsOf } from "../records.ts";
 import type { LoadedRequest } from "../requests.ts";
@@ -22,6 +24,8 @@ export interface PredictLotOptions {
   readonly workers: number;
   /** Guides × requests done, of all. */
   readonly onProgress?: (done: number, of: number) => void;
+  /** Pieces of designs solved, of all that were not in the ledger. */
+  readonly onSolving?: SolveSetting["onSolving"];
 }
 
 export interface PredictedRequest {
@@ -82,13 +86,14 @@ export async function predictLot(
     else done.push({ request: request.name, run: held.run, computed: false });
   }
   if (stale.length === 0) return done;
+  if (!ledger.writable) throw new OutOfDate(`predictions of lot ${lot}`);
   const computed = await compute(ledger, design, loaded, reduced, stale.map((s) => s.request), options);
   for (const [k, { request, fingerprint }] of stale.entries()) {
     const run = await ledger.commit({
       kind: "predict",
       lot,
       inputs: [],
-      parents: [reduced.run],
+      parents: [reduced.run, ...computed.designRuns],
       parameters: {
         request: request.name,
         request_sha256: request.fingerprint,
@@ -116,6 +121,7 @@ interface Computed {
   readonly stores: FigureStore[];
   readonly roles: { guide: GuideRecord; roles: readonly RoleTrait[] }[][];
   readonly unavailable: Map<string, string>;
+  readonly designRuns: readonly string[];
 }
 
 const BATCH = 4;
@@ -129,6 +135,16 @@ async function compute(
   options: PredictLotOptions,
 ): Promise<Computed> {
   const { lot } = design.lot;
+  const { designs, runs: designRuns } = await designsFor(
+    ledger,
+    loaded,
+    design.guides.map((g) => g.width_um),
+    requests.map(askedBy),
+    {
+      workers: options.workers,
+      ...(options.onSolving === undefined ? {} : { onSolving: options.onSolving }),
+    },
+  );
   const traits = await loadTraits(ledger, reduced);
   const pools = new TraitPools(loaded.platform, design, traits);
   const windows = windowsByUnit(await recordsOf(ledger, "poling", lot));
@@ -136,7 +152,7 @@ async function compute(
   const stores = requests.map((r) => new FigureStore(lot, r.name, design.guides));
   const roles: Computed["roles"] = requests.map(() => []);
   const setup: WorkerSetup = {
-    platform: loaded,
+    platform: { ...loaded, designs },
     requests: requests.map((
       { request, waves, processKey, pulsed, requirements, orderBy, descending, spectrum },
     ) => ({
@@ -177,7 +193,7 @@ async function compute(
   } finally {
     pool.close();
   }
-  return { stores, roles, unavailable };
+  return { stores, roles, unavailable, designRuns };
 }
 
 /** Gathers jobs into batches: one message per job would cost as much as a small job. */

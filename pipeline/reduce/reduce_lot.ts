@@ -1,10 +1,12 @@
 import { bandForPeak, gratingFromWalls, gratingSpectrum, mainPeaks } from "../../models/poling/mod.ts";
 import { mm, um } from "../../shared/units.ts";
+import { designsFor, type SolveSetting } from "../designs/mod.ts";
 import { sha256 } from "../json_file.ts";
 import { type Ledger, type Manifest, type TableStream, tableStream } from "../ledger/mod.ts";
 import { buildModel, loadPlatform } from "../platforms.ts";
 import { loadDesign } from "../records.ts";
 import { MODEL_VERSION } from "../model_version.ts";
+import { OutOfDate } from "../out_of_date.ts";
 import { streamWalls } from "../traits/guide_walls.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { REDUCE_REMARK_SHAPE, type ReduceRemark, TRAIT_SHAPE, type TraitRow } from "../traits/trait_row.ts";
@@ -28,7 +30,12 @@ export interface ReduceResult {
  * @param ledger open for writing
  * @throws InputError for an unknown lot or platform
  */
-export async function reduceLot(ledger: Ledger, lot: string, platforms?: string): Promise<ReduceResult> {
+export async function reduceLot(
+  ledger: Ledger,
+  lot: string,
+  platforms?: string,
+  solving: SolveSetting = {},
+): Promise<ReduceResult> {
   const design = await loadDesign(ledger, lot);
   const loaded = await loadPlatform(design.lot.platform, platforms);
   const files = await ledger.activeFiles(lot);
@@ -40,7 +47,15 @@ export async function reduceLot(ledger: Ledger, lot: string, platforms?: string)
   ]));
   const held = await ledger.findRun({ kind: "reduce", lot, fingerprint });
   if (held !== null) return { run: held, computed: false, remarks: [] };
-  const readings = await loadReadings(ledger, design, loaded.platform, buildModel(loaded));
+  if (!ledger.writable) throw new OutOfDate(`the traits of lot ${lot}`);
+  const { designs, runs } = await designsFor(
+    ledger,
+    loaded,
+    design.guides.map((g) => g.width_um),
+    [],
+    solving,
+  );
+  const readings = await loadReadings(ledger, design, loaded.platform, buildModel({ ...loaded, designs }));
   const walls = await walkWalls(ledger, readings);
   const geometry = reduceGeometry(readings);
   const parts: Reduced[] = [
@@ -59,7 +74,7 @@ export async function reduceLot(ledger: Ledger, lot: string, platforms?: string)
     kind: "reduce",
     lot,
     inputs: [],
-    parents: [...new Set(files.map((f) => f.run))],
+    parents: [...new Set(files.map((f) => f.run)), ...runs],
     parameters: { platform: design.lot.platform, platform_sha256: loaded.fingerprint },
     modelVersion: MODEL_VERSION,
     fingerprint,
