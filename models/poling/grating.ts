@@ -79,6 +79,16 @@ export function invertedDomainsIn(length: number, period: number): number {
 }
 
 /**
+ * How many inverted domains a mask lays in a section: also a last one that the section's end cuts short, so that the
+ * grating is as long as the section whatever fraction of a period it ends with.
+ */
+export function laidDomainsIn(length: number, period: number): number {
+  invertedDomainsIn(length, period); // refuses what can't be laid out
+  // A last domain, a quarter of a period behind the last whole one, needs room to begin; 1e-9 forgives rounding.
+  return Math.max(0, Math.ceil(length / period - 0.25 - 1e-9));
+}
+
+/**
  * The ideal grating: in every period one inverted domain of width duty·period, in the middle of the period, so that
  * a duty error moves both of its walls and leaves the phase of the grating alone.
  * @param at start, length, period in m; duty = inverted width / period, inside 0…1 (default ½)
@@ -90,7 +100,7 @@ export function uniformGrating(
   if (!(duty > 0 && duty < 1)) {
     throw new RangeError(`Cannot lay out a grating of duty ${duty}: need 0 < duty < 1`);
   }
-  const count = invertedDomainsIn(at.length, at.period);
+  const count = laidDomainsIn(at.length, at.period);
   const end = at.start + at.length;
   const walls = new Float64Array(2 * count);
   for (let n = 0; n < count; n++) {

@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { Random } from "../../shared/random.ts";
-import { type Grating, invertedDomainsIn } from "./grating.ts";
+import { type Grating, laidDomainsIn } from "./grating.ts";
 
 /** Statistics of the domains around one place, as a poling inspection gives them. */
 export interface PolingWindow {
@@ -52,7 +52,7 @@ export function realiseGrating(of: Realisation, random: Random): Grating {
   const windows = of.windows ??
     [{ centre: start, duty: of.duty ?? 0.5, dutySd: of.dutySd ?? 0, missing: of.missing ?? 0 }];
   checkWindows(windows);
-  const count = invertedDomainsIn(length, period);
+  const count = laidDomainsIn(length, period);
   const end = start + length;
   const walls = new Float64Array(2 * count);
   const here = { duty: 0, dutySd: 0, missing: 0 };

@@ -1,6 +1,7 @@
 import { deepStrictEqual, strictEqual, throws } from "node:assert/strict";
 import fc from "fast-check";
 import { domainSignAt, domainSigns, uniformGrating, unpoledGaps } from "../../../models/poling/mod.ts";
+import { gratingSpectrumDirect } from "../../../models/poling/mod.ts";
 import { assertClose } from "../../assert_close.ts";
 
 Deno.test("uniformGrating() centres an inverted domain in every period", () => {
@@ -10,11 +11,22 @@ Deno.test("uniformGrating() centres an inverted domain in every period", () => {
   strictEqual(grating.end, 4);
 });
 
-Deno.test("uniformGrating() leaves a rest of less than 3/4 period unpoled and fills a larger one", () => {
-  strictEqual(uniformGrating({ start: 0, length: 3.7, period: 1 }).walls.length, 6);
-  strictEqual(uniformGrating({ start: 0, length: 3.8, period: 1 }).walls.length, 8);
+Deno.test("uniformGrating() cuts the last inverted domain at the section's end", () => {
+  strictEqual(uniformGrating({ start: 0, length: 3.2, period: 1 }).walls.length, 6);
+  strictEqual(uniformGrating({ start: 0, length: 3.3, period: 1 }).walls.length, 8);
+  strictEqual(uniformGrating({ start: 0, length: 3.3, period: 1 }).walls[7], 3.3);
   const cut = uniformGrating({ start: 0, length: 3.8, period: 1, duty: 0.9 });
   strictEqual(cut.walls[7], 3.8);
+});
+
+Deno.test("uniformGrating() is as strong as its section is long, whatever fraction of a period it ends with", () => {
+  for (let n = 0; n <= 20; n++) {
+    const length = 100 + n / 20;
+    const grating = uniformGrating({ start: 0, length, period: 1 });
+    const { re, im } = gratingSpectrumDirect(grating, { first: 2 * Math.PI, step: 1, count: 1 });
+    // 2/π of an ideal first order: the rest of a period leaves at most a tenth of one beside it.
+    assertClose(Math.hypot(re[0]!, im[0]!), 2 / Math.PI, { rel: 1.5e-3 }, `${length} periods`);
+  }
 });
 
 Deno.test("uniformGrating() has the number of periods that the mask has, whatever the rounding", () => {
