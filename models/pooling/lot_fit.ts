@@ -9,7 +9,7 @@ import {
   variancesAt,
 } from "./components.ts";
 import type { Design } from "./design.ts";
-import { fixedEffects } from "./fixed_effects.ts";
+import { type FixedEffects, fixedEffects } from "./fixed_effects.ts";
 import { type Forest, forestOf, type Leaf } from "./forest.ts";
 import { lattice } from "./_lattice.ts";
 import { LotStates } from "./lot_state.ts";
@@ -27,6 +27,7 @@ export type Asked = Pick<Leaf, "lot" | "wafer" | "die" | "guide" | "widthUm">;
 
 /** The model fitted to readings of all lots, and what it says about one lot. */
 export interface LotFit {
+  readonly mode: SpreadMode;
   readonly forest: Forest;
   /** The most probable variances, and the sums of the readings there. */
   readonly variances: Variances;
@@ -39,13 +40,8 @@ export interface LotFit {
   ask(asked: Asked): Mixture;
 }
 
-/** Density of the spreads and its maximum: all that a comparison of models needs. */
-export function spreadsOf(
-  leaves: readonly Leaf[],
-  design: Design,
-  prior: SpreadPrior,
-  start?: ArrayLike<number>,
-) {
+/** Density of the spreads for a design. Values are counted from their mean: what is common to all would cost digits. */
+export function spreadDensityOf(leaves: readonly Leaf[], design: Design, prior: SpreadPrior) {
   const reference = leaves.reduce((sum, l) => sum + l.value, 0) / leaves.length;
   const forest = forestOf(
     leaves,
@@ -56,56 +52,85 @@ export function spreadsOf(
     mean: design.prior.mean.map((m, i) => i === 0 ? m - reference : m),
     sd: design.prior.sd,
   };
-  const density = spreadDensity(forest, prior, effects);
-  const mode = spreadMode(density, prior, start);
-  return { forest, effects, density, mode, reference };
+  return { forest, effects, density: spreadDensity(forest, prior, effects), reference };
+}
+
+/** The same with its maximum. */
+export function spreadsOf(
+  leaves: readonly Leaf[],
+  design: Design,
+  prior: SpreadPrior,
+  start?: ArrayLike<number>,
+) {
+  const found = spreadDensityOf(leaves, design, prior);
+  return { ...found, mode: spreadMode(found.density, prior, start) };
 }
 
 /**
  * Fits the hierarchical model: trait = fixed effects + lot + wafer + die + guide effect, all normal, reading variances
  * known. Fixed effects are integrated in closed form, the standard deviations of the effects on a lattice: their
  * uncertainty is in every answer (A. Gelman et al., Bayesian Data Analysis, ch. 5; from memory).
+ *
+ * @param lots the lots that will be asked about; one without readings is any name that no reading has
+ * @returns the fit as seen from one of them
  */
-export function fitLot(
+export function fitLots(
   leaves: readonly Leaf[],
   design: Design,
   prior: SpreadPrior,
-  lot: string,
+  lots: readonly string[],
   start?: ArrayLike<number>,
-): LotFit & { readonly mode: SpreadMode } {
+): (lot: string) => LotFit {
   const { forest, effects, density, mode, reference } = spreadsOf(leaves, design, prior, start);
   const open = openLevels(prior);
-  const places = lattice(density, mode, mode.curvature.map((c) => curvatureAtLeast(c, prior)));
   const sweep = sweepFor(forest);
-  const answers = new LotStates(forest, lot);
-  const points = places.map(({ at, share }) => {
-    const variances = variancesAt(at, open);
-    answers.add(share, sweepInto(forest, variances, sweep), variances, fixedEffects(sweep, effects));
-    return { share, variances };
-  });
-  const { states } = answers;
-  const share = Float64Array.from(points, (p) => p.share);
+  const answers = new Map(lots.map((lot) => [lot, new LotStates(forest, lot)]));
+  const found: FixedEffects[] = [];
+  const points = lattice(density, mode, mode.curvature.map((c) => curvatureAtLeast(c, prior)))
+    .map(({ at, share }) => {
+      const variances = variancesAt(at, open);
+      const given = fixedEffects(sweepInto(forest, variances, sweep), effects);
+      for (const states of answers.values()) states.add(share, sweep, variances, given);
+      found.push(given);
+      return { share, variances };
+    });
   const variances = variancesAt(mode.at, open);
-  return {
+  const common = {
     mode,
     forest,
     variances,
     sweep: sweepInto(forest, variances, sweep),
     points,
-    effects: design.names.map((name, i) => {
-      const mixed = joined({
-        share,
-        mean: Float64Array.from(states, (s) => s.effects.estimate[i]!),
-        variance: Float64Array.from(states, (s) => s.effects.covariance[i * design.names.length + i]!),
-      });
-      return { name, value: mixed.value + (i === 0 ? reference : 0), u: mixed.u };
-    }),
-    ask(asked) {
-      const extra = design.newWidthVariance(asked.widthUm);
-      const { share, mean, variance } = answers.ask(asked, design.rowOf(asked));
-      return { share, mean: mean.map((m) => m + reference), variance: variance.map((v) => v + extra) };
-    },
+    effects: namedEffects(design, Float64Array.from(points, (p) => p.share), found, reference),
   };
+  return (lot) => {
+    const states = answers.get(lot);
+    if (states === undefined) {
+      throw new RangeError(`Cannot answer for lot ${lot}: fitted for ${lots.join(", ")}`);
+    }
+    return {
+      ...common,
+      ask(asked) {
+        const extra = design.newWidthVariance(asked.widthUm);
+        const { share, mean, variance } = states.ask(asked, design.rowOf(asked));
+        return { share, mean: mean.map((m) => m + reference), variance: variance.map((v) => v + extra) };
+      },
+    };
+  };
+}
+
+function namedEffects(
+  { names }: Design,
+  share: Float64Array,
+  found: readonly FixedEffects[],
+  reference: number,
+): LotFit["effects"] {
+  return names.map((name, i) => {
+    const mean = Float64Array.from(found, (f) => f.estimate[i]!);
+    const variance = Float64Array.from(found, (f) => f.covariance[i * names.length + i]!);
+    const { value, u } = joined({ share, mean, variance });
+    return { name, value: value + (i === 0 ? reference : 0), u };
+  });
 }
 
 /** Mean and standard deviation of a mixture. */

@@ -65,10 +65,6 @@ export class LotStates {
     }
   }
 
-  get states(): readonly State[] {
-    return this.#states;
-  }
-
   /** Adds a point: the sweep at these variances is used up here and may be filled anew afterwards. */
   add(share: number, sweep: Sweep, variances: Variances, effects: FixedEffects): void {
     const q = this.#forest.columns;

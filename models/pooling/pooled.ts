@@ -6,9 +6,9 @@ import type { Place } from "./design.ts";
 import { type Leaf, leavesOf, type Level, LEVELS, type LotObservation } from "./forest.ts";
 import { type InformationShares, informationShares } from "./information.ts";
 import { type Estimate, inherit, type Pool, type Spread, type Unit } from "./inherit.ts";
-import { type Asked, fitLot, joined, type LotFit } from "./lot_fit.ts";
+import { type Asked, fitLots, joined, type LotFit } from "./lot_fit.ts";
 import { PLATFORM_DEGREES, poolPriors } from "./pool_priors.ts";
-import { chooseTrend, STRONG_EVIDENCE, type TrendChoice } from "./trend.ts";
+import { STRONG_EVIDENCE, type TrendChoice, trendChooser } from "./trend.ts";
 import { type Truncated, truncated } from "./truncated.ts";
 
 export interface PooledEstimate extends Estimate {
@@ -47,8 +47,8 @@ export interface PoolOptions {
 export const CONTRADICTION_ALPHA = 0.01;
 
 /**
- * Estimates of one trait for every guide of a lot, from the readings of all lots: posterior of the hierarchical model of
- * {@link fitLot}. A guide, die or wafer that nobody read gets the wider uncertainty that its place in the nesting gives it.
+ * Estimates of one trait for every guide, lot by lot, from the readings of all lots: posterior of the hierarchical model of
+ * {@link fitLots}. A guide, die or wafer that nobody read gets the wider uncertainty that its place in the nesting gives it.
  *
  * A lot without readings keeps at least the platform's own uncertainty: other lots speak for the process, not for it.
  *
@@ -57,15 +57,15 @@ export const CONTRADICTION_ALPHA = 0.01;
  * place rules a trend out
  * @param spread prior standard deviations of the effects; all 0: nobody states them
  * @param fallback the platform's default; null when it has none
+ * @returns the pool of a lot; lots share the work
  */
-export function pooled(
+export function pools(
   observations: readonly LotObservation[],
   places: ReadonlyMap<string, Place>,
   spread: Spread,
   fallback: (Uncertain & { readonly from: string }) | null,
-  lot: string,
   options: PoolOptions = {},
-): HierarchicalPool {
+): (lot: string) => HierarchicalPool {
   check(observations);
   const { degrees = PLATFORM_DEGREES, trendFrom = STRONG_EVIDENCE, alpha = CONTRADICTION_ALPHA } = options;
   const scale = Math.max(
@@ -75,45 +75,89 @@ export function pooled(
   );
   const leaves = leavesOf(observations, scale);
   const priors = leaves.length === 0 ? null : poolPriors(leaves, spread, fallback, degrees);
-  if (priors === null) return withoutModel(observations, spread, fallback, lot, options);
-  const question = { leaves, ...priors, places, lot };
-  const trend = chooseTrend(question, priors.spread, trendFrom);
-  const fit = fitLot(leaves, trend.design, priors.spread, lot);
-  const priorPrecision = 1 / priors.mean.u ** 2;
+  if (priors === null) return (lot) => withoutModel(observations, spread, fallback, lot, options);
+  const trendOf = trendChooser({ leaves, ...priors, places }, priors.spread, trendFrom);
+  const lots = new Set(leaves.map((l) => l.lot));
+  const fits = new Map<string, (lot: string) => LotFit>();
+  const fitOf = (lot: string, { taken, design }: TrendChoice): LotFit => {
+    // Lots that nobody read are all alike.
+    const asked = lots.has(lot) ? lot : UNREAD;
+    const key = taken?.lots === "own" ? lot : "";
+    let fit = fits.get(key);
+    if (fit === undefined) {
+      fit = fitLots(leaves, design, priors.spread, key === "" ? [...lots, UNREAD] : [lot]);
+      fits.set(key, fit);
+    }
+    return fit(asked);
+  };
+  const make = (lot: string): HierarchicalPool => {
+    const trend = trendOf(lot);
+    const fit = fitOf(lot, trend);
+    const refit = (without: ReadonlySet<number>): LotFit | null => {
+      const rest = leavesOf(observations, scale, without);
+      if (rest.length === 0) return null;
+      return fitLots(rest, trend.design, priors.spread, [lot], fit.mode.at)(lot);
+    };
+    let named: readonly Contradiction[] | null = null;
+    return {
+      estimate: estimator(fit, leaves, observations, lot, fallback, 1 / priors.mean.u ** 2, options),
+      spreads: spreadsOf(fit),
+      effects: fit.effects,
+      trend: { taken: trend.taken, trials: trend.trials },
+      contradictions: () => named ??= contradictions(observations, lot, fit, refit, alpha),
+    };
+  };
+  const made = new Map<string, HierarchicalPool>();
+  return (lot) => {
+    const held = made.get(lot) ?? make(lot);
+    made.set(lot, held);
+    return held;
+  };
+}
+
+/** A name that no lot has. */
+const UNREAD = "";
+
+/** {@link pools} for one lot. */
+export const pooled = (
+  observations: readonly LotObservation[],
+  places: ReadonlyMap<string, Place>,
+  spread: Spread,
+  fallback: (Uncertain & { readonly from: string }) | null,
+  lot: string,
+  options: PoolOptions = {},
+): HierarchicalPool => pools(observations, places, spread, fallback, options)(lot);
+
+function estimator(
+  fit: LotFit,
+  leaves: readonly Leaf[],
+  observations: readonly LotObservation[],
+  lot: string,
+  fallback: (Uncertain & { readonly from: string }) | null,
+  priorPrecision: number,
+  { bounds }: PoolOptions,
+): HierarchicalPool["estimate"] {
   const evidence = evidenceOf(leaves, observations, lot);
   const unread = !leaves.some((l) => l.lot === lot);
   const cache = new Map<string, PooledEstimate>();
-  let named: readonly Contradiction[] | null = null;
-  const make = (asked: Asked & { readonly die: string; readonly guide: string }): PooledEstimate => {
+  return ({ wafer, die, guide, widthUm }) => {
+    // Guides of one die and width that nobody read are all alike.
+    const key = evidence.isRead(guide) ? guide : `${die}|${widthUm}`;
+    const held = cache.get(key);
+    if (held !== undefined) return held;
+    const asked = { lot, wafer, die, guide, ...(widthUm === undefined ? {} : { widthUm }) };
     const { value, u } = joined(fit.ask(asked));
     const wide = unread ? Math.max(u, fallback?.u ?? 0) : u;
     const { sweep, variances, forest } = fit;
-    return {
+    const made = {
       value,
       u: wide,
       ...evidence(asked, fallback?.from ?? "other lots"),
       shares: informationShares(forest, sweep, variances, priorPrecision, asked),
-      bounded: options.bounds === undefined ? null : truncated({ value, u: wide }, options.bounds),
+      bounded: bounds === undefined ? null : truncated({ value, u: wide }, bounds),
     };
-  };
-  return {
-    estimate({ wafer, die, guide, widthUm }) {
-      const asked = { lot, wafer, die, guide, ...(widthUm === undefined ? {} : { widthUm }) };
-      const key = evidence.isRead(guide) ? guide : `${die}|${widthUm}`;
-      const held = cache.get(key);
-      if (held !== undefined) return held;
-      const made = make(asked);
-      cache.set(key, made);
-      return made;
-    },
-    spreads: spreadsOf(fit),
-    effects: fit.effects,
-    trend: { taken: trend.taken, trials: trend.trials },
-    contradictions: () =>
-      named ??= contradictions(observations, lot, fit, (without) => {
-        const rest = leavesOf(observations, scale, without);
-        return rest.length === 0 ? null : fitLot(rest, trend.design, priors.spread, lot, fit.mode.at);
-      }, alpha),
+    cache.set(key, made);
+    return made;
   };
 }
 

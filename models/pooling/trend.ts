@@ -1,12 +1,12 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import type { SpreadPrior } from "./components.ts";
+import { spreadMode, type SpreadPrior } from "./components.ts";
 import { type Design, designOf, type DesignQuestion, type TrendShape } from "./design.ts";
-import { spreadsOf } from "./lot_fit.ts";
+import { spreadDensityOf, spreadsOf } from "./lot_fit.ts";
 
 /** A trend that was tried, and how much more probable it makes the readings than no trend. */
 export interface TrendTrial {
   readonly shape: TrendShape;
-  /** ln of the Bayes factor against no trend. */
+  /** ln of the Bayes factor against no trend; for a hopeless one only at the spreads without a trend. */
   readonly logFactor: number;
 }
 
@@ -30,38 +30,47 @@ const SHAPES = [
   { radial: true, linear: true },
 ];
 
+/** Trends this unlikely (ln) at the spreads without a trend are not followed up: other spreads bring no such gain. */
+const HOPELESS = -4;
+
 /**
  * Chooses the trend over the wafer by the evidence, slopes and spreads integrated (spreads by Laplace's method). Slopes have
- * the prior of the question, centred on 0: few dies then say neither yes nor no, and no trend is taken.
+ * the prior of the question, centred on 0: few dies then say neither yes nor no, and no trend is taken. Trends that all
+ * lots share are tried once, those of a single lot when that lot is asked for.
  */
-export function chooseTrend(
-  question: Omit<DesignQuestion, "trend">,
+export function trendChooser(
+  question: Omit<DesignQuestion, "trend" | "lot">,
   prior: SpreadPrior,
   need: number = STRONG_EVIDENCE,
-): TrendChoice {
-  const none = designOf({ ...question, trend: null });
-  const { leaves, places, lot } = question;
+): (lot: string) => TrendChoice {
+  const { leaves, places } = question;
+  const none = designOf({ ...question, trend: null, lot: "" });
   const dies = new Set(leaves.map((l) => l.die).filter((d) => d !== undefined));
-  if (dies.size < 3 || [...dies].some((d) => !places.has(d))) {
-    return { taken: null, trials: [], design: none };
+  if (need === Infinity || dies.size < 3 || [...dies].some((d) => !places.has(d))) {
+    return () => ({ taken: null, trials: [], design: none });
   }
   const without = spreadsOf(leaves, none, prior).mode;
+  const attempt = (shape: TrendShape, lot: string) => {
+    const design = designOf({ ...question, trend: shape, lot });
+    const { density } = spreadDensityOf(leaves, design, prior);
+    const atOnce = density(without.at) - without.value;
+    const logFactor = atOnce < HOPELESS
+      ? atOnce
+      : spreadMode(density, prior, without.at).logEvidence - without.logEvidence;
+    return { shape, logFactor, design };
+  };
+  const common = SHAPES.map((s) => attempt({ ...s, lots: "all" }, ""));
   const lots = new Set(leaves.map((l) => l.lot));
-  // A trend of one lot needs dies of that lot; with a single lot it is the same as a common one.
-  const reach: ("all" | "own")[] = lots.size > 1 && lots.has(lot) ? ["all", "own"] : ["all"];
-  const tried = reach.flatMap((of) =>
-    SHAPES.map((s) => {
-      const shape: TrendShape = { ...s, lots: of };
-      const design = designOf({ ...question, trend: shape });
-      const { logEvidence } = spreadsOf(leaves, design, prior, without.at).mode;
-      return { shape, logFactor: logEvidence - without.logEvidence, design };
-    })
-  );
-  const best = tried.reduce((a, b) => b.logFactor > a.logFactor ? b : a);
-  const taken = best.logFactor >= Math.log(need);
-  return {
-    taken: taken ? best.shape : null,
-    trials: tried.map(({ shape, logFactor }) => ({ shape, logFactor })),
-    design: taken ? best.design : none,
+  return (lot) => {
+    // A trend of one lot needs readings of that lot; with a single lot it is the same as a common one.
+    const own = lots.size > 1 && lots.has(lot) ? SHAPES.map((s) => attempt({ ...s, lots: "own" }, lot)) : [];
+    const tried = [...common, ...own];
+    const best = tried.reduce((a, b) => b.logFactor > a.logFactor ? b : a);
+    const taken = best.logFactor >= Math.log(need);
+    return {
+      taken: taken ? best.shape : null,
+      trials: tried.map(({ shape, logFactor }) => ({ shape, logFactor })),
+      design: taken ? best.design : none,
+    };
   };
 }

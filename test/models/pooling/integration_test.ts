@@ -3,7 +3,7 @@ import { spreadDensity, variancesAt } from "../../../models/pooling/components.t
 import { designOf } from "../../../models/pooling/design.ts";
 import { fixedEffects } from "../../../models/pooling/fixed_effects.ts";
 import { leavesOf } from "../../../models/pooling/forest.ts";
-import { fitLot, joined, spreadsOf } from "../../../models/pooling/lot_fit.ts";
+import { fitLots, joined, spreadDensityOf } from "../../../models/pooling/lot_fit.ts";
 import { LotStates } from "../../../models/pooling/lot_state.ts";
 import { sweepFor, sweepInto } from "../../../models/pooling/sweep.ts";
 import { randomFrom } from "../../../shared/random.ts";
@@ -29,14 +29,14 @@ function byGrid(spread: Parameters<typeof spreadPrior>[0], open: number[], guide
     lot: "L0",
   };
   const design = designOf(question);
-  const fit = fitLot(leaves, design, prior, "L0");
+  const fit = fitLots(leaves, design, prior, ["L0"])("L0");
   const asked = [
     { lot: "L0", wafer: "L0-0", die: "L0-0/0", guide: "L0-0/0/g0" },
     { lot: "L0", wafer: "L0-0", die: "L0-0/0", guide: "L0-0/0/g3" },
     { lot: "L0", wafer: "L0-0", die: "L0-0/3", guide: "L0-0/3/g0" },
     { lot: "L0", wafer: "L0-9", die: "L0-9/3", guide: "L0-9/3/g0" },
   ];
-  const { forest, effects, reference } = spreadsOf(leaves, design, prior);
+  const { forest, effects, reference } = spreadDensityOf(leaves, design, prior);
   const density = spreadDensity(forest, prior, effects);
   const states = new LotStates(forest, "L0");
   const sweep = sweepFor(forest);

@@ -1,6 +1,6 @@
 import assert from "node:assert/strict";
 import fc from "fast-check";
-import { type LotObservation, type Place, pooled } from "../../../models/pooling/mod.ts";
+import { type LotObservation, type Place, pooled, pools } from "../../../models/pooling/mod.ts";
 import { randomFrom } from "../../../shared/random.ts";
 import { assertClose } from "../../assert_close.ts";
 import { simulateLots } from "./simulated_lots.ts";
@@ -188,6 +188,22 @@ Deno.test("pooled() does not depend on the order of the readings, nor on their u
     pooled(observations, places, SPREAD, DEFAULT, "L0").estimate(asked[0]!),
     plain.estimate(asked[0]!),
   );
+});
+
+Deno.test("pools() gives every lot what pooled() gives it alone", () => {
+  const { observations, places, guides } = simulateLots(
+    { lots: 3, wafers: 2, wafersRead: 2, dies: 4, diesRead: 3, guides: 3, guidesRead: 2, u: [0.005, 0.02] },
+    { mean: 0.5, spread: SPREAD },
+    randomFrom("shared"),
+  );
+  const read = observations.filter((o) => o.lot !== "L2");
+  const poolOf = pools(read, places, SPREAD, DEFAULT);
+  for (const lot of ["L2", "L0", "L1"]) {
+    const alone = pooled(read, places, SPREAD, DEFAULT, lot);
+    for (const g of guides.filter((g) => g.lot === lot)) {
+      assert.deepEqual(poolOf(lot).estimate(g), alone.estimate(g));
+    }
+  }
 });
 
 Deno.test("pooled() shares sum to 1 and none is negative, whatever was read", () => {
