@@ -3,7 +3,19 @@ import { fileURLToPath } from "node:url";
 import { parse } from "csv-parse/sync";
 import type { z } from "zod";
 import { type PlatformModel, platformModel } from "../models/decision/mod.ts";
-import { bulkIndexModel, constantAreaModel, tableAreaModel, tableIndexModel } from "../models/guides/mod.ts";
+import {
+  type AreaModel,
+  bulkIndexModel,
+  checkTableBounds,
+  constantAreaModel,
+  designsAreaModel,
+  designsIndexModel,
+  type IndexModel,
+  type SolvedDesigns,
+  SOLVER_VERSION,
+  tableAreaModel,
+  tableIndexModel,
+} from "../models/guides/mod.ts";
 import { areaRowSchema, indexRowSchema, type Platform, platformSchema } from "../shared/schemas/platform.ts";
 import { InputError } from "../shared/errors.ts";
 import { fingerprintOf, issueLines, parseJson, readTextFile, sha256 } from "./json_file.ts";
@@ -69,6 +81,7 @@ export async function loadPlatform(id: string, folder?: string): Promise<LoadedP
     const index = await readTable(join(dirname(file), basename(platform.index.n_eff)), indexRowSchema);
     indexRows = index.rows;
     hashes.push(index.sha256);
+    checkBounds(platform, index.rows, file);
     if (platform.index.effective_area !== undefined) {
       const area = await readTable(
         join(dirname(file), basename(platform.index.effective_area)),
@@ -78,7 +91,16 @@ export async function loadPlatform(id: string, folder?: string): Promise<LoadedP
       hashes.push(area.sha256);
     }
   }
-  if (platform.effective_area_um2 === undefined && areaRows === null) {
+  if (platform.index.from === "solver") {
+    hashes.push(sha256(`solver ${SOLVER_VERSION}`)); // what the file makes of it is part of what it says
+    if (platform.effective_area_um2 !== undefined) {
+      throw new InputError(
+        `Cannot use platform ${file}: effective_area_um2 ${platform.effective_area_um2} beside index.from "solver", ` +
+          `which solves the areas; leave one out`,
+        { file, column: "effective_area_um2" },
+      );
+    }
+  } else if (platform.effective_area_um2 === undefined && areaRows === null) {
     throw new InputError(
       `Cannot use platform ${file}: no effective area; give effective_area_um2 or index.effective_area`,
       { file, column: "effective_area_um2" },
@@ -87,23 +109,60 @@ export async function loadPlatform(id: string, folder?: string): Promise<LoadedP
   return { platform, indexRows, areaRows, file, fingerprint: fingerprintOf(hashes) };
 }
 
+/** A table that states what its guides stand on is held against it before anything is computed with it. */
+function checkBounds(
+  { index, material, axes }: Pick<Platform, "index" | "material" | "axes">,
+  rows: readonly IndexRow[],
+  file: string,
+): void {
+  if (index.from !== "table" || index.substrate === undefined) return;
+  try {
+    checkTableBounds(rows, material, axes, index.substrate);
+  } catch (cause) {
+    if (!(cause instanceof RangeError)) throw cause;
+    throw new InputError(`Cannot use platform ${file}: ${cause.message}`, { file, column: "n_eff" }, {
+      cause,
+    });
+  }
+}
+
 /** What a model is built from: plain data, so that it can be handed to a worker. */
-export type PlatformData = Pick<LoadedPlatform, "platform" | "indexRows" | "areaRows" | "file">;
+export type PlatformData =
+  & Pick<LoadedPlatform, "platform" | "indexRows" | "areaRows" | "file">
+  & {
+    /** Solved designs, for a platform whose index is solved. */
+    readonly designs?: SolvedDesigns | null;
+  };
 
 /** Builds the models of a platform. @throws InputError when its tables or axes can't make one */
-export function buildModel({ platform, indexRows, areaRows, file }: PlatformData): PlatformModel {
-  const { index, material, axes } = platform;
+export function buildModel(data: PlatformData): PlatformModel {
+  const { platform, file } = data;
   try {
-    const indexModel = index.from === "bulk"
-      ? bulkIndexModel(material, axes)
-      : tableIndexModel(indexRows!, material, axes, index.nominal);
-    const area = platform.effective_area_um2 !== undefined
-      ? constantAreaModel(platform.effective_area_um2)
-      : tableAreaModel(areaRows!, index.from === "table" ? index.nominal : undefined);
-    return platformModel(platform, indexModel, area);
+    const { index, area } = guideModels(data);
+    return platformModel(platform, index, area);
   } catch (cause) {
     if (!(cause instanceof RangeError)) throw cause;
     throw new InputError(`Cannot use platform ${file}: ${cause.message}`, { file }, { cause });
+  }
+}
+
+function guideModels(
+  { platform, indexRows, areaRows, designs }: PlatformData,
+): { index: IndexModel; area: AreaModel } {
+  const { index, material, axes } = platform;
+  const constant = platform.effective_area_um2;
+  switch (index.from) {
+    case "bulk":
+      return { index: bulkIndexModel(material, axes), area: constantAreaModel(constant!) };
+    case "table":
+      return {
+        index: tableIndexModel(indexRows!, material, axes, index.nominal),
+        area: constant !== undefined ? constantAreaModel(constant) : tableAreaModel(areaRows!, index.nominal),
+      };
+    case "solver": {
+      const solved = designs ?? { tables: [], areas: [], outputs: [] };
+      return { index: designsIndexModel(solved), area: designsAreaModel(solved) };
+    }
   }
 }
 

@@ -104,7 +104,7 @@ export function pairSource(
     ...(idler?.filter === undefined ? {} : { idler: filterOf(idler.filter, checked.waves.lambdaI) }),
   };
   const limits = (pol: Polarisation) => {
-    const [shortest, longest] = site.model.index.range(pol).lambda;
+    const [shortest, longest] = site.model.index.range(pol, site.guide.geometry).lambda;
     return [omegaOf(longest), omegaOf(shortest)] as const;
   };
   return {

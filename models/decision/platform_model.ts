@@ -2,7 +2,7 @@
 import { type AreaModel, type IndexModel, processName, propagationAxis } from "../guides/mod.ts";
 import { expansionFactor, type Material, millerScaled } from "../materials/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
-import type { GuideGeometry, ThreeWaves } from "../../shared/vocabulary.ts";
+import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import { nm } from "../../shared/units.ts";
 
 /** What a platform says of any guide: index, area, nonlinearity, expansion. */
@@ -62,6 +62,9 @@ export function platformModel(platform: Platform, index: IndexModel, area: AreaM
   };
 }
 
+const cutOffReason = (pol: Polarisation, lambda: number, why: string): string =>
+  `${pol} mode at ${Number((lambda * 1e9).toFixed(1))} nm is cut off: ${why}`;
+
 /**
  * Temperatures at which every index of a process is known: the common part of the three ranges.
  * @returns null when a wavelength lies outside, with the reason
@@ -82,12 +85,18 @@ export function validTemperatures(
   ) {
     let range: ReturnType<IndexModel["range"]>;
     try {
-      range = model.index.range(pol);
+      range = model.index.range(pol, geometry);
     } catch (error) {
-      if (error instanceof RangeError) return { reason: error.message }; // a table without this polarisation
+      if (error instanceof RangeError) {
+        // No mode at all, or a table without this polarisation.
+        const none = model.index.cutOff?.(pol, geometry) ?? null;
+        return { reason: none === null ? error.message : cutOffReason(pol, lambda, none) };
+      }
       throw error;
     }
     if (lambda < range.lambda[0] || lambda > range.lambda[1]) {
+      const ends = lambda > range.lambda[1] ? model.index.cutOff?.(pol, geometry) ?? null : null;
+      if (ends !== null) return { reason: cutOffReason(pol, lambda, ends) };
       const [a, b] = range.lambda.map((x) => Math.round(x * 1e9));
       return {
         reason: `${wave} wavelength ${

@@ -210,11 +210,11 @@ function predictSite(
   }
 }
 
-function indexRemarks(model: PlatformModel, { waves, temperatureC }: Site): string[] {
+function indexRemarks(model: PlatformModel, { guide: { geometry }, waves, temperatureC }: Site): string[] {
   const found = [
-    model.index.remark(waves.polP, waves.lambdaP, temperatureC),
-    model.index.remark(waves.polS, waves.lambdaS, temperatureC),
-    model.index.remark(waves.polI, waves.lambdaI, temperatureC),
+    model.index.remark(waves.polP, waves.lambdaP, temperatureC, geometry),
+    model.index.remark(waves.polS, waves.lambdaS, temperatureC, geometry),
+    model.index.remark(waves.polI, waves.lambdaI, temperatureC, geometry),
   ];
   return [...new Set(found.filter((r) => r !== null))];
 }

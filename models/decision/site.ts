@@ -56,7 +56,7 @@ export function siteAt(
   const [p, s, i] = [slice(waves.polP), slice(waves.polS), slice(waves.polI)];
   let effectiveArea: number;
   try {
-    effectiveArea = model.area.effectiveArea(processKey, guide.geometry);
+    effectiveArea = model.area.effectiveArea(processKey, guide.geometry, waves);
   } catch (error) {
     if (error instanceof RangeError) return { reason: error.message };
     throw error;

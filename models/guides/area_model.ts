@@ -1,5 +1,5 @@
 // Pure: no I/O, no clock, no hidden randomness.
-import type { GuideGeometry, Polarisation } from "../../shared/vocabulary.ts";
+import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import type { NominalGeometry } from "./index_model.ts";
 import { geometryColumns, geometryCorners, gridOf } from "./_grid.ts";
 
@@ -7,9 +7,10 @@ import { geometryColumns, geometryCorners, gridOf } from "./_grid.ts";
 export interface AreaModel {
   /**
    * A_eff in m² of a process written pump>signal+idler (`TE>TE+TM`; the order of signal and idler is free).
+   * `waves`: where it is needed, for models that know areas at several wavelengths.
    * @throws RangeError for a process without an area, or a geometry beyond the table
    */
-  effectiveArea(process: string, geometry: GuideGeometry): number;
+  effectiveArea(process: string, geometry: GuideGeometry, waves?: ThreeWaves): number;
 }
 
 /** Name of a process with signal and idler in alphabetic order: both orders share one value. */

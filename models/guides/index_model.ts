@@ -54,9 +54,15 @@ export interface IndexModel {
     geometry: GuideGeometry,
     parameter: GeometryParameter,
   ): number;
-  range(pol: Polarisation): IndexRange;
-  /** A sentence where the bulk index under the answer is beyond its published range, else null. */
-  remark(pol: Polarisation, lambda: number, temperatureC: number): string | null;
+  /** Limits for a guide of this geometry; without one, those that hold for any. */
+  range(pol: Polarisation, geometry?: GuideGeometry): IndexRange;
+  /**
+   * A sentence where the bulk index under the answer is beyond its published range, or a guide of this geometry carries
+   * more than one mode; else null.
+   */
+  remark(pol: Polarisation, lambda: number, temperatureC: number, geometry?: GuideGeometry): string | null;
+  /** Why a guide of this geometry carries no mode beyond the range's wavelengths, or none at all; null if it does. */
+  cutOff?(pol: Polarisation, geometry?: GuideGeometry): string | null;
 }
 
 /**

@@ -21,5 +21,6 @@ export {
   type PolarisationAxes,
 } from "./index_model.ts";
 export { propagationAxis } from "./propagation_axis.ts";
+export { checkTableBounds, type TableSubstrate } from "./table_bounds.ts";
 export { type IndexTableRow, tableIndexModel } from "./table_index.ts";
 export * from "./solver/mod.ts";

@@ -6,9 +6,9 @@ import { ingestFolder } from "../ingest/mod.ts";
 import { openLedger } from "../ledger/mod.ts";
 import { loadPlatform } from "../platforms.ts";
 import { loadRequests, requestFolders } from "../requests.ts";
-import { note, print } from "./common.ts";
+import { note, print, threadsOf } from "./common.ts";
 import { DemoChecks } from "./demo_checks.ts";
-import { bringUpToDate } from "./predictions.ts";
+import { bringUpToDate, solvingProgress } from "./predictions.ts";
 import { rankCommand } from "./rank.ts";
 
 /** Which request shows which lot of the demo. */
@@ -26,10 +26,17 @@ export async function demoCommand(
   const runs = join(options.out, "runs");
   const ledgerDir = join(options.out, "ledger");
   print("An invented wafer facility, three lots. Nothing here was measured.\n");
-  const lots = await writeDemo(runs);
+  const lots = [];
   const rows = [];
   {
     await using ledger = await openLedger(ledgerDir, { write: true });
+    lots.push(
+      ...await writeDemo(runs, {
+        ledger,
+        workers: threadsOf(options),
+        onSolving: solvingProgress("the demo"),
+      }),
+    );
     for (const { lot, platform, folder } of lots) {
       const result = await ingestFolder(folder, ledger, {
         checkLot: async (l) => void await loadPlatform(l.platform),

@@ -14,10 +14,13 @@ export function activeFilesOf(runs: readonly Manifest[], lot?: string): ActiveFi
   return [...newest.entries()].sort(([a], [b]) => a < b ? -1 : 1).map(([, file]) => file);
 }
 
-/** Runs in force of one kind, oldest first: every ingest run (its files decide), else the newest per lot and request. */
+/**
+ * Runs in force of one kind, oldest first: every ingest run (its files decide), every run of solved designs (no lot owns
+ * them), else the newest per lot and request.
+ */
 export function runsInForceOf(runs: readonly Manifest[], kind: string): Manifest[] {
   const ofKind = runs.filter((run) => run.kind === kind);
-  if (kind === "ingest") return ofKind;
+  if (kind === "ingest" || kind === "design") return ofKind;
   const newest = new Map(ofKind.map((run) => [JSON.stringify([run.lot ?? null, requestOf(run)]), run]));
   return [...newest.values()].sort((a, b) => a.sequence - b.sequence);
 }

@@ -26,6 +26,50 @@ const spread = z.strictObject({
 
 const axis = z.enum(["x", "y", "z", "o", "e"]);
 
+const rising = z.tuple([z.number(), z.number()]).refine(([low, high]) => low < high, "need [low, high]");
+
+/** What every profile needs whose modes are solved. */
+const solved = {
+  from: z.literal("solver"),
+  /** Index above the surface. */
+  cover: z.number().min(1).default(1),
+  /** `semi-vectorial`: E across the surface solved with its jump and the crystal's anisotropy. */
+  field: z.enum(["scalar", "semi-vectorial"]),
+  /** Vacuum wavelengths and temperatures that the tables of modes cover. */
+  wavelength_nm: rising.refine(([low]) => low > 0, "need wavelengths above 0"),
+  temperature_c: rising,
+  provenance: z.string().min(1).optional(),
+};
+
+/** Titanium diffused into the crystal: lengths as measured, or estimated from time and temperature. */
+const titaniumDiffused = z.strictObject({
+  ...solved,
+  profile: z.literal("titanium-diffused"),
+  diffusion_lateral_um: z.number().positive().optional(),
+  diffusion_depth_um: z.number().positive().optional(),
+  diffusion: z.strictObject({ hours: z.number().positive(), temperature_c: z.number() }).optional(),
+  /** Geometry of a guide that does not state its own. */
+  nominal: z.strictObject({ titanium_nm: z.number().positive() }),
+  /** How far from a drawn width and the nominal strip the tables go. */
+  span: z.strictObject({ width_um: z.number().positive(), titanium_nm: z.number().positive() }),
+}).refine(
+  (p) =>
+    (p.diffusion === undefined)
+      ? p.diffusion_lateral_um !== undefined && p.diffusion_depth_um !== undefined
+      : p.diffusion_lateral_um === undefined && p.diffusion_depth_um === undefined,
+  "need diffusion_lateral_um and diffusion_depth_um, or diffusion in their place",
+);
+
+/** Rubidium exchanged into KTP: a box sideways, a complementary error function in depth. */
+const rubidiumExchanged = z.strictObject({
+  ...solved,
+  profile: z.literal("rubidium-exchanged"),
+  exchange_depth_um: z.number().positive(),
+  /** Index step at the surface, at all wavelengths. */
+  index_step: z.strictObject({ TE: z.number().positive(), TM: z.number().positive() }),
+  span: z.strictObject({ width_um: z.number().positive() }),
+});
+
 /** Traits that a platform may give a default (and prior spreads) for. */
 export const DEFAULT_TRAITS = [
   "loss_db_cm",
@@ -60,6 +104,8 @@ export const platformSchema = z.strictObject({
       from: z.literal("table"),
       n_eff: z.string().min(1),
       effective_area: z.string().min(1).optional(),
+      /** What the guides stand on (`crystal`: they are diffused into it); with it n_eff is checked to lie above it. */
+      substrate: z.union([z.enum(["silica", "crystal"]), z.number().min(1)]).optional(),
       /** Geometry of a guide that does not state its own. */
       nominal: z.strictObject({
         film_thickness_nm: z.number().positive().optional(),
@@ -68,6 +114,7 @@ export const platformSchema = z.strictObject({
       }).optional(),
       provenance: z.string().min(1).optional(),
     }),
+    z.discriminatedUnion("profile", [titaniumDiffused, rubidiumExchanged]),
   ]),
   effective_area_um2: z.number().positive().optional(),
   outside_index: z.number().min(1).optional(),
@@ -106,6 +153,7 @@ export const platformSchema = z.strictObject({
   }).catchall(z.unknown()).default({}),
 });
 export type Platform = z.infer<typeof platformSchema>;
+export type SolverIndex = Extract<Platform["index"], { from: "solver" }>;
 
 /** A row of `<id>.n_eff.csv`. */
 export const indexRowSchema = z.strictObject({

@@ -2,8 +2,10 @@ import { deepEqual, equal, match, notEqual, ok, rejects, throws } from "node:ass
 import { join } from "node:path";
 import { buildModel, loadPlatform, platformIds } from "../../pipeline/platforms.ts";
 import { InputError } from "../../shared/errors.ts";
+import { designsFor } from "../../pipeline/designs/mod.ts";
 import { withFolder } from "./ledger/a_ledger.ts";
 
+const COARSE = { cells: { x: 16, y: 16 }, wavelengthNodes: 4 };
 const BUILT_IN = ["bulk-ktp", "bulk-ln", "rb-ktp-zcut", "tfln-xcut", "ti-ln-zcut"];
 const KTP = {
   platform: "mine",
@@ -26,7 +28,8 @@ Deno.test("every built-in platform loads and makes a model", async () => {
   deepEqual(await platformIds(), BUILT_IN);
   for (const id of BUILT_IN) {
     const loaded = await loadPlatform(id);
-    const model = buildModel(loaded);
+    const { designs } = await designsFor(null, loaded, [4], [], { grid: COARSE });
+    const model = buildModel({ ...loaded, designs });
     equal(model.id, id);
     equal(model.expansion(25), 1);
     match(loaded.fingerprint, /^[0-9a-f]{64}$/);

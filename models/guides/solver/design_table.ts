@@ -98,28 +98,39 @@ export function geometryGrid(design: SolverDesign): DesignGeometry[] {
  * @throws RangeError for impossible parameters, or wavelengths and temperatures without bulk index
  */
 export function solveDesign(design: SolverDesign, grid: TableGrid = TABLE_GRID): DesignTable {
-  const temperatureC = (design.temperatureC[0] + design.temperatureC[1]) / 2;
-  const memory: Memory = {};
+  return designTable(design, grid, {
+    TE: solvePolarisation(design, "TE", grid),
+    TM: solvePolarisation(design, "TM", grid),
+  });
+}
+
+/** The table of a design from its two polarisations, which may have been solved apart. */
+export function designTable(
+  design: SolverDesign,
+  grid: TableGrid,
+  polarisations: DesignTable["polarisations"],
+): DesignTable {
   return {
     version: SOLVER_VERSION,
     design,
     grid,
-    temperatureC,
+    temperatureC: solvedAt(design),
     geometry: geometryNodes(design),
-    polarisations: {
-      TE: solvePolarisation(design, "TE", temperatureC, grid, memory),
-      TM: solvePolarisation(design, "TM", temperatureC, grid, memory),
-    },
+    polarisations,
   };
 }
 
-function solvePolarisation(
+/** Temperature of the solved modes, °C. */
+const solvedAt = ({ temperatureC: [low, high] }: SolverDesign): number => (low + high) / 2;
+
+/** Solves all nodes of one polarisation of a design. Result and errors as {@link solveDesign}. */
+export function solvePolarisation(
   design: SolverDesign,
   pol: Polarisation,
-  T: number,
-  grid: TableGrid,
-  memory: Memory,
-): PolarisationTable | { reason: string } {
+  grid: TableGrid = TABLE_GRID,
+): PolarisationTable | { readonly reason: string } {
+  const T = solvedAt(design);
+  const memory: Memory = {};
   const geometries = geometryGrid(design);
   const [shortest, longest] = design.lambda;
   const modeAt = (lambda: number, geometry: DesignGeometry) =>

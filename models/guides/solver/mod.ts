@@ -20,12 +20,21 @@ export { type DesignOutput, solveOutput } from "./design_output.ts";
 export {
   designKey,
   type DesignTable,
+  designTable,
   type PolarisationTable,
   solveDesign,
+  solvePolarisation,
   SOLVER_VERSION,
   TABLE_GRID,
   type TableGrid,
 } from "./design_table.ts";
+export {
+  designsAreaModel,
+  designsIndexModel,
+  type SolvedDesigns,
+  type SolvedOutput,
+  solvedOutputAt,
+} from "./designs_model.ts";
 export { type FibreCoupling, fibreCoupling } from "./fibre_coupling.ts";
 export type { GridCells, Parity } from "./guide_grid.ts";
 export type { ModeField } from "./mode_field.ts";

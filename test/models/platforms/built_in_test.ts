@@ -3,24 +3,20 @@ import { parse } from "csv-parse/sync";
 import {
   bulkIndexModel,
   constantAreaModel,
+  designMode,
+  designsAreaModel,
+  designsIndexModel,
   mismatch,
   propagationAxis,
+  solveAreas,
+  solveDesign,
+  solveOutput,
   tableAreaModel,
   tableIndexModel,
 } from "../../../models/guides/mod.ts";
-import {
-  depthModeContrast,
-  effectiveIndex,
-  type GradedGuide,
-} from "../../../models/guides/effective_index.ts";
 import { ridgeMode, silicaIndex } from "../../../models/guides/ridge.ts";
-import { exchangedIndex } from "../../../models/guides/rubidium_profile.ts";
-import {
-  surfaceConcentration,
-  titaniumStepExtraordinary,
-  titaniumStepOrdinary,
-} from "../../../models/guides/titanium_profile.ts";
 import { expansionFactor, millerScaled, refractiveIndex } from "../../../models/materials/mod.ts";
+import { platformDesign } from "../../../models/decision/mod.ts";
 import { areaRowSchema, indexRowSchema, platformSchema } from "../../../shared/schemas/platform.ts";
 import type { GuideGeometry, Polarisation } from "../../../shared/vocabulary.ts";
 
@@ -36,6 +32,11 @@ function rowsOf<T>(name: string, schema: { parse(row: unknown): T }): T[] {
   return rows.map((row) => schema.parse(row));
 }
 
+/** Drawn widths of the solved designs, µm; a coarse grid that holds n_eff to some 1e-6. */
+const WIDTHS: Readonly<Record<string, number>> = { "ti-ln-zcut": 7, "rb-ktp-zcut": 3 };
+const GRID = { cells: { x: 32, y: 48 }, wavelengthNodes: 14 };
+const DOUBLING = { lambdaP: 775e-9, lambdaS: 1550e-9, lambdaI: 1550e-9 };
+
 function load(id: string) {
   const platform = platformSchema.parse(JSON.parse(read(`${id}.json`)));
   const { index, material, axes } = platform;
@@ -45,6 +46,18 @@ function load(id: string) {
       index: bulkIndexModel(material, axes),
       area: constantAreaModel(platform.effective_area_um2!),
     };
+  }
+  if (index.from === "solver") {
+    const design = platformDesign(platform, index, WIDTHS[id]!);
+    const processes = Object.keys(platform.nonlinear).map((p) => p.split(/[>+]/) as Polarisation[]);
+    const solved = {
+      tables: [solveDesign(design, GRID)],
+      areas: processes.map(([polP, polS, polI]) =>
+        solveAreas(design, { ...DOUBLING, polP: polP!, polS: polS!, polI: polI! }, GRID)
+      ),
+      outputs: [],
+    };
+    return { platform, index: designsIndexModel(solved), area: designsAreaModel(solved) };
   }
   return {
     platform,
@@ -65,7 +78,7 @@ Deno.test("every platform has areas and scaled coefficients for its processes, a
     const { material, axes } = platform;
     const propagation = propagationAxis(material, axes);
     assert.ok(expansionFactor(material, propagation, 60) > 1, id);
-    const width_um = index.range("TE").width_um?.[0] ?? 5;
+    const width_um = WIDTHS[id] ?? index.range("TE").width_um?.[0] ?? 5;
     for (const [process, { d_pm_per_v, at_nm }] of Object.entries(platform.nonlinear)) {
       const a = area.effectiveArea(process, { width_um }) * 1e12;
       assert.ok(a > 0.3 && a < 300, `${id} ${process}: ${a} µm²`);
@@ -112,30 +125,8 @@ type Solve = (pol: Polarisation, lambda: number, T: number, geometry: GuideGeome
 
 /** The models behind the tables, solved afresh. */
 const dense: Record<string, Solve> = {
-  "ti-ln-zcut"(pol, lambda, T, { width_um, titanium_nm }) {
-    const substrate = refractiveIndex("CLN", pol === "TM" ? "e" : "o", lambda, T);
-    const step = pol === "TM" ? titaniumStepExtraordinary : titaniumStepOrdinary;
-    const stripe = { width: width_um * 1e-6, titanium: titanium_nm! * 1e-9, lateral: 4.5e-6, depth: 4.5e-6 };
-    const guide: GradedGuide = {
-      substrate,
-      cover: 1,
-      depthContrast: (c, y) =>
-        (substrate + step(c * Math.exp(-((y / 4.5e-6) ** 2)), lambda)) ** 2 - substrate ** 2,
-      strength: (x) => surfaceConcentration(stripe, x),
-      depthExtent: 40e-6,
-      lateralExtent: 40e-6,
-      points: 300,
-    };
-    return effectiveIndex(guide, lambda, depthModeContrast(guide, lambda, guide.strength(0)))!;
-  },
-  "rb-ktp-zcut": (pol, lambda, T, { width_um }) =>
-    exchangedIndex({
-      substrate: refractiveIndex("KTP", pol === "TM" ? "z" : "y", lambda, T),
-      cover: 1,
-      step: 0.015,
-      depth: 8e-6,
-      width: width_um * 1e-6,
-    }, lambda)!,
+  "ti-ln-zcut": (pol, lambda, T, geometry) => solvedAfresh("ti-ln-zcut", pol, lambda, T, geometry),
+  "rb-ktp-zcut": (pol, lambda, T, geometry) => solvedAfresh("rb-ktp-zcut", pol, lambda, T, geometry),
   "tfln-xcut": (pol, lambda, T, { width_um, film_thickness_nm, etch_depth_nm }) =>
     ridgeMode(
       {
@@ -151,6 +142,17 @@ const dense: Record<string, Solve> = {
     )!.index,
 };
 
+function solvedAfresh(id: string, ...[pol, lambda, T, geometry]: Parameters<Solve>): number {
+  const { platform } = loaded.get(id)!;
+  const { index } = platform;
+  if (index.from !== "solver") throw new TypeError(`${id} is not solved`);
+  const mode = designMode(platformDesign(platform, index, WIDTHS[id]!), pol, lambda, T, geometry, {
+    cells: GRID.cells,
+  });
+  if (mode.cutOff) throw new RangeError(mode.reason);
+  return mode.nEff;
+}
+
 /** n − λ·dn/dλ by five-point differencing of the dense model. */
 function denseGroupIndex(solve: Solve, ...[pol, lambda, T, geometry]: Parameters<Solve>): number {
   const h = 2e-9;
@@ -165,11 +167,33 @@ interface Case {
   readonly ng: number;
 }
 
+Deno.test("default mode sizes are those of the solved fields", () => {
+  for (const [id, nm] of [["ti-ln-zcut", 1550], ["rb-ktp-zcut", 1582]] as const) {
+    const { platform } = loaded.get(id)!;
+    if (platform.index.from !== "solver") throw new TypeError(`${id} is not solved`);
+    const design = platformDesign(platform, platform.index, WIDTHS[id]!);
+    for (const pol of ["TE", "TM"] as const) {
+      const found = solveOutput(design, pol, nm * 1e-9, 25);
+      if (found.cutOff) throw new RangeError(found.reason);
+      for (
+        const [trait, metres] of [["mfd_x_um", found.shape.mfdX], ["mfd_y_um", found.shape.mfdY]] as const
+      ) {
+        const given = platform.defaults[trait] as Record<string, { value: number; at_nm: number }>;
+        assert.equal(given[pol]!.at_nm, nm);
+        assert.ok(
+          Math.abs(given[pol]!.value - metres * 1e6) < 0.06,
+          `${id} ${trait} ${pol}: ${metres * 1e6}`,
+        );
+      }
+    }
+  }
+});
+
 Deno.test("index and group index of the tables hold against the models solved afresh, at and between their nodes", () => {
   const cases: Case[] = [
-    { id: "ti-ln-zcut", geometry: { width_um: 5.5, titanium_nm: 76 }, n: 5e-6, ng: 5e-5 },
-    { id: "rb-ktp-zcut", geometry: { width_um: 3 }, n: 2e-6, ng: 5e-5 },
-    { id: "rb-ktp-zcut", geometry: { width_um: 2.2 }, n: 5e-6, ng: 5e-5 },
+    { id: "ti-ln-zcut", geometry: { width_um: 6.6, titanium_nm: 93 }, n: 5e-6, ng: 1e-4 },
+    { id: "rb-ktp-zcut", geometry: { width_um: 3 }, n: 5e-6, ng: 1e-4 },
+    { id: "rb-ktp-zcut", geometry: { width_um: 2.64 }, n: 5e-6, ng: 1e-4 },
     {
       id: "tfln-xcut",
       geometry: { width_um: 1.8, film_thickness_nm: 580, etch_depth_nm: 370 },

@@ -1,0 +1,2 @@
+// Modes solved for a platform's designs, kept in the ledger and shared by the stages that need an index.
+export { askedBy, type AskedWaves, designsFor, type DesignsFound, type SolveSetting } from "./designs.ts";
