@@ -5,6 +5,7 @@ export { MOST_WIDTHS, type Place, type TrendShape } from "./design.ts";
 export { type Level, LEVELS, type LotObservation } from "./forest.ts";
 export type { InformationShares } from "./information.ts";
 export * from "./inherit.ts";
+export { lowerQuantile } from "./lower_quantile.ts";
 export { PLATFORM_DEGREES } from "./pool_priors.ts";
 export * from "./pooled.ts";
 export * from "./reml.ts";

@@ -2,6 +2,7 @@
 import normalCdf from "@stdlib/stats-base-dists-normal-cdf";
 import normalQuantile from "@stdlib/stats-base-dists-normal-quantile";
 import type { Uncertain } from "../../shared/vocabulary.ts";
+import { lowerQuantile } from "./lower_quantile.ts";
 
 /** What is known of a bounded trait once the impossible part of its normal is cut off. */
 export interface Truncated extends Uncertain {
@@ -77,18 +78,3 @@ function exponentialTail(high: number, low: number, length: number): Truncated {
 }
 
 const normalDensity = (z: number): number => Math.exp(-0.5 * z * z) / Math.sqrt(2 * Math.PI);
-
-/** Quantile of a standard normal that keeps its digits in the lower tail, where the library's has none below 1e−12. */
-function lowerQuantile(p: number): number {
-  if (p > 1e-6) return normalQuantile(p, 0, 1);
-  const log = Math.log(p);
-  let z = -Math.sqrt(-2 * log - Math.log(-4 * Math.PI * log));
-  // Newton's method on ln Φ, which is nearly a parabola out there.
-  for (let i = 0; i < 20; i++) {
-    const tail = normalCdf(z, 0, 1);
-    const step = (Math.log(tail) - log) * tail / normalDensity(z);
-    z -= step;
-    if (Math.abs(step) < 1e-13 * -z) break;
-  }
-  return z;
-}
