@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import normalCdf from "@stdlib/stats-base-dists-normal-cdf";
-import normalQuantile from "@stdlib/stats-base-dists-normal-quantile";
+import { lowerQuantile } from "../pooling/lower_quantile.ts";
 import type { Random } from "../../shared/random.ts";
 import type { Uncertain } from "../../shared/vocabulary.ts";
 
@@ -43,6 +43,9 @@ function shuffled(n: number, random: Random): number[] {
   return order;
 }
 
+/** Φ⁻¹, good in both tails. */
+const quantile = (q: number): number => q <= 0.5 ? lowerQuantile(q) : -lowerQuantile(1 - q);
+
 /** Natural bounds of a trait's true value. */
 export interface Bounds {
   readonly low?: number;
@@ -66,7 +69,8 @@ export function drawTrait(trait: Uncertain, bounds: Bounds, strata: Float64Array
   const pb = b === Infinity ? 1 : normalCdf(b, 0, 1);
   return strata.map((p) => {
     const q = flip ? pb - p * (pb - pa) : pa + p * (pb - pa);
-    const z = normalQuantile(q, 0, 1);
+    // Beyond 37 u even Φ is 0: the draw is the bound, to all digits that matter.
+    const z = q > 1e-300 ? quantile(q) : b;
     return Math.min(high, Math.max(low, value + sign * u * z));
   });
 }

@@ -57,3 +57,18 @@ Deno.test("drawTrait() stays finite and inside its bounds wherever the reading l
     ),
   );
 });
+
+Deno.test("drawTrait() keeps to its bound when the reading lies many u beyond it", () => {
+  // A normal cut in its far tail is exponential there: mean excess u²/distance (E. B. Wilson & M. M. Hilferty; from memory).
+  for (const distance of [8.5, 20, 45]) {
+    const x = drawTrait({ value: -distance, u: 1 }, { low: 0 }, nestedStrata(4096, 16, randomFrom(distance)));
+    assert.ok(x.every((v) => Number.isFinite(v) && v >= 0), `${distance} u below the bound`);
+    if (distance < 37) assertClose(mean(x), 1 / distance, { rel: 0.03 }, `mean excess at ${distance} u`);
+    const mirrored = drawTrait(
+      { value: 1 + distance, u: 1 },
+      { high: 1 },
+      nestedStrata(4096, 16, randomFrom(distance)),
+    );
+    assert.ok(mirrored.every((v) => Number.isFinite(v) && v <= 1), `${distance} u above the bound`);
+  }
+});
