@@ -34,6 +34,16 @@ function wholeNumber(least: number): (text: string) => number {
     return n;
   };
 }
+function anyNumber(text: string): number {
+  const n = Number(text);
+  if (text.trim() === "" || !Number.isFinite(n)) throw new InvalidArgumentError("need a number");
+  return n;
+}
+function positiveNumber(text: string): number {
+  const n = anyNumber(text);
+  if (!(n > 0)) throw new InvalidArgumentError("need a number above 0");
+  return n;
+}
 const collect = (text: string, before: string[]) => [...before, text];
 
 function command(name: string, description: string, example: string): Command {
@@ -55,6 +65,14 @@ interface Common {
   readonly requests?: string;
   readonly format: Format;
   readonly workers?: number;
+}
+
+interface SensitivityOptions {
+  readonly process?: string;
+  readonly wavelength?: string;
+  readonly width?: number;
+  readonly temperature?: number;
+  readonly lot?: string;
 }
 
 command("ingest", "take the records of a run folder into the ledger", "ingest runs/K07 --ledger ledger")
@@ -110,6 +128,26 @@ command(
   .action(run(async (id: string, options: Common & { figure: string; request?: string }) => {
     const { traceCommand } = await import("./commands/trace.ts");
     return await traceCommand(id, options);
+  }));
+
+command(
+  "sensitivity",
+  "show what small errors of width, thickness and temperature do to a design",
+  "sensitivity rb-ktp-zcut --process TE>TE+TM --wavelength 1582 --width 3",
+)
+  .argument("<platform|lot|request>", "a platform or a lot, or with --lot a request")
+  .option("--process <process>", 'polarisations as pump>signal+idler, such as "TE>TE+TM"')
+  .option("--wavelength <nm>", "of signal and idler; two with a comma where they differ")
+  .option("--width <um>", "drawn width (default: every width of the lot)", positiveNumber)
+  .option("--temperature <c>", "for a design without a period (default: 25 °C)", anyNumber)
+  .option("--lot <lot>", "the lot whose designs a request is asked about")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    workersOption(),
+  )
+  .addOption(formatOption())
+  .action(run(async (subject: string, options: Common & SensitivityOptions) => {
+    const { sensitivityCommand } = await import("./commands/sensitivity.ts");
+    return await sensitivityCommand(subject, options);
   }));
 
 command(

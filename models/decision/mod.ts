@@ -1,5 +1,15 @@
 // Pure: no I/O, no clock, no hidden randomness.
 export * from "./conformity.ts";
+export {
+  matchingPeriod,
+  nonCriticalWidths,
+  type Nudge,
+  type NudgeEffect,
+  nudgeEffects,
+  NUDGES,
+  parameterSlope,
+  type SensitivityPoint,
+} from "./design_sensitivity.ts";
 export * from "./draws.ts";
 export * from "./figure_basis.ts";
 export * from "./guide_inputs.ts";

@@ -89,13 +89,13 @@ export function validTemperatures(
     } catch (error) {
       if (error instanceof RangeError) {
         // No mode at all, or a table without this polarisation.
-        const none = model.index.cutOff?.(pol, geometry) ?? null;
+        const none = model.index.cutOff?.(pol, geometry, lambda) ?? null;
         return { reason: none === null ? error.message : cutOffReason(pol, lambda, none) };
       }
       throw error;
     }
     if (lambda < range.lambda[0] || lambda > range.lambda[1]) {
-      const ends = lambda > range.lambda[1] ? model.index.cutOff?.(pol, geometry) ?? null : null;
+      const ends = lambda > range.lambda[1] ? model.index.cutOff?.(pol, geometry, lambda) ?? null : null;
       if (ends !== null) return { reason: cutOffReason(pol, lambda, ends) };
       const [a, b] = range.lambda.map((x) => Math.round(x * 1e9));
       return {

@@ -61,8 +61,11 @@ export interface IndexModel {
    * more than one mode; else null.
    */
   remark(pol: Polarisation, lambda: number, temperatureC: number, geometry?: GuideGeometry): string | null;
-  /** Why a guide of this geometry carries no mode beyond the range's wavelengths, or none at all; null if it does. */
-  cutOff?(pol: Polarisation, geometry?: GuideGeometry): string | null;
+  /**
+   * Why a guide of this geometry carries no mode beyond the range's wavelengths (`lambda`: the one that is asked for), or
+   * none at all; null if it does.
+   */
+  cutOff?(pol: Polarisation, geometry?: GuideGeometry, lambda?: number): string | null;
 }
 
 /**

@@ -14,6 +14,7 @@ import { InputError } from "../../shared/errors.ts";
 import { nm } from "../../shared/units.ts";
 import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import type { Ledger } from "../ledger/mod.ts";
+import { OutOfDate } from "../out_of_date.ts";
 import type { LoadedPlatform } from "../platforms.ts";
 import { solveTasks } from "./solve.ts";
 import { heldPieces, keepPieces, type SolvedPiece } from "./store.ts";
@@ -49,7 +50,8 @@ const TUNING_STEP = 0.02;
 
 /**
  * Modes, areas and fibre couplings of a platform's designs: one design per drawn width (µm). What the ledger holds is
- * read from it, the rest is solved and, where the ledger is open for writing, kept in it.
+ * read from it, the rest is solved and kept in it; without a ledger nothing is kept.
+ * @throws OutOfDate when something has to be solved and the ledger is open for reading only
  * @throws InputError for a platform file from which no design can be made
  */
 export async function designsFor(
@@ -73,6 +75,8 @@ export async function designsFor(
       !results.has(key)
     );
     if (missing.length > 0) {
+      // Seconds of solving that nothing would keep: whoever asked opens the ledger for writing, and asks again.
+      if (ledger !== null && !ledger.writable) throw new OutOfDate("solved modes");
       const keeper = new Keeper(ledger, platform.platform, missing.map(([, task]) => task.design));
       let done = 0;
       onSolving?.(0, missing.length);
@@ -200,7 +204,7 @@ class Keeper {
   async add(piece: SolvedPiece): Promise<void> {
     const held = this.#open.get(piece.task.design)!;
     held.pieces.push(piece);
-    if (--held.left > 0 || this.ledger === null || !this.ledger.writable) return;
+    if (--held.left > 0 || this.ledger === null) return;
     const ledger = this.ledger;
     this.#last = this.#last.then(async () => {
       this.runs.push(await keepPieces(ledger, this.platform, held.pieces));

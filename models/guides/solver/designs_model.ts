@@ -52,13 +52,20 @@ export function designsIndexModel({ tables, outputs }: SolvedDesigns): SolverInd
       return models.map(({ model }) => model.range(pol)).reduce(common);
     },
     remark(pol, lambda, T, geometry) {
-      const place = geometry ?? { width_um: models[0]!.design.geometry.width_um };
-      const { design, model } = nearestDesign(models, place);
+      const { design, model } = nearestDesign(models, geometry ?? models[0]!.design.geometry);
       const several = severalModes(outputs, design, pol, lambda);
       const all = [model.remark(pol, lambda, T), several].filter((r) => r !== null);
       return all.length === 0 ? null : all.join("; ");
     },
-    cutOff: (pol, geometry) => at(geometry ?? { width_um: models[0]!.design.geometry.width_um }).cutOff(pol),
+    cutOff(pol, geometry, lambda) {
+      const { design, model } = nearestDesign(models, geometry ?? models[0]!.design.geometry);
+      const why = model.cutOff(pol);
+      if (why === null || lambda === undefined) return why;
+      const drawn = solvedOutputAt(outputs, design.geometry, pol, lambda);
+      return drawn === null || drawn.result.cutOff
+        ? why
+        : `${why}; a guide as drawn still carries it: tables of a smaller span reach farther`;
+    },
   };
 }
 

@@ -21,7 +21,7 @@ export interface SolverIndexModel extends IndexModel {
     parameter: ProcessParameter,
   ): number;
   /** Why a polarisation's table ends early or does not exist, or null. */
-  cutOff(pol: Polarisation, geometry?: GuideGeometry): string | null;
+  cutOff(pol: Polarisation, geometry?: GuideGeometry, lambda?: number): string | null;
 }
 
 /** Chebyshev coefficients over wavelength: `width` per geometry node. */
