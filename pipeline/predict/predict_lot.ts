@@ -26,6 +26,8 @@ export interface PredictLotOptions {
   readonly onProgress?: (done: number, of: number) => void;
   /** Pieces of designs solved, of all that were not in the ledger. */
   readonly onSolving?: SolveSetting["onSolving"];
+  /** How finely modes are solved, where not as usual. */
+  readonly grid?: SolveSetting["grid"];
 }
 
 export interface PredictedRequest {
@@ -143,6 +145,7 @@ async function compute(
     {
       workers: options.workers,
       ...(options.onSolving === undefined ? {} : { onSolving: options.onSolving }),
+      ...(options.grid === undefined ? {} : { grid: options.grid }),
     },
   );
   const traits = await loadTraits(ledger, reduced);

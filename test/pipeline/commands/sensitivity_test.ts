@@ -1,0 +1,76 @@
+import { deepEqual, equal, match, ok } from "node:assert/strict";
+import { join } from "node:path";
+import { ingestFolder } from "../../../pipeline/ingest/mod.ts";
+import { openLedger } from "../../../pipeline/ledger/mod.ts";
+import { runFiles, writeFiles, writeRequests } from "../../run_folder.ts";
+import { wavelot } from "../../run_wavelot.ts";
+import { assertClose } from "../../assert_close.ts";
+import { withFolder } from "../ledger/a_ledger.ts";
+
+const PROCESS = ["--process", "TE>TE+TE", "--wavelength", "1550"];
+
+Deno.test("sensitivities of a platform read well at 80 columns, and as JSON they are plain numbers", () =>
+  withFolder(async (folder) => {
+    const none = ["--ledger", join(folder, "none")];
+    const call = await wavelot(["sensitivity", "tfln-xcut", ...PROCESS, "--width", "1.4", ...none]);
+    equal(call.code, 0, call.stderr);
+    for (const line of call.stdout.split("\n")) ok(line.length <= 80, line);
+    match(call.stdout, /TE>TE\+TE, 775 = 1550 \+ 1550 nm, on platform tfln-xcut/);
+    match(call.stdout, /Width 1\.4 µm, period \d\.\d+ µm, 25\.0 °C/);
+    for (const name of ["width", "film thickness", "etch depth", "temperature"]) {
+      match(call.stdout, new RegExp(`^${name} +\\+[\\d.]+ (µm|nm|°C) `, "m"));
+    }
+    match(call.stdout, /No width from 0\.8 to 2 µm is non-critical/);
+    const json = JSON.parse(
+      (await wavelot(["sensitivity", "tfln-xcut", ...PROCESS, "--width", "1.4", "--format", "json", ...none]))
+        .stdout,
+    );
+    const [design] = json.designs;
+    deepEqual([json.platform, json.lot, json.process, design.matched], ["tfln-xcut", null, "TE>TE+TE", true]);
+    const film = design.rows.find((r: { parameter: string }) => r.parameter === "film_thickness_nm");
+    // A nanometre of film moves the oven by tens of degrees: what the oven does per degree undoes it.
+    const warm = design.rows.find((r: { parameter: string }) => r.parameter === "temperature_c");
+    assertClose(film.temperature_c * warm.mismatch_per_m, -film.mismatch_per_m, { rel: 1e-6 });
+    ok(Math.abs(film.temperature_c) > 10);
+  }));
+
+Deno.test("with a lot, a request is asked about the designs of its guides", () =>
+  withFolder(async (folder) => {
+    const [run, ledger, requests] = ["run", "ledger", "requests"].map((name) => join(folder, name));
+    await writeFiles(run!, runFiles(() => 0.072));
+    await writeRequests(requests!);
+    {
+      await using held = await openLedger(ledger!, { write: true });
+      await ingestFolder(run!, held);
+    }
+    const where = ["--lot", "Z09", "--ledger", ledger!, "--requests", requests!, "--format", "json"];
+    const call = await wavelot(["sensitivity", "filtered", ...where]);
+    equal(call.code, 0, call.stderr);
+    const { lot, request, designs } = JSON.parse(call.stdout);
+    deepEqual([lot, request], ["Z09", "filtered"]);
+    ok(designs.length >= 1);
+    ok(designs[0].matched && designs[0].temperature_c >= 20 && designs[0].temperature_c <= 90);
+    ok(designs[0].purity > 0.3 && designs[0].purity < 1);
+    deepEqual(designs[0].rows.map((r: { parameter: string }) => r.parameter), ["temperature_c"]);
+  }));
+
+Deno.test("what can't be asked is refused with what is wanted", () =>
+  withFolder(async (folder) => {
+    const none = ["--ledger", join(folder, "none")];
+    for (
+      const [args, says] of [
+        [["tfln-xcut"], /add --process and --wavelength, or --lot/],
+        [["tfln-xcut", ...PROCESS], /add --width, in µm/],
+        [["nine", ...PROCESS], /Unknown platform or lot "nine": platforms are bulk-ktp/],
+        [["bulk-ln", "--process", "TE>TE", "--wavelength", "1550"], /need pump>signal\+idler/],
+        [["bulk-ln", "--process", "TE>TE+TE", "--wavelength", "red"], /need the signal's in nm/],
+        [["heralded-1582", "--lot", "R1"], /Cannot look up lot R1: there is no ledger/],
+        [["bulk-ln", ...PROCESS, "--width", "0"], /need a number above 0/],
+      ] as const
+    ) {
+      const call = await wavelot(["sensitivity", ...args, ...none]);
+      equal(call.code, 2, args.join(" "));
+      match(call.stderr, says);
+      equal(call.stdout, "");
+    }
+  }));
