@@ -162,14 +162,15 @@ command(
     return await sqlCommand(query, options);
   }));
 
-command("flag", "say what is out of line in a lot, and what may be behind it", "flag K07 --ledger ledger")
-  .argument("[lot]", "one lot (default: every lot of the ledger)")
-  .option(
+const requestOption = () =>
+  new Option(
     "--request <request>",
     "only for this request, by name or path; may repeat (default: those predicted that the lot can be tuned to)",
-    collect,
-    [],
-  )
+  ).argParser(collect).default([], "all");
+
+command("flag", "say what is out of line in a lot, and what may be behind it", "flag K07 --ledger ledger")
+  .argument("[lot]", "one lot (default: every lot of the ledger)")
+  .addOption(requestOption())
   .option("--rules <file>", "your own rules, in place of the built-in ones of the same names")
   .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
     workersOption(),
@@ -178,6 +179,35 @@ command("flag", "say what is out of line in a lot, and what may be behind it", "
   .action(run(async (lot: string | undefined, options: Common & { request: string[]; rules?: string }) => {
     const { flagCommand } = await import("./commands/flag.ts");
     return await flagCommand(lot, options);
+  }));
+
+command("review", "write the review of a lot as one page", "review K07 --out K07.html")
+  .argument("<lot>", "the lot")
+  .addOption(requestOption())
+  .option("--rules <file>", "your own rules, in place of the built-in ones of the same names")
+  .option("--out <file>", "the page to write (HTML, needs nothing else)")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    workersOption(),
+  )
+  .addOption(formatOption())
+  .action(
+    run(async (lot: string, options: Common & { request: string[]; rules?: string; out?: string }) => {
+      const { reviewCommand } = await import("./commands/review.ts");
+      return await reviewCommand(lot, options);
+    }),
+  );
+
+command("sheet", "write the page that travels with a die", "sheet K07-1/05 --out K07-1-05.html")
+  .argument("<die>", "a full die id, such as K07-1/05")
+  .addOption(requestOption())
+  .option("--out <file>", "the page to write (HTML, one page of A4)")
+  .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
+    workersOption(),
+  )
+  .addOption(formatOption())
+  .action(run(async (die: string, options: Common & { request: string[]; out?: string }) => {
+    const { sheetCommand } = await import("./commands/sheet.ts");
+    return await sheetCommand(die, options);
   }));
 
 command("check", "verify every hash of the ledger", "check --ledger ledger")

@@ -53,8 +53,20 @@ export async function rankGuides(
   checked: CheckedRequest,
   options: RankOptions,
 ): Promise<Ranking> {
+  using engine = await engineWith(ledger, RANKED_FROM, { lots: options.lots });
+  return await rankIn(engine, checked, options);
+}
+
+/** What a ranking reads. */
+export const RANKED_FROM: readonly string[] = ["ranked_guides", "figures"];
+
+/** The same from an engine that holds {@link RANKED_FROM} of the lots and no others. */
+export async function rankIn(
+  engine: Engine,
+  checked: CheckedRequest,
+  options: RankOptions,
+): Promise<Ranking> {
   const { request } = checked.request;
-  using engine = await engineWith(ledger, ["ranked_guides", "figures"], { lots: options.lots });
   const template = await Deno.readTextFile(new URL("./rank_guides.sql", import.meta.url));
   const text = template
     .replaceAll("{order_by}", quoted(checked.orderBy))

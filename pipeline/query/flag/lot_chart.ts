@@ -147,6 +147,7 @@ export function lotChart(
     return [{
       ...base,
       severity: "note",
+      brief: "no control chart",
       statement: why,
       evidence: { numbers: { earlier_lots: earlier.length, needed: rule.least_earlier_lots }, readings: [] },
       suspects: [],
@@ -159,6 +160,7 @@ export function lotChart(
     return {
       ...base,
       severity,
+      brief: `${c.words} ${shown(c.values.at(-1)!)}, earlier lots ${shown(c.centre)}`,
       statement: `Lot ${lot.lot}: ${c.words} is ${shown(c.values.at(-1)!)}; the ${
         plural(c.lots.length - 1, "lot")
       } before have ${shown(c.centre)} on average, limits ${shown(c.lower)} to ${shown(c.upper)}: ${

@@ -90,6 +90,9 @@ export function yieldFloor(facts: LotFacts, rule: RuleOf<"yield_floor">): Flag[]
         lot: facts.lot,
         rule: rule.rule,
         severity: certain ? rule.severity : rule.severity_when_not_certain,
+        brief: own.map((l) => `${l.good} of ${plural(l.dies.length, "die")} accepted for ${l.request}`).join(
+          ", ",
+        ),
         statement: `Wafer ${wafer}: ${parts.join("; ")}; the floor is ${percent(rule.floor)}` +
           (certain ? "" : ", which the interval does not exclude"),
         evidence: {
@@ -155,6 +158,9 @@ export function figureLimit(facts: LotFacts, rule: RuleOf<"figure_limit">): Flag
             lot: facts.lot,
             rule: rule.rule,
             severity: rule.severity,
+            brief: `${rule.figure} beyond its limit on ${beyond} of ${
+              plural(known.length, "die")
+            } (${request})`,
             statement: `Wafer ${wafer}: ${rule.figure} of ${beyond} of ${
               plural(known.length, "die")
             } is beyond ${limit}${unitOf(rule.figure)} for ${request} (mean ${num(mean(known))}; at least ${
@@ -200,6 +206,7 @@ export function noOperatingPoint(facts: LotFacts, rule: RuleOf<"no_operating_poi
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: `group ${group} (${plural(ids.length, "guide")}, period ${range(own)}) matches nothing`,
       statement:
         `Lot ${facts.lot}: none of the ${ids.length} guides of group ${group} matches at any temperature of any of ` +
         `${plural(requests.length, "request")} predicted; their period is ${range(own)}` +
@@ -238,6 +245,7 @@ export function outcomeResidual(facts: LotFacts, rule: RuleOf<"outcome_residual"
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: `${o.figure} of ${o.unit} found ${num(o.value)}${unit}, predicted ${num(predicted.mean)}`,
       statement: `${o.unit}: the experiment found ${o.figure} = ${num(o.value)}${unit}${
         o.u_value === null ? " (no u stated)" : ` ± ${num(o.u_value, 2)}`
       } for ${o.request}, predicted was ${num(predicted.mean)} ± ${num(predicted.u ?? 0, 2)}: ${
@@ -291,6 +299,7 @@ export function coverageThin(facts: LotFacts, rule: RuleOf<"coverage_thin">): Fl
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: `${inferred.length} of ${plural(all, "die")} can't be decided for ${request}`,
       statement:
         `Lot ${facts.lot}: ${inferred.length} of ${
           plural(all, "die")

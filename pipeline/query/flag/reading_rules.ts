@@ -77,6 +77,7 @@ export function coatingOffTarget(facts: LotFacts, rule: RuleOf<"coating_off_targ
       lot: facts.lot,
       rule: rule.rule,
       severity: worst.reflectivity >= rule.act_above ? "act" : rule.severity,
+      brief: `${facet} facet turns back ${percent(worst.reflectivity)} at ${num(worst.lambda_nm, 5)} nm`,
       statement:
         `Coating run ${run}, ${facet} facet: it turns back ${percent(worst.reflectivity)} at ${
           num(worst.lambda_nm, 5)
@@ -201,6 +202,9 @@ export function coatingUnknown(facts: LotFacts, rule: RuleOf<"coating_unknown">)
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: spectrum.length === 0
+        ? `${facet} facet never measured`
+        : `${facet} facet not measured at ${[...missing].join(", ")}`,
       statement: `Coating run ${run}, ${facet} facet: ${
         spectrum.length === 0
           ? "nobody measured its spectrum"
@@ -229,6 +233,7 @@ export function readingRemarks(facts: LotFacts, rule: RuleOf<"reading_remarks">)
       lot: facts.lot,
       rule: rule.rule,
       severity,
+      brief: `${unit}: ${code.replaceAll("_", " ")}`,
       statement: joinedStatements(statements),
       evidence: {
         numbers: { code, findings: statements.length },
@@ -286,6 +291,7 @@ export function unlistedCut(facts: LotFacts, rule: RuleOf<"unlisted_cut">): Flag
     lot: facts.lot,
     rule: rule.rule,
     severity: rule.severity,
+    brief: `die ${die} was cut and is not listed`,
     statement:
       `Die ${die}: ${why}, but lot.json does not list it as unavailable; it is not accepted for anything`,
     evidence: {
@@ -314,6 +320,7 @@ export function quarantined(facts: LotFacts, rule: RuleOf<"quarantine">): Flag[]
     lot,
     rule: rule.rule,
     severity: share > rule.watch_above_share ? "watch" : rule.severity,
+    brief: `${quarantine.length} of ${plural(rows, "row")} kept aside`,
     statement: `Lot ${lot}: ${quarantine.length} of ${
       plural(rows, "row")
     } could not be used and are kept aside: ${

@@ -182,7 +182,7 @@ export function suspectSentence(s: FlagSuspect): string {
     } at best)`,
     not_shown: `not shown to be more than chance (${short(s.p_value)}, corrected)`,
   }[s.verdict];
-  const only = s.only_difference ? "; nothing else on record parts them" : "";
+  const only = s.only_difference ? "; nothing else on record tells them apart" : "";
   const same = s.same_as.length === 0 ? "" : `; can't be told apart from ${s.same_as.join(", ")}`;
   return `${suspectName(s)}: ${s.affected_with} of ${s.affected} affected${rest}${only}; ${weight}${same}`;
 }

@@ -79,6 +79,9 @@ export function traitLimit(facts: LotFacts, rule: RuleOf<"trait_limit">): Flag[]
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: hits.map((h) => `${seriesWords(h.series)} ${num(h.wafer.value)}${unitOf(h.series.trait)}`).join(
+        ", ",
+      ),
       statement: sentence,
       evidence: {
         numbers: {
@@ -129,6 +132,7 @@ export function waferContrast(facts: LotFacts, rule: RuleOf<"wafer_contrast">): 
     lot: facts.lot,
     rule: rule.rule,
     severity: rule.severity,
+    brief: `${seriesWords(series)} ${num(wafer.value)}${unitOf(series.trait)}, other wafers ${num(rest)}`,
     statement:
       `Wafer ${wafer.wafer}: ${seriesWords(series)} is ${num(wafer.value)}${
         unitOf(series.trait)
@@ -176,6 +180,7 @@ export function spreadGrowth(
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: `${seriesWords(series)} spreads ${num(now / then, 2)} times as much as before`,
       statement:
         `Lot ${facts.lot}: ${seriesWords(series)} differs between dies of a wafer by ${num(now)}${unit} ` +
         `(standard deviation, ${plural(own.dies, "die")}), ${num(now / then, 2)} times the ${
@@ -219,6 +224,7 @@ export function repeatedReadings(facts: LotFacts, rule: RuleOf<"repeated_reading
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: `${a.unit}: readings of its ${seriesWords(a)} disagree`,
       statement: `${a.unit}: two readings of its ${seriesWords(a)} disagree, ${shown(a)} and ${shown(b)}: ${
         num(z, 2)
       } times their joint u`,
@@ -255,6 +261,7 @@ export function scanResidual(facts: LotFacts, rule: RuleOf<"scan_residual">): Fl
       lot: facts.lot,
       rule: rule.rule,
       severity: beyond ? rule.severity_beyond_platform : rule.severity,
+      brief: `scans lie ${num(centre)} 1/m off the calculation`,
       statement:
         `Platform ${facts.platform.platform}: ${
           plural(rows.length, "scan")
@@ -299,6 +306,7 @@ export function periodOff(facts: LotFacts, rule: RuleOf<"period_off">): Flag[] {
       lot: facts.lot,
       rule: rule.rule,
       severity: rule.severity,
+      brief: `period of ${plural(periods.length, "guide")} not as drawn`,
       statement:
         `Wafer ${wafer}: the period of ${periods.length} of ${
           plural(read, "inspected guide")

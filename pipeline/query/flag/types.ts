@@ -44,6 +44,8 @@ export interface Flag {
   readonly lot: string;
   readonly rule: string;
   readonly severity: Severity;
+  /** The finding in a few words, for a list under the id. */
+  readonly brief: string;
   readonly statement: string;
   readonly evidence: FlagEvidence;
   readonly suspects: readonly FlagSuspect[];
@@ -86,5 +88,6 @@ export function num(x: number, digits = 3): string {
   const text = String(Number(x.toPrecision(digits)));
   return text.replace("-", "−");
 }
-export const percent = (x: number): string => `${num(100 * x, x < 0.1 ? 2 : 3)} %`;
+/** A share in percent; what would round to nothing beside a whole is told as 0. */
+export const percent = (x: number): string => `${x < 5e-5 ? "0" : num(100 * x, x < 0.1 ? 2 : 3)} %`;
 export const plural = (n: number, one: string, many = `${one}s`): string => `${n} ${n === 1 ? one : many}`;

@@ -1,0 +1,169 @@
+import type { CheckedRequest } from "../../../shared/schemas/request.ts";
+import type { Figure } from "../../../shared/schemas/figures.ts";
+import { BASES, type Basis } from "../../../shared/vocabulary.ts";
+import type { Budget, BudgetRow, LimitRow, RankedDie, RequestReview, ShareOf } from "../../review_types.ts";
+import type { Engine } from "../engine.ts";
+import type { LotFacts, PredictionFacts } from "../flag/facts.ts";
+import { type DieVerdict, dieVerdicts, lotYield } from "../flag/prediction_rules.ts";
+import { type RankedEntry, rankIn } from "../rank.ts";
+
+const FACTORS = ["survival", "facet", "coupling", "filter", "detector", "heralding"] as const;
+const CONFIDENCE = 0.95;
+const ORDER = ["accept", "hold", "reject"] as const;
+
+/** How a lot does for one request. `engine` holds what a ranking reads, and `used_traits`, of this lot alone. */
+export async function requestReview(
+  engine: Engine,
+  facts: LotFacts,
+  prediction: PredictionFacts,
+): Promise<RequestReview> {
+  const { checked, decisions } = prediction;
+  const { request } = checked.request;
+  const dies = dieVerdicts(decisions);
+  const ranking = await rankIn(engine, checked, { lots: [facts.lot], allGuides: false, top: null });
+  const matched = new Map(decisions.map((d) => [d.guide_id, d.matched]));
+  const wafers = [...new Set(dies.map((d) => d.wafer))];
+  return {
+    request,
+    process: checked.request.process,
+    description: describe(checked),
+    requirements: checked.requirements.map((r) => ({
+      figure: r.figure,
+      at_least: Number.isFinite(r.atLeast) ? r.atLeast : null,
+      at_most: Number.isFinite(r.atMost) ? r.atMost : null,
+    })),
+    order_by: checked.orderBy,
+    decide: checked.request.decide,
+    total: shareOf(dies),
+    wafers: wafers.map((wafer) => ({ wafer, ...shareOf(dies.filter((d) => d.wafer === wafer)) })),
+    limits: limitsOf(prediction, dies),
+    // Within a decision in the order of the request; what can't be shipped is rejected and comes last as it is.
+    ranked: ORDER.flatMap((decision) => ranking.dies.filter((e) => e.decision === decision))
+      .map((e) => rankedDie(e, checked, matched.get(e.guide) ?? false)),
+    budgets: checked.request.process === "pair-generation" ? budgetsOf(ranking.dies) : [],
+    rests_on: restsOn(engine, request, new Set(decisions.filter((d) => d.matched).map((d) => d.guide_id))),
+  };
+}
+
+function shareOf(dies: readonly DieVerdict[]): ShareOf {
+  const y = lotYield(dies, CONFIDENCE);
+  return { ...y, value: Number.isNaN(y.value) ? null : y.value };
+}
+
+/** A request in one line. */
+export function describe({ request, waves, processKey }: CheckedRequest): string {
+  const [p, s, i] = [waves.lambdaP, waves.lambdaS, waves.lambdaI].map((l) => Number((l * 1e9).toFixed(2)));
+  switch (request.process) {
+    case "second-harmonic":
+      return `second harmonic, ${s} nm to ${p} nm (${processKey})`;
+    case "sum-frequency":
+      return `sum frequency, ${s} nm and ${i} nm to ${p} nm (${processKey})`;
+    case "difference-frequency":
+      return `difference frequency, ${p} nm and ${s} nm to ${i} nm (${processKey})`;
+    case "pair-generation":
+      return `photon pairs at ${s} nm and ${i} nm from ${p} nm (${processKey})`;
+  }
+}
+
+function rankedDie(e: RankedEntry, { requirements }: CheckedRequest, matched: boolean): RankedDie {
+  return {
+    die: e.die,
+    guide: e.guide,
+    decision: e.decision,
+    probability: e.probability,
+    limited_by: e.limited_by,
+    qualifying_guides: e.qualifying_guides,
+    guides_of_die: e.guides_of_die,
+    matched,
+    unavailable: e.unavailable ?? null,
+    operating_temperature_c: e.figures.operating_temperature_c,
+    figures: Object.fromEntries(requirements.map((r) => [r.figure, e.figures[r.figure]])),
+  };
+}
+
+/** Dies that are not accepted, by the requirement least often met. */
+function limitsOf({ checked, figures }: PredictionFacts, dies: readonly DieVerdict[]): LimitRow[] {
+  const rows = new Map<
+    string,
+    { rejected: number; on_hold: number; would_pass: number; wafers: Set<string> }
+  >();
+  for (const d of dies) {
+    const figure = d.best.limited_by;
+    if (d.unavailable !== null || d.decision === "accept" || figure === null) continue;
+    const row = rows.get(figure) ?? { rejected: 0, on_hold: 0, would_pass: 0, wafers: new Set() };
+    if (d.decision === "reject") row.rejected++;
+    else row.on_hold++;
+    row.wafers.add(d.wafer);
+    if (othersPass(checked, figures.get(d.best.guide_id), figure)) row.would_pass++;
+    rows.set(figure, row);
+  }
+  return [...rows].map(([figure, r]) => ({ figure, ...r, wafers: [...r.wafers] }))
+    .sort((a, b) => b.rejected + b.on_hold - a.rejected - a.on_hold || (a.figure < b.figure ? -1 : 1));
+}
+
+/** All other requirements hold together with the probability asked for: 1 − Σ(1 − p) bounds it from below, however they depend on each other. */
+function othersPass(
+  { requirements, request }: CheckedRequest,
+  figures: ReadonlyMap<string, { readonly probability: number | null }> | undefined,
+  limiting: string,
+): boolean {
+  const others = requirements.filter((r) => r.figure !== limiting).map((r) =>
+    figures?.get(r.figure)?.probability ?? 0
+  );
+  return 1 - others.reduce((sum, p) => sum + (1 - p), 0) >= request.decide.accept_at;
+}
+
+/** Budget of the best die (the first accepted one, else the first) and of the one with the median heralding efficiency. */
+function budgetsOf(ranked: readonly RankedEntry[]): Budget[] {
+  const ready = ranked.filter((e) => e.unavailable === undefined && e.figures.heralding_signal.mean !== null);
+  if (ready.length === 0) return [];
+  const best = ready.find((e) => e.decision === "accept") ?? ready[0]!;
+  const sorted = [...ready].sort((a, b) =>
+    b.figures.heralding_signal.mean! - a.figures.heralding_signal.mean!
+  );
+  const middle = sorted[Math.floor((sorted.length - 1) / 2)]!;
+  const of = (which: "best" | "median", e: RankedEntry): Budget => ({
+    which,
+    die: e.die,
+    guide: e.guide,
+    rows: budgetRows(e),
+  });
+  return [of("best", best), of("median", middle)];
+}
+
+/** Factors of the heralding budget, and their product. */
+export const budgetRows = (e: RankedEntry): BudgetRow[] =>
+  FACTORS.map((factor) => ({
+    factor,
+    signal: e.figures[`${factor}_signal` as Figure],
+    idler: e.figures[`${factor}_idler` as Figure],
+  }));
+
+/** Of how many matched guides each role rests on what. */
+function restsOn(engine: Engine, request: string, guides: ReadonlySet<string>): RequestReview["rests_on"] {
+  const { rows } = engine.query(
+    `SELECT role, trait, basis, guide_id FROM used_traits WHERE request = '${request.replaceAll("'", "''")}'`,
+  );
+  const counts = new Map<string, Set<string>>();
+  for (const [role, trait, basis, guide] of rows as [string, string, Basis, string][]) {
+    if (!guides.has(guide)) continue;
+    const key = `${role}|${trait}|${basis}`;
+    const held = counts.get(key);
+    if (held === undefined) counts.set(key, new Set([guide]));
+    else held.add(guide);
+  }
+  return [...counts].map(([key, set]) => {
+    const [role, trait, basis] = key.split("|") as [string, string, Basis];
+    return { role, trait, basis, guides: set.size };
+  }).sort((a, b) =>
+    a.role < b.role
+      ? -1
+      : a.role > b.role
+      ? 1
+      : a.trait < b.trait
+      ? -1
+      : a.trait > b.trait
+      ? 1
+      : BASES.indexOf(a.basis) - BASES.indexOf(b.basis)
+  );
+}
