@@ -2,11 +2,13 @@
 import {
   type Grating,
   gratingFromWalls,
+  type MismatchProfile,
   missingFraction,
   type PoledSection,
   type PolingWindow as WindowStatistics,
   realiseGrating,
   type Stretch,
+  uniformGrating,
   unpoledGaps,
 } from "../poling/mod.ts";
 import { poledStretches } from "../pairs/mod.ts";
@@ -31,6 +33,19 @@ export const sectionOf = (guide: GuideInputs): PoledSection => ({
 /** The grating as inspected, or null when it is known by its statistics only. */
 export function inspectedGrating(guide: GuideInputs): Grating | null {
   return guide.poling.from === "walls" ? gratingFromWalls(guide.poling.walls, sectionOf(guide)) : null;
+}
+
+/**
+ * The grating whose peak the guide is run at: as inspected, or an ideal one where the mismatch varies along the guide; null
+ * where the design period alone decides.
+ */
+export function gratingForPeak(
+  guide: Pick<GuideInputs, "poledFrom" | "poledLength" | "period">,
+  walls: Grating | null,
+  profile: MismatchProfile | undefined,
+): Grating | null {
+  if (walls !== null || profile === undefined || !(guide.poledLength > 0)) return walls;
+  return uniformGrating({ start: guide.poledFrom, length: guide.poledLength, period: guide.period });
 }
 
 /** One grating with a guide's poling statistics: draw `index` of its own seeded stream. */

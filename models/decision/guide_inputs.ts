@@ -48,6 +48,14 @@ export type PolingTraits =
     readonly merged: UsedTrait;
   };
 
+/** How a parameter of the cross-section varies along the guide: deviation from its mean, in its own unit, at z (m). */
+export interface AlongGuide {
+  readonly parameter: GeometryParameter;
+  /** Ascending, from the input facet, at 25 °C. */
+  readonly z: readonly number[];
+  readonly deviation: readonly number[];
+}
+
 /** Everything that a prediction of one guide rests on; lengths in m at 25 °C. */
 export interface GuideInputs {
   readonly id: string;
@@ -55,6 +63,8 @@ export interface GuideInputs {
   readonly geometry: GuideGeometry;
   /** What is uncertain about it; `trait.value` is the value in `geometry` (for `width_um` its error against the mask). */
   readonly geometryErrors: readonly { readonly parameter: GeometryParameter; readonly trait: UsedTrait }[];
+  /** What of it varies along the guide, where it was read at several places. */
+  readonly along?: readonly AlongGuide[];
   readonly length: number;
   readonly period: number;
   readonly poledFrom: number;

@@ -5,6 +5,7 @@ import {
   type Grating,
   type GratingSpectrum,
   gratingSpectrum,
+  type MismatchProfile,
   peakTemperatures,
   phaseMatchingTemperatures,
   type Temperatures,
@@ -36,6 +37,8 @@ export interface OperatingQuestion {
   readonly poledLength: number;
   /** The grating, if its walls are all known: then |φ|² decides, else the design period. */
   readonly walls: Grating | null;
+  /** What the cross-section makes of Δβ along the guide; with it `walls` has to be given, an ideal grating if need be. */
+  readonly profile?: MismatchProfile | undefined;
 }
 
 /** Steps in which a tunable pump is scanned on either side of its nominal wavelength. */
@@ -162,7 +165,7 @@ function matcher(
 
 /** One spectrum over scaled Δβ serves all temperatures and offsets; it is made again only when the range outgrows it. */
 function peakSpectrum(question: OperatingQuestion): (low: number, high: number) => GratingSpectrum | null {
-  const { walls, period, poledLength } = question;
+  const { walls, period, poledLength, profile } = question;
   let held: { low: number; high: number; spectrum: GratingSpectrum } | null = null;
   return (low, high) => {
     if (walls === null) return null;
@@ -172,7 +175,7 @@ function peakSpectrum(question: OperatingQuestion): (low: number, high: number) 
     const spectrum = gratingSpectrum(
       walls,
       bandForPeak(wide.low, wide.high, period, walls.end - walls.start),
-      { poledLength },
+      { poledLength, ...(profile === undefined ? {} : { profile }) },
     );
     held = { ...wide, spectrum };
     return spectrum;

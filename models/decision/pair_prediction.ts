@@ -75,12 +75,17 @@ const filterOf = (filter: FilterRequest, lambda: number): Filter => ({
 
 /** φ of a grating at a site, with pump loss (1/m). */
 function gratingAt(
-  { guide, scale, offset }: Site,
+  { guide, scale, offset, profile }: Site,
   grating: Grating,
   lossP: number,
 ): PairSource["spectrum"] {
   const { decay } = pairWeight(lossP);
-  const options = { decay, scale, poledLength: guide.poledLength };
+  const options = {
+    decay,
+    scale,
+    poledLength: guide.poledLength,
+    ...(profile === undefined ? {} : { profile }),
+  };
   // The source counts Δβ without the offset that a scan found; a constant phase is all that the shift leaves out.
   return (band) => ({
     ...gratingSpectrum(grating, { ...band, first: band.first + offset }, options),

@@ -12,9 +12,10 @@ import { DRAWS, SPECTRAL_DRAWS } from "./draws.ts";
 import { type DrawnTraits, drawTraits, type MismatchSensitivity } from "./drawn_traits.ts";
 import { FigureDraws } from "./figure_draws.ts";
 import { basisOf } from "./figure_basis.ts";
-import { drawGrating, inspectedGrating } from "./grating_draws.ts";
+import { drawGrating, gratingForPeak, inspectedGrating } from "./grating_draws.ts";
 import type { GuideInputs } from "./guide_inputs.ts";
 import { drawOperatingPoints, type OperatingDraws } from "./operating_draws.ts";
+import { mismatchProfile } from "./mismatch_profile.ts";
 import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
 import { type PairNotes, type PairQuestion, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
 import { type PlatformModel, validTemperatures } from "./platform_model.ts";
@@ -67,14 +68,17 @@ export function predictGuide(
   guide: GuideInputs,
   options: PredictOptions,
 ): GuidePrediction {
-  const drawn = drawTraits(guide, mismatchSensitivity(model, checked, guide));
+  const sensitivity = mismatchSensitivity(model, checked, guide);
+  const drawn = drawTraits(guide, sensitivity);
+  const profile = mismatchProfile(guide.along ?? [], sensitivity);
   const out: Draws = new FigureDraws();
   const loss = (name: Figure, alpha: Float64Array) =>
     alpha.forEach((a, k) => out.set(name, k, given(toDbPerCm(a))));
   loss("loss_db_cm_signal", drawn.lossS);
   loss("loss_db_cm_idler", drawn.lossI);
   const walls = inspectedGrating(guide);
-  const asked = question(checked, guide, walls);
+  // Along a guide that varies, the design period is no longer where it converts best: its peak is looked for.
+  const asked = { ...question(checked, guide, gratingForPeak(guide, walls, profile)), profile };
   const points = guide.poledLength > 0 ? operatingPoints(model, asked) : { reason: "the guide is not poled" };
   if ("reason" in points) return nowhere(checked, guide, out, points.reason);
   const nominalOffset = guide.offset?.value ?? 0;
@@ -89,7 +93,7 @@ export function predictGuide(
     out,
     checked,
   );
-  const site = siteAt(model, guide, checked.processKey, point.waves, point.temperatureC, offset);
+  const site = siteAt(model, guide, checked.processKey, point.waves, point.temperatureC, offset, profile);
   if ("reason" in site) return nowhere(checked, guide, out, site.reason);
   const pairs = predictSite(site, checked, guide, drawn, walls, exists, out, options);
   const remarks = [...pairs?.remarks ?? [], ...indexRemarks(model, site)];

@@ -5,6 +5,7 @@ import {
   type Grating,
   type GratingSpectrum,
   gratingSpectrum,
+  type MismatchProfile,
   spectrumPower,
 } from "../poling/mod.ts";
 import {
@@ -35,6 +36,8 @@ export interface Site {
   readonly scale: number;
   /** Offset of Δβ that the operating point was found with, 1/m. */
   readonly offset: number;
+  /** What the cross-section makes of Δβ as it varies along the guide. */
+  readonly profile: MismatchProfile | undefined;
   readonly p: IndexSlice;
   readonly s: IndexSlice;
   readonly i: IndexSlice;
@@ -49,6 +52,7 @@ export function siteAt(
   waves: ThreeWaves,
   temperatureC: number,
   offset: number,
+  profile?: MismatchProfile,
 ): Site | { readonly reason: string } {
   const d = model.nonlinear(waves);
   if (typeof d !== "number") return d;
@@ -68,6 +72,7 @@ export function siteAt(
     temperatureC,
     scale: model.expansion(temperatureC),
     offset,
+    profile,
     p,
     s,
     i,
@@ -181,7 +186,8 @@ const SCAN_NODES = 65;
 
 /** |φ|² at the operating point and the acceptance around it, of gratings at one site: what they share is done once. */
 export function responder(site: Site, scan: Scan): (grating: Grating, decay: number) => Response {
-  const { guide, scale, waves } = site;
+  const { guide, scale, waves, profile } = site;
+  const varying = profile === undefined ? {} : { profile };
   const width = 2 * Math.PI / siteLength(site);
   const here = siteMismatch(site, waves);
   const window = scanWindow(site, scan, here, width);
@@ -193,7 +199,12 @@ export function responder(site: Site, scan: Scan): (grating: Grating, decay: num
     : tabulate((l) => siteMismatch(site, scan.waves(l)), window.from, window.to, SCAN_NODES);
   return (grating, decay) => {
     const band = bandCovering(low, high, (grating.end - grating.start) * scale);
-    const spectrum = gratingSpectrum(grating, band, { decay, scale, poledLength: guide.poledLength });
+    const spectrum = gratingSpectrum(grating, band, {
+      decay,
+      scale,
+      poledLength: guide.poledLength,
+      ...varying,
+    });
     return { power: spectrumPower(spectrum, here), acceptance: acceptanceOf(spectrum, mismatch) };
   };
 }

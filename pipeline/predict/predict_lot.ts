@@ -9,6 +9,7 @@ import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
 import { type GuideRecord, loadDesign, type LotDesign, recordsOf } from "../records.ts";
 import type { LoadedRequest } from "../requests.ts";
 import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
+import { alongGuides } from "../traits/along_guide.ts";
 import { completeWalls, streamWalls } from "../traits/guide_walls.ts";
 import { loadTraits } from "../traits/load_traits.ts";
 import { TraitPools } from "../traits/pools.ts";
@@ -151,6 +152,7 @@ async function compute(
   const traits = await loadTraits(ledger, reduced);
   const pools = new TraitPools(loaded.platform, design, traits);
   const windows = windowsByUnit(await recordsOf(ledger, "poling", lot));
+  const along = alongGuides(await recordsOf(ledger, "geometry", lot), loaded.platform);
   const unavailable = unavailableDies(design, await recordsOf(ledger, "cutback", lot));
   const stores = requests.map((r) => new FigureStore(lot, r.name, design.guides));
   const roles: Computed["roles"] = requests.map(() => []);
@@ -175,7 +177,7 @@ async function compute(
     const give = async (index: number, walls: Float64Array | null) => {
       const guide = design.guides[index]!;
       for (const [k, request] of setup.requests.entries()) {
-        const resolved = resolveGuide(pools, windows, guide, request.checked, walls);
+        const resolved = resolveGuide(pools, windows, guide, request.checked, walls, along);
         roles[k]!.push({ guide, roles: resolved.roles });
         await feed.add({ request: k, guide: index, inputs: resolved.inputs });
       }

@@ -4,6 +4,7 @@ import type { Platform } from "../../shared/schemas/platform.ts";
 import type { Ledger, Manifest } from "../ledger/mod.ts";
 import { type GuideRecord, type LotDesign, recordsOf } from "../records.ts";
 import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
+import { alongGuides } from "../traits/along_guide.ts";
 import { completeWalls } from "../traits/guide_walls.ts";
 import { TraitPools } from "../traits/pools.ts";
 import type { TraitRow } from "../traits/trait_row.ts";
@@ -59,7 +60,8 @@ export async function deriveRoles(
   const windows = windowsByUnit(await recordsOf(past, "poling", lot));
   const file = completeWalls(traits).get(guide.guide_id);
   const walls = file === undefined ? null : await wallsOf(past, lot, guide.guide_id, file);
-  const { roles } = resolveGuide(pools, windows, guide, checked, walls);
+  const along = alongGuides(await recordsOf(past, "geometry", lot), platform);
+  const { roles } = resolveGuide(pools, windows, guide, checked, walls, along);
   // A wall list read again makes the earlier one a trait row, too; only the list that was integrated is under the figure.
   return roles.map((role) =>
     role.trait === "walls"

@@ -1,4 +1,10 @@
-import { bandForPeak, gratingFromWalls, gratingSpectrum, mainPeaks } from "../../models/poling/mod.ts";
+import {
+  bandForPeak,
+  type Grating,
+  gratingFromWalls,
+  gratingSpectrum,
+  mainPeaks,
+} from "../../models/poling/mod.ts";
 import { mm, um } from "../../shared/units.ts";
 import { designsFor, type SolveSetting } from "../designs/mod.ts";
 import { sha256 } from "../json_file.ts";
@@ -7,6 +13,7 @@ import { buildModel, loadPlatform } from "../platforms.ts";
 import { loadDesign } from "../records.ts";
 import { MODEL_VERSION } from "../model_version.ts";
 import { OutOfDate } from "../out_of_date.ts";
+import { type AlongByGuide, alongGuides } from "../traits/along_guide.ts";
 import { streamWalls } from "../traits/guide_walls.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { REDUCE_REMARK_SHAPE, type ReduceRemark, TRAIT_SHAPE, type TraitRow } from "../traits/trait_row.ts";
@@ -56,7 +63,8 @@ export async function reduceLot(
     solving,
   );
   const readings = await loadReadings(ledger, design, loaded.platform, buildModel({ ...loaded, designs }));
-  const walls = await walkWalls(ledger, readings);
+  const along = alongGuides(readings.geometry, loaded.platform);
+  const walls = await walkWalls(ledger, readings, along);
   const geometry = reduceGeometry(readings);
   const parts: Reduced[] = [
     reduceCutback(readings),
@@ -67,7 +75,7 @@ export async function reduceLot(
     walls.reduced,
     geometry,
     // A scan's offset is what is left beside the geometry, as the prediction will know it.
-    reduceTuning(readings, walls.peaks, new TraitPools(loaded.platform, design, geometry.traits)),
+    reduceTuning(readings, walls.peaks, new TraitPools(loaded.platform, design, geometry.traits), along),
   ];
   const remarks = [...unknownUncertainties(readings), ...parts.flatMap((p) => p.remarks)];
   const run = await ledger.commit({
@@ -90,6 +98,7 @@ export async function reduceLot(
 async function walkWalls(
   ledger: Ledger,
   readings: LotReadings,
+  along: AlongByGuide,
 ): Promise<{ reduced: Reduced; peaks: WallPeaks }> {
   const scanned = new Set(readings.tuning.map((r) => r.guide_id));
   const reduced: Reduced = { traits: [], remarks: [] };
@@ -100,15 +109,22 @@ async function walkWalls(
     reduced.remarks.push(...remarks);
     const complete = traits.some((t) => t.trait === "walls_complete" && t.value === 1);
     if (complete && scanned.has(walls.guide_id)) {
-      const peak = peakOf(readings, walls.guide_id, walls.positions_um);
-      if (peak !== null) peaks.set(walls.guide_id, { deltaBeta: peak, refs: walls.refs });
+      const { peak, grating } = peakOf(readings, walls.guide_id, walls.positions_um);
+      const varies = (along.get(walls.guide_id) ?? []).some((v) => v.along !== null);
+      if (peak !== null) {
+        peaks.set(walls.guide_id, { deltaBeta: peak, refs: walls.refs, grating: varies ? grating : null });
+      }
     }
   }
   return { reduced, peaks };
 }
 
 /** |Δβ|·scale (1/m) at the peak of a guide's |φ|², which is even in Δβ: the domains' signs are real. */
-function peakOf(readings: LotReadings, guideId: string, positions: Float64Array): number | null {
+function peakOf(
+  readings: LotReadings,
+  guideId: string,
+  positions: Float64Array,
+): { peak: number | null; grating: Grating } {
   const guide = readings.design.guideById.get(guideId)!;
   const period = um(guide.period_um);
   const poledLength = mm(guide.poled_length_mm);
@@ -124,7 +140,7 @@ function peakOf(readings: LotReadings, guideId: string, positions: Float64Array)
     bandForPeak(vector, vector, period, grating.end - grating.start),
     { poledLength },
   );
-  return mainPeaks(spectrum)[0]?.deltaBeta ?? null;
+  return { peak: mainPeaks(spectrum)[0]?.deltaBeta ?? null, grating };
 }
 
 function traitTable(lot: string, rows: readonly TraitRow[]): TableStream {

@@ -1,8 +1,17 @@
 import { effectiveLength, fitTuningScan, isRefused, mismatchSpread } from "../../models/metrology/mod.ts";
+import { mismatchProfile, parameterSlope } from "../../models/decision/mod.ts";
 import { mismatch } from "../../models/guides/mod.ts";
+import {
+  bandForPeak,
+  type Grating,
+  gratingSpectrum,
+  mainPeaks,
+  uniformGrating,
+} from "../../models/poling/mod.ts";
 import { mm, nm, um } from "../../shared/units.ts";
 import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
-import type { TuningRecord } from "../records.ts";
+import type { GuideRecord, TuningRecord } from "../records.ts";
+import type { AlongByGuide } from "../traits/along_guide.ts";
 import { resolveGeometry } from "../traits/geometry.ts";
 import type { TraitPools } from "../traits/pools.ts";
 import { type ReadingRef, refsOf, type TraitRow } from "../traits/trait_row.ts";
@@ -15,15 +24,22 @@ const CORRELATION_LENGTH = 1e-3;
 export interface WallPeak {
   readonly deltaBeta: number;
   readonly refs: readonly ReadingRef[];
+  /** Kept of guides whose cross-section was read along them: there the peak depends on the process, too. */
+  readonly grating?: Grating | null;
 }
 /** By guide id. */
 export type WallPeaks = ReadonlyMap<string, WallPeak>;
 
 /** Tuning scans: the offset of Δβ that moves the calculated centre onto the measured one, and what the width says. */
-export function reduceTuning(readings: LotReadings, peaks: WallPeaks, pools: TraitPools): Reduced {
+export function reduceTuning(
+  readings: LotReadings,
+  peaks: WallPeaks,
+  pools: TraitPools,
+  along: AlongByGuide = new Map(),
+): Reduced {
   const out: Reduced = { traits: [], remarks: [] };
   const scans = grouped(readings.tuning, (r) => `${r.unit}|${r.scan}|${r.polarisations}|${r.file_name}`);
-  for (const scan of scans) reduceScan(readings, scan, peaks, pools, out);
+  for (const scan of scans) reduceScan(readings, scan, peaks, pools, along, out);
   return out;
 }
 
@@ -32,6 +48,7 @@ function reduceScan(
   scan: TuningRecord[],
   peaks: WallPeaks,
   pools: TraitPools,
+  along: AlongByGuide,
   out: Reduced,
 ): void {
   const first = scan[0]!;
@@ -48,7 +65,7 @@ function reduceScan(
   const x = (r: TuningRecord) => overTemperature ? r.temperature_c : r.wavelength_nm;
   if (guide.poled_length_mm <= 0) return refuse("the guide is not poled");
   const { geometry, errors } = resolveGeometry(pools, guide);
-  const { process, mismatchAt } = scanProcess(readings, first, geometry);
+  const { process, mismatchAt, wavesAt } = scanProcess(readings, first, geometry);
   // Fitted against the calculated Δβ·scale of each point, on which alone φ depends, and not against x: over a scan in
   // temperature Δβ bends and the period expands, and a sinc² in x would take both for a shift of the centre.
   const { expansion } = readings.model;
@@ -65,7 +82,17 @@ function reduceScan(
   const nearest = scan[points.reduce((best, _, k) => off(k) < off(best) ? k : best, 0)]!;
   // Scans of several processes may be of one guide, and Δβ of either sign: the sign is the scan's own.
   const peak = peaks.get(guide.guide_id)?.deltaBeta ?? 2 * Math.PI / um(guide.period_um);
-  const target = Math.sign(fit.centre.value) * peak;
+  const sign = Math.sign(fit.centre.value);
+  const varying = along.get(guide.guide_id) ?? [];
+  const profile = mismatchProfile(varying.flatMap((v) => v.along ?? []), (parameter) =>
+    parameterSlope(
+      readings.model,
+      { waves: wavesAt(nearest), geometry, temperatureC: nearest.temperature_c },
+      parameter,
+    ));
+  const target = profile === undefined
+    ? sign * peak
+    : peakAlong(guide, peaks.get(guide.guide_id)?.grating ?? null, profile, sign);
   const scale = expansion(nearest.temperature_c);
   const common = {
     ...placeOf(first, readings.design),
@@ -78,6 +105,7 @@ function reduceScan(
     readings: [
       ...refsOf("tuning", scan),
       ...peaks.get(guide.guide_id)?.refs ?? [],
+      ...(profile === undefined ? [] : varying.flatMap((v) => v.along === null ? [] : v.refs)),
       ...errors.flatMap((e) => e.resolved.used.flatMap((k) => pools.rows[k]!.readings)),
     ],
     detail: `peak near ${x(nearest)} ${overTemperature ? "°C" : "nm"}, width ${
@@ -106,17 +134,33 @@ function reduceScan(
   }
 }
 
+/** Δβ·scale (1/m, signed) at the peak of |φ|² of a guide whose mismatch varies along it. */
+function peakAlong(
+  guide: GuideRecord,
+  walls: Grating | null,
+  profile: NonNullable<ReturnType<typeof mismatchProfile>>,
+  sign: number,
+): number {
+  const period = um(guide.period_um);
+  const poledLength = mm(guide.poled_length_mm);
+  const grating = walls ?? uniformGrating({ start: mm(guide.poled_from_mm), length: poledLength, period });
+  const vector = sign * 2 * Math.PI / period;
+  const band = bandForPeak(vector, vector, period, grating.end - grating.start);
+  return mainPeaks(gratingSpectrum(grating, band, { poledLength, profile }))[0]?.deltaBeta ?? vector;
+}
+
 /** The process that a scan is about, and its Δβ as calculated at a point of the scan. */
 function scanProcess({ model }: LotReadings, { polarisations }: TuningRecord, geometry: GuideGeometry) {
   const [a, b, polP] = polarisations.split(/[+>]/) as [Polarisation, Polarisation, Polarisation];
   // Signal and idler in alphabetic order: the inputs of a second harmonic have none.
   const [polS, polI] = a <= b ? [a, b] : [b, a];
+  const wavesAt = ({ wavelength_nm }: TuningRecord): ThreeWaves => {
+    const lambda = nm(wavelength_nm);
+    return { lambdaP: lambda / 2, lambdaS: lambda, lambdaI: lambda, polP, polS, polI };
+  };
   return {
     process: `${polP}>${polS}+${polI}`,
-    mismatchAt({ wavelength_nm, temperature_c }: TuningRecord): number {
-      const lambda = nm(wavelength_nm);
-      const waves: ThreeWaves = { lambdaP: lambda / 2, lambdaS: lambda, lambdaI: lambda, polP, polS, polI };
-      return mismatch(model.index, waves, temperature_c, geometry);
-    },
+    wavesAt,
+    mismatchAt: (r: TuningRecord): number => mismatch(model.index, wavesAt(r), r.temperature_c, geometry),
   };
 }

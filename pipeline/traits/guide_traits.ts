@@ -11,6 +11,7 @@ import { mm, toNm, um } from "../../shared/units.ts";
 import type { Basis, Polarisation } from "../../shared/vocabulary.ts";
 import { processName } from "../../models/guides/mod.ts";
 import type { GuideRecord, PolingRecord } from "../records.ts";
+import type { AlongByGuide, AlongReadings } from "./along_guide.ts";
 import { resolveGeometry } from "./geometry.ts";
 import type { ResolvedTrait, TraitPools } from "./pools.ts";
 import type { ReadingRef } from "./trait_row.ts";
@@ -65,6 +66,7 @@ export function resolveGuide(
   guide: GuideRecord,
   checked: CheckedRequest,
   walls: Float64Array | null,
+  along: AlongByGuide = new Map(),
 ): ResolvedGuide {
   const roles: RoleTrait[] = [];
   const { lambdaP, lambdaS, lambdaI, polP, polS, polI } = checked.waves;
@@ -114,6 +116,8 @@ export function resolveGuide(
   if (offset !== null) roles.push(roleOf("phase_matching", offset));
   const { geometry, errors } = resolveGeometry(pools, guide);
   for (const { resolved } of errors) roles.push(roleOf("phase_matching", resolved));
+  const varying = along.get(guide.guide_id) ?? [];
+  for (const reading of varying) roles.push(alongRole(reading, guide));
   // A scan of the guide itself measures the sum of all errors of its geometry: they must not be added a second time.
   const scanned = offset?.basis === "measured";
   const inputs: GuideInputs = {
@@ -122,6 +126,7 @@ export function resolveGuide(
     geometryErrors: scanned
       ? []
       : errors.map(({ parameter, resolved }) => ({ parameter, trait: used(resolved) })),
+    along: varying.flatMap((v) => v.along ?? []),
     length: mm(guide.length_mm),
     period: um(guide.period_um),
     poledFrom: mm(guide.poled_from_mm),
@@ -154,6 +159,28 @@ const roleOf = (role: Role, t: ResolvedTrait): RoleTrait => ({
   refs: [],
   note: t.otherWidth ? "from guides of another design width" : null,
 });
+
+/** Readings along a guide, used or seen to say nothing. */
+function alongRole({ parameter, along, sd, u, places, refs }: AlongReadings, guide: GuideRecord): RoleTrait {
+  return {
+    role: "phase_matching",
+    trait: `${parameter} along the guide`,
+    wavelength_nm: null,
+    polarisation: null,
+    value: null,
+    u: null,
+    basis: "measured",
+    from: guide.guide_id,
+    distance: null,
+    used: [],
+    refs,
+    note: along === null
+      ? `${places} places scatter by ${sd.toPrecision(2)}, no more than their u of ${
+        u.toPrecision(2)
+      }: not used`
+      : `varies by ${sd.toPrecision(2)} over ${places} places`,
+  };
+}
 
 function resolvePoling(
   pools: TraitPools,
