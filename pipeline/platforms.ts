@@ -2,7 +2,7 @@ import { basename, dirname, join } from "node:path";
 import { fileURLToPath } from "node:url";
 import { parse } from "csv-parse/sync";
 import type { z } from "zod";
-import { type PlatformModel, platformModel } from "../models/decision/mod.ts";
+import { type PlatformModel, platformModel, processRemarks } from "../models/decision/mod.ts";
 import {
   type AreaModel,
   bulkIndexModel,
@@ -13,6 +13,7 @@ import {
   type IndexModel,
   type SolvedDesigns,
   SOLVER_VERSION,
+  type SolverIndexModel,
   tableAreaModel,
   tableIndexModel,
 } from "../models/guides/mod.ts";
@@ -161,9 +162,21 @@ function guideModels(
       };
     case "solver": {
       const solved = designs ?? { tables: [], areas: [], outputs: [] };
-      return { index: designsIndexModel(solved), area: designsAreaModel(solved) };
+      return {
+        index: withRemarks(designsIndexModel(solved), processRemarks(index)),
+        area: designsAreaModel(solved),
+      };
     }
   }
+}
+
+/** Remarks that hold of every answer of an index. */
+function withRemarks(index: SolverIndexModel, always: readonly string[]): SolverIndexModel {
+  if (always.length === 0) return index;
+  return {
+    ...index,
+    remark: (...question) => [...always, index.remark(...question)].filter((r) => r !== null).join("\n"),
+  };
 }
 
 async function exists(path: string): Promise<boolean> {

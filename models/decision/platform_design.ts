@@ -40,11 +40,19 @@ export function platformDesign(
     : { ...common, geometry: { width_um: drawn_um }, span: { width_um } };
 }
 
-/** Remarks on process parameters beyond what their law was published for. */
-export const processRemarks = (index: SolverIndex): string[] =>
-  index.profile === "titanium-diffused" && index.diffusion !== undefined
-    ? diffusionRemarks(index.diffusion.temperature_c)
-    : [];
+/** Remarks on process parameters that are estimates, or beyond what their law was published for. */
+export function processRemarks(index: SolverIndex): string[] {
+  if (index.profile !== "titanium-diffused" || index.diffusion === undefined) return [];
+  const { hours, temperature_c } = index.diffusion;
+  const length = titaniumDiffusionLength(hours, temperature_c) * 1e6;
+  return [
+    `estimated_diffusion: lengths of ${
+      length.toFixed(2)
+    } µm from ${hours} h at ${temperature_c} °C, by constants from ` +
+    `memory; give measured diffusion_lateral_um and diffusion_depth_um instead`,
+    ...diffusionRemarks(temperature_c),
+  ];
+}
 
 function processOf(index: SolverIndex): SolverProcess {
   if (index.profile === "rubidium-exchanged") {

@@ -220,7 +220,7 @@ function indexRemarks(model: PlatformModel, { guide: { geometry }, waves, temper
     model.index.remark(waves.polS, waves.lambdaS, temperatureC, geometry),
     model.index.remark(waves.polI, waves.lambdaI, temperatureC, geometry),
   ];
-  return [...new Set(found.filter((r) => r !== null))];
+  return [...new Set(found.filter((r) => r !== null).flatMap((r) => r.split("\n")))];
 }
 
 /** A guide for which the process is not defined: nothing but its losses is known. */

@@ -58,7 +58,7 @@ export interface IndexModel {
   range(pol: Polarisation, geometry?: GuideGeometry): IndexRange;
   /**
    * A sentence where the bulk index under the answer is beyond its published range, or a guide of this geometry carries
-   * more than one mode; else null.
+   * more than one mode; several on lines of their own; else null.
    */
   remark(pol: Polarisation, lambda: number, temperatureC: number, geometry?: GuideGeometry): string | null;
   /**

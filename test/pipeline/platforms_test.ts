@@ -111,3 +111,43 @@ Deno.test("a bad row of a platform's table is refused with its line", () =>
     const loaded = await loadPlatform("mine", folder);
     throws(() => buildModel(loaded), refusal(/Cannot use platform/));
   }));
+
+Deno.test("a diffusion given by time and temperature says of every answer that it is an estimate", () =>
+  withFolder(async (folder) => {
+    const built = JSON.parse(await Deno.readTextFile("models/platforms/ti-ln-zcut.json"));
+    const { diffusion_lateral_um: _x, diffusion_depth_um: _y, ...index } = built.index;
+    await write(folder, "mine.json", {
+      ...built,
+      platform: "mine",
+      index: { ...index, diffusion: { hours: 8.5, temperature_c: 1120 } },
+    });
+    const loaded = await loadPlatform("mine", folder);
+    const { designs } = await designsFor(null, loaded, [7], [], { grid: COARSE });
+    const remark = buildModel({ ...loaded, designs }).index.remark("TM", 1550e-9, 50, { width_um: 7 })!;
+    match(remark, /^estimated_diffusion: lengths of \d\.\d\d µm from 8\.5 h at 1120 °C/);
+    match(remark, /beyond_published_range: diffusion at 1120 °C/);
+    // Neither of the two, and both, are refused.
+    for (const diffusion of [{}, { diffusion_depth_um: 4, diffusion: { hours: 8, temperature_c: 1050 } }]) {
+      await write(folder, "mine.json", { ...built, platform: "mine", index: { ...index, ...diffusion } });
+      await rejects(loadPlatform("mine", folder), refusal(/or diffusion in their place/));
+    }
+  }));
+
+Deno.test("a platform whose modes are solved takes no constant area, and a film table is held against its substrate", () =>
+  withFolder(async (folder) => {
+    const built = JSON.parse(await Deno.readTextFile("models/platforms/rb-ktp-zcut.json"));
+    await write(folder, "mine.json", { ...built, platform: "mine", effective_area_um2: 40 });
+    await rejects(loadPlatform("mine", folder), refusal(/effective_area_um2 40 beside index\.from "solver"/));
+    const table = { from: "table", n_eff: "n.csv", substrate: "silica" };
+    await write(folder, "mine.json", { ...KTP, index: table });
+    await write(
+      folder,
+      "n.csv",
+      "wavelength_nm,polarisation,temperature_c,width_um,n_eff\n1550,TE,25,4,1.70\n1550,TE,25,5,1.75\n",
+    );
+    // KTP's n_y at 1550 nm is 1.734 (König & Wong 2004).
+    await rejects(
+      loadPlatform("mine", folder),
+      refusal(/found n_eff 1\.75 at .* width_um 5; .* the film's 1\.73/),
+    );
+  }));

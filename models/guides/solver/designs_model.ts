@@ -55,7 +55,7 @@ export function designsIndexModel({ tables, outputs }: SolvedDesigns): SolverInd
       const { design, model } = nearestDesign(models, geometry ?? models[0]!.design.geometry);
       const several = severalModes(outputs, design, pol, lambda);
       const all = [model.remark(pol, lambda, T), several].filter((r) => r !== null);
-      return all.length === 0 ? null : all.join("; ");
+      return all.length === 0 ? null : all.join("\n");
     },
     cutOff(pol, geometry, lambda) {
       const { design, model } = nearestDesign(models, geometry ?? models[0]!.design.geometry);
