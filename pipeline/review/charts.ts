@@ -189,7 +189,7 @@ export function basisChart(label: string, rows: RequestReview["rests_on"]): Html
   return chart(label, {
     width: WIDTH,
     height: 50 + 24 * names.length,
-    marginLeft: 265,
+    marginLeft: 290,
     marginRight: 20,
     marginBottom: 36,
     x: { label: "guides", grid: true },

@@ -1,6 +1,11 @@
-/** A number as a page shows it: significant digits, a true minus sign, a dash for none. */
+/** A number as a page shows it: significant digits, a true minus sign, powers of ten written out, a dash for none. */
 export function shown(x: number | null | undefined, digits = 3): string {
   if (x === null || x === undefined || Number.isNaN(x)) return "–";
+  const power = x === 0 ? 0 : Math.floor(Math.log10(Math.abs(x)));
+  const whole = Number.isInteger(x) && Math.abs(x) < 1e6 && digits >= 4;
+  if (Number.isFinite(x) && !whole && (power >= 5 || power <= -5)) {
+    return `${shown(x / 10 ** power, digits)} × 10${raised(power)}`;
+  }
   return String(Number(x.toPrecision(digits))).replace("-", "−");
 }
 

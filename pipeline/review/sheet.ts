@@ -5,18 +5,25 @@ import { shown, withU } from "./numbers.ts";
 import { tableOf } from "./table.ts";
 
 /** Rows of readings and of requests on the sheet: it has to fit one page of A4. */
-const READINGS = 10;
+const READINGS = 7;
 const REQUESTS = 3;
 
 const CSS = `
-main { display: block; }
+.pair { display: flex; flex-wrap: wrap; gap: 0 2rem; }
+.pair > section { flex: 1 1 20rem; }
+.pair > .scroll { flex: 0 1 auto; }
 h2 { font-size: 1.05rem; margin: .8rem 0 .3rem; }
 .verdict { font-size: 1.05rem; }
 .hash { font-size: .82rem; color: var(--soft); }
 @media print {
-  html { font-size: 7.6pt; line-height: 1.3; }
+  html { font-size: 7.4pt; line-height: 1.25; }
+  .answers, .pair { gap: 0 1rem; }
+  header p, figcaption, caption { margin: 0; padding: 0; }
+  ol, ul { padding-left: 1.4rem; }
   h1 { font-size: 1.5rem; }
-  h2 { margin: .5rem 0 .15rem; }
+  h2 { margin: .4rem 0 .1rem; padding: 0; }
+  td, th { white-space: nowrap; }
+  td:last-child { white-space: normal; }
   table { font-size: .95rem; }
   th, td { padding: .06rem .5rem .06rem 0; }
   p, ul { margin: .15rem 0; }
@@ -191,7 +198,7 @@ function readings(d: SheetData): Html {
         r.wavelength_nm === null ? "" : `${shown(r.wavelength_nm, 5)} nm ${r.polarisation ?? ""}`,
         withU(r.value, r.u),
         r.method,
-        r.readings.map((ref) =>
+        r.readings.slice(0, 2).map((ref) =>
           `${ref.file_name}:${
             ref.lines.slice(0, 3).map(([a, b]) => a === b ? String(a) : `${a}–${b}`).join(", ")
           }`
@@ -203,7 +210,7 @@ function readings(d: SheetData): Html {
 
 function provenance({ provenance: p, platform, readings: rows, requests }: SheetData): Html {
   const files = new Map(
-    rows.flatMap((r) => r.readings.map((ref) => [ref.file_name, ref.source_file] as const)),
+    rows.flatMap((r) => r.readings.slice(0, 2).map((ref) => [ref.file_name, ref.source_file] as const)),
   );
   const names = new Set(requests.map((r) => r.request));
   const list: [string, string][] = [

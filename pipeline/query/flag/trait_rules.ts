@@ -1,3 +1,4 @@
+import { mean, quantileOfSorted } from "../../../shared/statistics.ts";
 import { fTail } from "../../../models/decision/tails.ts";
 import { defaultOf } from "../../traits/platform_defaults.ts";
 import type { TraitRow } from "../../traits/trait_row.ts";
@@ -112,10 +113,14 @@ export function waferContrast(facts: LotFacts, rule: RuleOf<"wafer_contrast">): 
     if (wafers.length < 2) continue;
     for (const wafer of wafers) {
       const others = wafers.filter((w) => w !== wafer);
-      const rest = others.reduce((sum, w) => sum + w.value, 0) / others.length;
+      // The middle of three or more others: one that is out must not make its twins look out.
+      const several = others.length >= 3;
+      const values = others.map((w) => w.value).sort((x, y) => x - y);
+      const rest = several ? quantileOfSorted(values, 0.5) : mean(values);
       const own = Math.hypot(wafer.se, series.spread.waferSd);
       const theirs = Math.hypot(...others.map((w) => Math.hypot(w.se, series.spread.waferSd))) /
-        others.length;
+        others.length *
+        (several ? Math.sqrt(Math.PI / 2) : 1); // what a median of normal values scatters more
       const u = Math.hypot(own, theirs);
       const z = (wafer.value - rest) / u;
       // Of two wafers either is as far from the other: the one farther from the platform's default is out.

@@ -126,7 +126,13 @@ function pumpWords({ platform }: LotFacts, { request }: CheckedRequest, e: Ranke
   const marked = (mw: number) =>
     limit !== undefined && mw > limit ? ` — above the platform's ${num(limit)} mW` : "";
   if (request.process === "pair-generation") {
-    if (pump.mean !== null) out.push(`pump at ${num(pump.mean, 6)} nm (u ${num(pump.u ?? 0, 2)} nm)`);
+    if (pump.mean !== null) {
+      out.push(
+        `pump at ${num(pump.mean, 6)} nm${
+          pump.u === null || pump.u === 0 ? "" : ` (u ${num(pump.u, 2)} nm)`
+        }`,
+      );
+    }
     if (request.pump?.average_power_mw !== undefined) {
       out.push(
         `the request pumps with ${num(request.pump.average_power_mw)} mW${
