@@ -1,6 +1,7 @@
+import { type SolvedDesigns, solvedOutputAt } from "../../models/guides/mod.ts";
 import type { GuidePrediction } from "../../models/decision/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
-import type { Request } from "../../shared/schemas/request.ts";
+import type { CheckedRequest, Request } from "../../shared/schemas/request.ts";
 
 /**
  * Remarks on power above what the platform's notes allow: stated by the request, or suggested by a figure. The limit is an
@@ -25,4 +26,34 @@ export function powerCautions(
       Number(power.toPrecision(3))
     } mW, is above the platform's ${limit} mW${why}`
   );
+}
+
+/**
+ * Where the design's field was solved: what a request's fibres take of it, beside the Gaussian estimate that the figures
+ * rest on. The two differ by the field's tail into the crystal, which a Gaussian of the same size does not have.
+ */
+export function couplingRemarks(
+  designs: SolvedDesigns | null,
+  width_um: number,
+  { request, waves }: Pick<CheckedRequest, "request" | "waves">,
+  figures: GuidePrediction["figures"],
+): string[] {
+  if (designs === null) return [];
+  const arms = [
+    ["signal", request.signal.fibre_mfd_um, waves.polS, waves.lambdaS],
+    ["idler", request.idler?.fibre_mfd_um, waves.polI, waves.lambdaI],
+  ] as const;
+  return arms.flatMap(([arm, fibre_um, pol, lambda]) => {
+    const used = figures.find((f) => f.figure === `coupling_${arm}`)?.mean ?? null;
+    if (fibre_um === undefined || used === null) return [];
+    const solved = solvedOutputAt(designs.outputs, { width_um }, pol, lambda);
+    if (solved === null || solved.result.cutOff) return [];
+    const own = solved.result.fibres.find(({ mfd }) => Math.abs(mfd / (fibre_um * 1e-6) - 1) < 1e-9);
+    return own === undefined ? [] : [
+      `solved_coupling: the ${arm}'s fibre takes ${
+        own.value.toFixed(3)
+      } of the design's solved field; used is the ` +
+      `Gaussian estimate of its mode size, ${used.toFixed(3)}`,
+    ];
+  });
 }

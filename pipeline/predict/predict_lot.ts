@@ -13,7 +13,7 @@ import { alongGuides } from "../traits/along_guide.ts";
 import { completeWalls, streamWalls } from "../traits/guide_walls.ts";
 import { loadTraits } from "../traits/load_traits.ts";
 import { TraitPools } from "../traits/pools.ts";
-import { powerCautions } from "./cautions.ts";
+import { couplingRemarks, powerCautions } from "./cautions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import type { Job, WorkerSetup } from "./jobs.ts";
 import { type JobPool, openPool } from "./pool.ts";
@@ -168,7 +168,11 @@ async function compute(
   const total = design.guides.length * requests.length;
   let finished = 0;
   const pool = openPool(setup, options.workers, total, ({ request, guide, prediction }) => {
-    const cautions = powerCautions(loaded.platform, requests[request]!.request, prediction.figures);
+    const asked = requests[request]!;
+    const cautions = [
+      ...powerCautions(loaded.platform, asked.request, prediction.figures),
+      ...couplingRemarks(designs, design.guides[guide]!.width_um, asked, prediction.figures),
+    ];
     stores[request]!.set(guide, { ...prediction, remarks: [...prediction.remarks, ...cautions] });
     options.onProgress?.(++finished, total);
   });
