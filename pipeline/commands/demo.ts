@@ -8,6 +8,7 @@ import { loadPlatform } from "../platforms.ts";
 import { loadRequests, requestFolders } from "../requests.ts";
 import { note, print, threadsOf } from "./common.ts";
 import { DemoChecks } from "./demo_checks.ts";
+import { DemoFlags } from "./demo_flags.ts";
 import { bringUpToDate, solvingProgress } from "./predictions.ts";
 import { rankCommand } from "./rank.ts";
 
@@ -70,8 +71,9 @@ export async function demoCommand(
   await using ledger = await openLedger(ledgerDir, { write: false });
   const faults = lots.flatMap((l) => l.faults);
   const checks = new DemoChecks(ledger, requests);
+  const flags = new DemoFlags(ledger);
   const found: string[][] = [];
-  for (const fault of faults) found.push(await checks.missed(fault));
+  for (const fault of faults) found.push([...await checks.missed(fault), ...await flags.missed(fault)]);
   print("\nPlanted faults");
   for (const [k, fault] of faults.entries()) {
     const missed = found[k]!;
@@ -80,12 +82,19 @@ export async function demoCommand(
     for (const line of missed) print(wrap(`not so: ${line}`, 70).map((l) => `          ${l}`).join("\n"));
   }
   const missed = found.filter((f) => f.length > 0).length;
+  const alarms: string[] = [];
+  for (const { lot } of lots.filter((l) => l.faults.length === 0)) {
+    const own = await flags.falseAlarms(lot);
+    alarms.push(...own);
+    print(`${own.length === 0 ? "quiet " : "ALARM "}  ${lot} was made without a fault and raises no alarm`);
+    for (const line of own) print(wrap(`not so: ${line}`, 70).map((l) => `          ${l}`).join("\n"));
+  }
   print(
     `\n${
       faults.length - missed
     } of ${faults.length} planted faults found. Try: wavelot trace R08-1/03 --figure heralding_signal --request heralded-1582 --ledger ${ledgerDir}`,
   );
-  return missed === 0 ? 0 : 1;
+  return missed + alarms.length === 0 ? 0 : 1;
 }
 
 /** A folder that holds something else than an earlier demo is left alone. */
