@@ -35,10 +35,15 @@ export function chart(label: string, options: Plot.PlotOptions): Html {
   return new Html(tidied(svg.outerHTML));
 }
 
-/** The style that the library puts into every chart stands once in the page; coordinates need no 14 digits. */
+const PLACES = /\s(?:d|transform|x|y|x1|x2|y1|y2|cx|cy|r|width|height)="[^"]*"/g;
+
+/**
+ * The style that the library puts into every chart stands once in the page; places on the picture need no 14 digits. Only
+ * places are cut: a text must keep its digits.
+ */
 function tidied(svg: string): string {
   return svg.replace(/<style>[\s\S]*?<\/style>/, "")
-    .replace(/(\d+\.\d\d)\d+/g, "$1");
+    .replace(PLACES, (place) => place.replace(/(\d+\.\d\d)\d+/g, "$1"));
 }
 
 /** A picture with its caption and what belongs under it. */

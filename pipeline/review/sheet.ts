@@ -13,7 +13,7 @@ const CSS = `
 .pair > section { flex: 1 1 20rem; }
 .pair > .scroll { flex: 0 1 auto; }
 h2 { font-size: 1.05rem; margin: .8rem 0 .3rem; }
-.verdict { font-size: 1.05rem; }
+.decided { font-size: 1.05rem; }
 .hash { font-size: .82rem; color: var(--soft); }
 @media print {
   html { font-size: 7.4pt; line-height: 1.25; }
@@ -128,7 +128,7 @@ function requestSection(r: SheetRequest, k: number): Html {
   const rows = Object.entries(r.figures).filter(([f]) => f !== "operating_temperature_c");
   return html`
     <section aria-labelledby="request-${k}"><h2 id="request-${k}">For ${r.request}</h2>
-    <p class="verdict"><span class="tag ${r.decision}">${r.decision}</span> Guide <strong>${r
+    <p class="decided"><span class="tag ${r.decision}">${r.decision}</span> Guide <strong>${r
       .guide}</strong>, probability ${shown(
         r.probability,
       )} that it meets every requirement${r.limited_by === null || r.decision === "accept"
