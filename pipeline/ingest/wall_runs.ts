@@ -31,6 +31,7 @@ export class WallRuns {
   #measured: string | null = null;
   #instrument: string | null = null;
   #orphans = 0;
+  #strays: number[] = [];
 
   constructor(readonly known: KnownIds, readonly emit: (run: WallRun) => void) {
     this.#last = new Float64Array(known.guideCount);
@@ -47,6 +48,8 @@ export class WallRuns {
     measured: string | null,
     instrument: string | null,
   ): Problem | null {
+    if (guide === this.#guide) { for (const stray of this.#strays) this.bad(guide, stray); }
+    this.#strays = [];
     const last = this.#last[guide.index]!;
     if (!(position > last && position < guide.length_mm * 1000)) {
       this.bad(guide, line);
@@ -81,6 +84,14 @@ export class WallRuns {
     }
     // The guide that comes next may as well be the one that lost a wall.
     if (guide === null) this.#orphans++;
+  }
+
+  /**
+   * Notes a wall row of a guide that the mask doesn't have and that is no misspelling of one. In the middle of a guide's
+   * walls it is taken for one of them; before, behind or between the walls of others it is nobody's.
+   */
+  stray(line: number): void {
+    this.#strays.push(line);
   }
 
   /** Hands on the last run, and the counts that came after their guide's last run. */

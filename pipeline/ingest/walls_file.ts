@@ -81,7 +81,9 @@ export async function readWallsCsv(
     const { wafer, die, guide, position_um, measured_at, instrument } = checked.values;
     const owner = known.owner(String(wafer), String(die), String(guide));
     if (!("scope" in owner)) {
-      walls.bad(known.probableGuide(String(wafer), String(die), String(guide)), line);
+      const meant = known.probableGuide(String(wafer), String(die), String(guide));
+      if (meant === null) walls.stray(line);
+      else walls.bad(meant, line);
       run.quarantine(line, cells, owner);
       return null;
     }

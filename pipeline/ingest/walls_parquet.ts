@@ -54,7 +54,8 @@ export async function readWallsParquet(
       const usable = value !== null && Number.isFinite(value) && value > 0;
       const problem = owner?.problem ?? (usable ? null : noPosition(batch, i));
       if (problem !== null && problem !== undefined) {
-        walls.bad(owner?.guide ?? null, row);
+        if (owner !== null && owner.problem !== null && owner.guide === null) walls.stray(row);
+        else walls.bad(owner?.guide ?? null, row);
         run.quarantine(row, cellsOf(batch, i), problem);
         continue;
       }

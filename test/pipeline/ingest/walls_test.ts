@@ -73,6 +73,18 @@ Deno.test("a wall under a misspelt guide counts against the guide that was meant
   ]);
 });
 
+Deno.test("a wall of a guide that is not on the mask counts against a guide only in the middle of its walls", async () => {
+  const file =
+    `${HEAD}K07-1,77,g01,2\nK07-1,05,g01,4\nK07-1,77,g01,6\nK07-1,05,g01,8\nK07-1,05,g02,4\nK07-1,77,g01,9\n`;
+  const { rows, quarantine } = await ingestOne("walls.csv", file);
+  assert.deepEqual(short(rows).map((r) => [r[0], r[4]]), [
+    ["K07-1/05/g01", 1],
+    ["K07-1/05/g01", 1],
+    ["K07-1/05/g02", 0],
+  ]);
+  assert.equal(quarantine.length, 3);
+});
+
 Deno.test("a wall needs a guide: those of a whole die are kept aside", async () => {
   const { quarantine } = await ingestOne("walls.csv", `${HEAD}K07-1,05,,4\n`);
   assert.deepEqual([quarantine[0]!["column"], quarantine[0]!["reason"]], ["guide", "the cell is empty"]);
