@@ -22,5 +22,5 @@ export function page(title: string, body: Html, css = ""): string {
     ${body}
       </body>
     </html>
-  `.text;
+  `.text.replace(/\s*\n\s*/g, "\n"); // the templates' indentation would be a third of a large page
 }

@@ -56,9 +56,9 @@ export function mapsSection(data: ReviewData): Html {
         ];
       }),
     };
-    return html`<h3>Decision for ${request.request}</h3><div class="maps">${maps}</div><p>${decisionLegend()}</p>${
+    return html`<div><h3>Decision for ${request.request}</h3><div class="maps">${maps}</div>${
       foldedTable(table)
-    }`;
+    }</div>`;
   });
   return html`
     <p
@@ -80,7 +80,8 @@ function traitSection(
   const domain: [number, number] = low === high
     ? [low - Math.abs(low || 1) * 0.01, high + Math.abs(high || 1) * 0.01]
     : [low, high];
-  const maps = data.wafers.map(({ wafer }) =>
+  const read = new Set(trait.dies.map((d) => d.wafer));
+  const maps = data.wafers.filter((w) => read.has(w.wafer)).map(({ wafer }) =>
     figure(
       wafer,
       traitMap(

@@ -42,8 +42,8 @@ const PLACES = /\s(?:d|transform|x|y|x1|x2|y1|y2|cx|cy|r|width|height)="[^"]*"/g
  * places are cut: a text must keep its digits.
  */
 function tidied(svg: string): string {
-  return svg.replace(/<style>[\s\S]*?<\/style>/, "")
-    .replace(PLACES, (place) => place.replace(/(\d+\.\d\d)\d+/g, "$1"));
+  return svg.replace(/<style>[\s\S]*?<\/style>/, "").replaceAll(/ class="plot-\w+"/g, "")
+    .replace(PLACES, (place) => place.replace(/(\d+\.\d)\d+/g, "$1"));
 }
 
 /** A picture with its caption and what belongs under it. */

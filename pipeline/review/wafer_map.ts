@@ -52,8 +52,8 @@ function outline({ diameter }: Frame): [number, number][] {
   const r = diameter / 2;
   const notch = 0.05; // rad to either side
   const points: [number, number][] = [];
-  for (let k = 0; k <= 120; k++) {
-    const angle = -Math.PI / 2 + notch + (2 * Math.PI - 2 * notch) * k / 120;
+  for (let k = 0; k <= 60; k++) {
+    const angle = -Math.PI / 2 + notch + (2 * Math.PI - 2 * notch) * k / 60;
     points.push([r * Math.cos(angle), r * Math.sin(angle)]);
   }
   points.push([0, -0.94 * r], points[0]!);
@@ -125,7 +125,7 @@ export function traitMap(
       ...d,
       value: read?.value ?? null,
       hover: read === undefined
-        ? `${d.die}: not read`
+        ? ""
         : `${d.die}: ${shown(read.value, 4)} ± ${shown(read.u, 2)} ${trait.unit}, ${read.rows} reading${
           read.rows === 1 ? "" : "s"
         }`,
@@ -141,7 +141,6 @@ export function traitMap(
       fill: "none",
       stroke: "currentColor",
       strokeOpacity: 0.35,
-      title: "hover",
     }),
     Plot.rect(known, { ...box, fill: "value", title: "hover" }),
     ...frame.room < 30 ? [] : [Plot.text(known, {

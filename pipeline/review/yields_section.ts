@@ -100,7 +100,8 @@ export function chartsSection(data: ReviewData): Html {
   if (charts.length > 0) {
     return html`
       <p
-        class="soft">Individuals charts: centre and limits are those of the lots before (mean, and mean moving range over 1.128). z of the newest lot allows for limits that rest on few lots; a diamond marks a point that signals.</p>${yields}${charts}
+        class="soft">Individuals charts: centre and limits are those of the lots before (mean, and mean moving range over 1.128). z of the newest lot allows for limits that rest on few lots; a diamond marks a point that signals.</p>${yields}<div
+        class="pair">${charts}</div>
     `;
   }
   return html`${few}${yields}`;
