@@ -126,9 +126,9 @@ export function traitMap(
       value: read?.value ?? null,
       hover: read === undefined
         ? ""
-        : `${d.die}: ${shown(read.value, 4)} ± ${shown(read.u, 2)} ${trait.unit}, ${read.rows} reading${
-          read.rows === 1 ? "" : "s"
-        }`,
+        : `${d.die}: ${shown(read.value, 4)} ± ${shown(read.u, 2)}${
+          trait.unit === "" ? "" : ` ${trait.unit}`
+        }, ${read.rows} reading${read.rows === 1 ? "" : "s"}`,
     };
   });
   const [low, high] = domain;
