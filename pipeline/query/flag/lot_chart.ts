@@ -99,12 +99,13 @@ export function lotCharts(
   const rules = Object.keys(rule.run_rules) as RunRule[];
   const charts: (LotChart | null)[] = [];
   for (const key of lot.series.keys()) {
-    const [trait, nm, pol] = key.split("|") as [string, string, string];
+    const [trait, nm, pol, process] = key.split("|") as [string, string, string, string];
     if (!(rule.traits as string[]).includes(trait)) continue;
     const words = seriesWords({
       trait: trait as never,
       wavelength_nm: nm === "" ? null : Number(nm),
       polarisation: pol === "" ? null : pol as "TE" | "TM",
+      process: process === "" ? null : process,
     });
     const value = (l: LotSummary) => l.series.get(key)?.mean ?? null;
     charts.push(chartOf(key, words, unitOf(trait), lots, value, rules, rule.least_earlier_lots));

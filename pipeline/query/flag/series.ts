@@ -25,6 +25,8 @@ export interface Series {
   readonly trait: TraitName;
   readonly wavelength_nm: number | null;
   readonly polarisation: Polarisation | null;
+  /** `TE>TE+TM`, for traits of a process. */
+  readonly process: string | null;
   readonly spread: Spread;
   readonly dies: readonly DieMean[];
 }
@@ -44,9 +46,9 @@ export function seriesOf(
     else held.push(row);
   }
   return [...byKey.entries()].sort(([a], [b]) => compareIds(a, b)).map(([key, own]) => {
-    const { trait, wavelength_nm, polarisation } = own[0]!;
+    const { trait, wavelength_nm, polarisation, process } = own[0]!;
     const spread = priorSpread(platform, trait, polarisation);
-    return { key, trait, wavelength_nm, polarisation, spread, dies: dieMeans(own, spread) };
+    return { key, trait, wavelength_nm, polarisation, process, spread, dies: dieMeans(own, spread) };
   });
 }
 
@@ -178,8 +180,13 @@ export const traitWords = (trait: string): string => WORDS[trait] ?? trait;
 
 /** `loss at 1550 nm TM`. */
 export function seriesWords(
-  { trait, wavelength_nm, polarisation }: Omit<Series, "key" | "spread" | "dies">,
+  { trait, wavelength_nm, polarisation, process }: Pick<
+    Series,
+    "trait" | "wavelength_nm" | "polarisation" | "process"
+  >,
 ): string {
   const at = wavelength_nm === null ? "" : ` at ${Math.round(wavelength_nm)} nm`;
-  return `${traitWords(trait)}${at}${polarisation === null ? "" : ` ${polarisation}`}`;
+  return `${traitWords(trait)}${at}${polarisation === null ? "" : ` ${polarisation}`}${
+    process === null ? "" : ` (${process})`
+  }`;
 }

@@ -123,6 +123,7 @@ function sentenceOf(
 function sharesOf(series: Series, rows: readonly TraitRow[]): TraitReview["shares"] {
   const own = rows.filter((r) =>
     r.trait === series.trait && r.guide_id !== null && r.polarisation === series.polarisation &&
+    r.process === series.process &&
     (r.wavelength_nm === null) === (series.wavelength_nm === null) &&
     (r.wavelength_nm === null || Math.round(r.wavelength_nm) === Math.round(series.wavelength_nm!))
   );
