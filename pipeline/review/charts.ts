@@ -68,7 +68,12 @@ export function controlChart(c: ChartReview): Html {
     marginRight: 84,
     marginBottom: 60,
     x: { type: "point", domain: data.map((d) => d.lot), label: null, tickRotate: data.length > 12 ? -60 : 0 },
-    y: { label: c.unit === "" ? "share" : c.unit, nice: true, zero: false },
+    y: {
+      label: c.unit === "" ? "share" : c.unit,
+      nice: true,
+      zero: false,
+      tickFormat: (v: number) => shown(v, 5),
+    },
     marks: [
       Plot.ruleY(limits, {
         y: (d) => d[1],

@@ -49,6 +49,8 @@ export function flagsSection({ flags }: ReviewData): Html {
 ${flags.filter((f) => f.severity !== "note").map(one)}${
     notes.length === 0
       ? null
-      : html`<details><summary>${notes.length} notes</summary>${notes.map(one)}</details>`
+      : html`<details><summary>${notes.length} ${notes.length === 1 ? "note" : "notes"}</summary>${
+        notes.map(one)
+      }</details>`
   }${foldedTable(table)}`;
 }

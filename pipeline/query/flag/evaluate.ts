@@ -76,7 +76,15 @@ function flagsOfRule(facts: LotFacts, rule: Rule, own: LotSummary, all: readonly
     case "quarantine":
       return quarantined(facts, rule);
     case "lot_chart":
-      return lotChart(own, all, rule, facts.platform.platform);
+      return lotChart(
+        own,
+        all,
+        rule,
+        facts.platform.platform,
+        (key) =>
+          seriesOf(facts.traits, rule.traits, facts.platform).filter((s) => s.key === key)
+            .flatMap((s) => s.dies.flatMap((d) => d.refs)),
+      );
     case "spread_growth":
       return spreadGrowth(facts, rule, earlierLots(own, all));
   }

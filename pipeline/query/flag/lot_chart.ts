@@ -9,11 +9,12 @@ import {
 } from "../../../models/decision/charts/mod.ts";
 import { tTwoSided } from "../../../models/decision/tails.ts";
 import { compareIds } from "../../../shared/ids.ts";
+import type { ReadingRef } from "../../traits/trait_row.ts";
 import type { LotSummary } from "./facts.ts";
 import type { RuleOf, Severity } from "./rules.ts";
 import { seriesWords, unitOf } from "./series.ts";
 import { suspectsOfLot } from "./suspects_of.ts";
-import { type Flag, num, percent, plural, SEVERITY_ORDER } from "./types.ts";
+import { type Flag, mergeRefs, num, percent, plural, SEVERITY_ORDER } from "./types.ts";
 
 /** One quantity over the lots of a platform in time order, the lot under review last. */
 export interface LotChart {
@@ -73,7 +74,8 @@ function chartOf(
   const { centre, individuals } = individualsCharts(values, { baseline: n, rules });
   const last = individuals.points.at(-1)!;
   const z = individuals.points.map((p) => p.z);
-  if (!Number.isNaN(last.z)) z[n] = correctedZ(last.z, n);
+  if (Number.isNaN(last.z)) return null; // earlier lots that do not differ at all judge nothing
+  z[n] = correctedZ(last.z, n);
   const signals = joinSignals(runSignals(z, rules).filter((s) => s.at === n));
   return {
     key,
@@ -136,6 +138,7 @@ export function lotChart(
   all: readonly LotSummary[],
   rule: RuleOf<"lot_chart">,
   platform: string,
+  readingsOf: (key: string) => readonly ReadingRef[],
 ): Flag[] {
   const base = { scope: "lot" as const, id: lot.lot, lot: lot.lot, rule: rule.rule };
   const earlier = earlierLots(lot, all);
@@ -179,7 +182,7 @@ export function lotChart(
           earlier_lots: c.lots.length - 1,
           run_rules: c.signals.map((s) => s.rule).join(", "),
         },
-        readings: [],
+        readings: mergeRefs(readingsOf(c.key)),
       },
       suspects: suspectsOfLot(lot, earlier),
     };

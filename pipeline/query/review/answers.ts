@@ -118,7 +118,7 @@ function payOff(requests: readonly RequestReview[], flags: readonly ReviewFlag[]
     const first = r.limits.find((l) => l.rejected > 0);
     const limit = first === undefined
       ? ""
-      : `; ${first.figure} stops ${first.rejected}, of which ${
+      : `; ${first.figure} limits ${first.rejected + first.on_hold}, of which ${
         first.would_pass === 0 ? "none" : first.would_pass
       } would pass if it alone were met`;
     return [

@@ -125,6 +125,7 @@ Deno.test("a lot that steps out of line with its forerunners is flagged; too few
   const flags = flagsOf(shifted, only("lot-chart"), summaries);
   const duty = flags.find((f) => f.brief.startsWith("duty cycle"))!;
   equal(duty.scope, "lot");
+  deepEqual(duty.evidence.readings.map((r) => r.file_name), ["readings/x.csv"]);
   equal(duty.severity, "act");
   match(
     duty.statement,
