@@ -8,23 +8,12 @@ import {
   outcomeResidual,
   yieldFloor,
 } from "./prediction_rules.ts";
-import {
-  coatingOffTarget,
-  coatingUnknown,
-  quarantined,
-  readingRemarks,
-  unlistedCut,
-} from "./reading_rules.ts";
+import { coatingOffTarget, coatingUnknown } from "./coating_rules.ts";
+import { quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
+import { periodOff, repeatedReadings, scanResidual } from "./residual_rules.ts";
 import type { Rule } from "./rules.ts";
 import { seriesOf, summaryOf } from "./series.ts";
-import {
-  periodOff,
-  repeatedReadings,
-  scanResidual,
-  spreadGrowth,
-  traitLimit,
-  waferContrast,
-} from "./trait_rules.ts";
+import { spreadGrowth, traitLimit, waferContrast } from "./trait_rules.ts";
 import { TRAIT_NAMES } from "./facts.ts";
 import { type Flag, SEVERITY_ORDER } from "./types.ts";
 

@@ -19,7 +19,7 @@ import type {
   WaferFact,
 } from "./facts.ts";
 import { guidePeriods } from "./period.ts";
-import { dieVerdicts } from "./prediction_rules.ts";
+import { dieVerdicts } from "./verdicts.ts";
 import { seriesOf, summaryOf } from "./series.ts";
 import { TRAIT_NAMES } from "./facts.ts";
 

@@ -6,7 +6,7 @@ import { RUN_RULES } from "../../../models/decision/charts/mod.ts";
 import type { LotFacts, LotSummary } from "../flag/facts.ts";
 import { earlierLots, lotCharts } from "../flag/lot_chart.ts";
 import { predictionsInForce } from "../flag/load.ts";
-import { inPlay } from "../flag/prediction_rules.ts";
+import { inPlay } from "../flag/verdicts.ts";
 import type { Rule } from "../flag/rules.ts";
 import { suspectName, suspectSentence } from "../flag/suspects_of.ts";
 import type { Flag } from "../flag/types.ts";

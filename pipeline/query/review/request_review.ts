@@ -4,7 +4,7 @@ import { BASES, type Basis } from "../../../shared/vocabulary.ts";
 import type { Budget, BudgetRow, LimitRow, RankedDie, RequestReview, ShareOf } from "../../review_types.ts";
 import type { Engine } from "../engine.ts";
 import type { LotFacts, PredictionFacts } from "../flag/facts.ts";
-import { type DieVerdict, dieVerdicts, lotYield } from "../flag/prediction_rules.ts";
+import { type DieVerdict, dieVerdicts, lotYield } from "../flag/verdicts.ts";
 import { type RankedEntry, rankIn } from "../rank.ts";
 
 const FACTORS = ["survival", "facet", "coupling", "filter", "detector", "heralding"] as const;

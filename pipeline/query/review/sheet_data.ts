@@ -5,7 +5,7 @@ import type { CheckedRequest } from "../../../shared/schemas/request.ts";
 import type { Ledger } from "../../ledger/mod.ts";
 import type { SheetData, SheetReading, SheetRequest } from "../../review_types.ts";
 import type { LotFacts, PredictionFacts } from "../flag/facts.ts";
-import { inPlay } from "../flag/prediction_rules.ts";
+import { inPlay } from "../flag/verdicts.ts";
 import { num } from "../flag/types.ts";
 import { RANKED_FROM, type RankedEntry, rankIn } from "../rank.ts";
 import { engineWith } from "../sql.ts";

@@ -2,7 +2,7 @@ import { deepEqual, equal, match, ok, rejects } from "node:assert/strict";
 import { flagsOf, summaryOfFacts } from "../../../../pipeline/query/flag/evaluate.ts";
 import type { DecisionFact, FigureFact, LotFacts } from "../../../../pipeline/query/flag/facts.ts";
 import { periodFromWalls, periodFromWindows } from "../../../../pipeline/query/flag/period.ts";
-import { type DieVerdict, lotYield } from "../../../../pipeline/query/flag/prediction_rules.ts";
+import { type DieVerdict, lotYield } from "../../../../pipeline/query/flag/verdicts.ts";
 import { loadRules, type Rule } from "../../../../pipeline/query/flag/rules.ts";
 import type { TraitRow } from "../../../../pipeline/traits/trait_row.ts";
 import { type CheckedRequest, checkRequest, requestSchema } from "../../../../shared/schemas/request.ts";
