@@ -1,7 +1,8 @@
 // Pure: no I/O, no clock, no hidden randomness.
+import type { Figure } from "../../shared/schemas/figures.ts";
 import { absent, type Outcome } from "./outcome.ts";
 
-/** Output names of this room's figures, in their own units. */
+/** Those of the output's figures that this room computes, in their own units. */
 export const PAIR_FIGURES = [
   "pairs_per_pulse",
   "pair_rate_hz",
@@ -28,7 +29,7 @@ export const PAIR_FIGURES = [
   "filter_idler",
   "detector_signal",
   "detector_idler",
-] as const;
+] as const satisfies readonly Figure[];
 export type PairFigure = typeof PAIR_FIGURES[number];
 
 /** Figures that need the pair spectrum. */
