@@ -12,7 +12,6 @@ import { absent, given, type Outcome } from "../pairs/mod.ts";
 import type { Grating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import { toNm, toPercentPerW, toPercentPerWCm2 } from "../../shared/units.ts";
-import { DRAWS } from "./draws.ts";
 import type { DrawnTraits } from "./drawn_traits.ts";
 import type { FigureDraws } from "./figure_draws.ts";
 import {
@@ -49,13 +48,14 @@ export interface ConversionQuestion {
 export function predictConversion(question: ConversionQuestion, out: FigureDraws<ConversionFigure>): void {
   const { site, checked, drawn, gratings } = question;
   const { process } = checked.request;
+  const count = drawn.size.draws;
   const conversion = conversionOf(process, site);
   const alphas = (k: number) => ({ p: drawn.lossP[k]!, s: drawn.lossS[k]!, i: drawn.lossI[k]! });
-  const weights = Array.from({ length: DRAWS }, (_, k) => conversion.weight(alphas(k)));
+  const weights = Array.from({ length: count }, (_, k) => conversion.weight(alphas(k)));
   const respond = responder(site, acceptanceScan(process, site.waves));
   const responses: Response[] = gratings.map((grating, j) => respond(grating, weights[j]!.decay));
   const power = inputPower(checked);
-  for (let k = 0; k < DRAWS; k++) {
+  for (let k = 0; k < count; k++) {
     if (question.exists[k] !== 1) {
       for (
         const name of ["efficiency_percent_per_w", "efficiency_percent_per_w_cm2", "acceptance_nm"] as const

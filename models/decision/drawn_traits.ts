@@ -2,11 +2,12 @@
 import type { GeometryParameter } from "../guides/mod.ts";
 import { randomFrom } from "../../shared/random.ts";
 import { dbPerCm } from "../../shared/units.ts";
-import { type Bounds, DRAWS, drawTrait, nestedStrata, SPECTRAL_DRAWS } from "./draws.ts";
+import { type Bounds, DEFAULT_SAMPLE, drawTrait, nestedStrata, type SampleSize } from "./draws.ts";
 import type { ArmTraits, GuideInputs, UsedTrait } from "./guide_inputs.ts";
 
 /** Draws of everything uncertain in one guide; index k of every array belongs to draw k. */
 export interface DrawnTraits {
+  readonly size: SampleSize;
   /** Power attenuations, 1/m. */
   readonly lossP: Float64Array;
   readonly lossS: Float64Array;
@@ -39,27 +40,33 @@ const DUTY: Bounds = { low: 0.02, high: 0.98 };
  * Draws the traits of a guide. The seed is the guide's id and the trait's key, so a draw does not depend on the order of
  * guides, and one reading used twice (a second harmonic's signal and idler) is drawn once.
  */
-export function drawTraits(guide: GuideInputs, sensitivity: MismatchSensitivity = () => 0): DrawnTraits {
+export function drawTraits(
+  guide: GuideInputs,
+  sensitivity: MismatchSensitivity = () => 0,
+  size: SampleSize = DEFAULT_SAMPLE,
+): DrawnTraits {
+  const { draws, spectral } = size;
   const held = new Map<string, Float64Array>();
   const strataOf = (key: string): Float64Array => {
     let strata = held.get(key);
     if (strata === undefined) {
-      held.set(key, strata = nestedStrata(DRAWS, SPECTRAL_DRAWS, randomFrom(`${guide.id}|${key}`)));
+      held.set(key, strata = nestedStrata(draws, spectral, randomFrom(`${guide.id}|${key}`)));
     }
     return strata;
   };
   // One reading shares its probabilities, not its values: a mode size is scaled to the wavelength of each arm.
   const draw = (trait: UsedTrait, bounds: Bounds): Float64Array =>
-    drawTrait(trait, bounds, trait.u === 0 ? new Float64Array(DRAWS) : strataOf(trait.key));
+    drawTrait(trait, bounds, trait.u === 0 ? new Float64Array(draws) : strataOf(trait.key));
   const loss = (trait: UsedTrait) => draw(trait, NOT_NEGATIVE).map(dbPerCm);
   const arm = ({ mode, facet }: ArmTraits): DrawnArm => ({
     modeX: "reason" in mode ? null : draw(mode.x, SIZE),
     modeY: "reason" in mode ? null : draw(mode.y, SIZE),
     reflectivity: facet.state === "bare" ? null : draw(facet.reflectivity, SHARE),
   });
-  const none = () => new Float64Array(DRAWS);
+  const none = () => new Float64Array(draws);
   const { poling } = guide;
   return {
+    size,
     lossP: loss(guide.pumpLoss),
     lossS: loss(guide.signal.loss),
     lossI: loss(guide.idler.loss),

@@ -4,10 +4,16 @@ import { lowerQuantile } from "../pooling/lower_quantile.ts";
 import type { Random } from "../../shared/random.ts";
 import type { Uncertain } from "../../shared/vocabulary.ts";
 
-/** Draws of the whole sample; all of them feed the heralding budget. */
-export const DRAWS = 256;
-/** Draws for which spectra are computed; they are the first ones of the sample. */
-export const SPECTRAL_DRAWS = 16;
+/** How many draws a prediction is made of. */
+export interface SampleSize {
+  /** Draws of the whole sample; all of them feed budgets, temperatures and efficiencies. A multiple of `spectral`. */
+  readonly draws: number;
+  /** Draws for which spectra are computed; they are the first ones of the sample. */
+  readonly spectral: number;
+}
+
+/** What a guide is predicted with unless its decision asks for more. */
+export const DEFAULT_SAMPLE: SampleSize = { draws: 256, spectral: 16 };
 
 /**
  * Probabilities of a nested Latin hypercube for one input: all `n` values fall one into each of n equal strata, and the

@@ -1,17 +1,19 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { Outcome } from "../pairs/mod.ts";
-import { DRAWS } from "./draws.ts";
 
 /** Draws of named figures: NaN where a draw has no value, with the first reason that was given. */
 export class FigureDraws<Name extends string> {
   readonly #draws = new Map<Name, Float64Array>();
   readonly #reasons = new Map<Name, string>();
 
+  /** @param count how many draws there are */
+  constructor(readonly count: number) {}
+
   /** Draws of a figure; made, all NaN, when it is first asked for. */
   of(name: Name): Float64Array {
     let draws = this.#draws.get(name);
     if (draws === undefined) {
-      draws = new Float64Array(DRAWS).fill(NaN);
+      draws = new Float64Array(this.count).fill(NaN);
       this.#draws.set(name, draws);
     }
     return draws;

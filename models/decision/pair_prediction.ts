@@ -25,7 +25,6 @@ import { type Grating, gratingSpectrum } from "../poling/mod.ts";
 import type { ArmRequest, CheckedRequest, FilterRequest } from "../../shared/schemas/request.ts";
 import { lambdaOf, nm, omegaOf, um } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
-import { DRAWS, SPECTRAL_DRAWS } from "./draws.ts";
 import { between, carried } from "./blend_spectra.ts";
 import type { DrawnArm, DrawnTraits } from "./drawn_traits.ts";
 import type { FigureDraws } from "./figure_draws.ts";
@@ -188,7 +187,7 @@ export interface PairQuestion {
 }
 
 /**
- * Draws of all pair figures of one guide. Spectra are computed for the first {@link SPECTRAL_DRAWS} draws, each with its
+ * Draws of all pair figures of one guide. Spectra are computed for the spectral draws, the first ones, each with its
  * own pump loss and grating; later draws take them in turn, with pair numbers rescaled to their own pump loss and duty.
  */
 export function predictPairs(
@@ -208,7 +207,7 @@ export function predictPairs(
   const poled = convertingStretches(guide, shown).map((s) => ({ from: s.from * scale, to: s.to * scale }));
   let notes: PairNotes | null = null;
   const remarks = new Set<string>();
-  for (let k = 0; k < DRAWS; k++) {
+  for (let k = 0; k < drawn.size.draws; k++) {
     const j = k % spectra.length;
     const spectrum = scaledCounts(spectra[j]!, madeRatio(question, k, j));
     const chain: PairChain = {
@@ -250,7 +249,7 @@ function pairSpectra(question: PairQuestion, pump: PairPump, scratch: PairScratc
   );
   // Without any operating point only the filter's share is asked for: one spectrum is enough.
   if (!exists.some((x) => x === 1)) return [first];
-  const draws = Array.from({ length: SPECTRAL_DRAWS }, (_, k) => k);
+  const draws = Array.from({ length: drawn.size.spectral }, (_, k) => k);
   if (walls === null) return draws.map((k) => k === 0 ? first : carried(first, base, draw(spectrumOf(k))));
   // An inspected grating leaves pump loss alone to vary, and that weakly: linear between its extremes.
   const byLoss = [...draws].sort((a, b) => drawn.lossP[a]! - drawn.lossP[b]!);

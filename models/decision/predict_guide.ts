@@ -8,7 +8,7 @@ import { nm, toDbPerCm, toNm } from "../../shared/units.ts";
 import type { Basis, Polarisation } from "../../shared/vocabulary.ts";
 import { conformity, decide, type Decision, meets, summarise } from "./conformity.ts";
 import { type ConversionFigure, predictConversion } from "./conversion_prediction.ts";
-import { DRAWS, SPECTRAL_DRAWS } from "./draws.ts";
+import { DEFAULT_SAMPLE, type SampleSize } from "./draws.ts";
 import { type DrawnTraits, drawTraits, type MismatchSensitivity } from "./drawn_traits.ts";
 import { FigureDraws } from "./figure_draws.ts";
 import { basisOf } from "./figure_basis.ts";
@@ -53,14 +53,16 @@ export interface GuidePrediction {
 export interface PredictOptions {
   readonly recorded: RecordedSpectrum | null;
   readonly scratch?: PairScratch;
+  /** Draws to begin with; {@link DEFAULT_SAMPLE} if left out. */
+  readonly size?: SampleSize;
 }
 
 type Draws = FigureDraws<Figure>;
 
 /**
- * All figures of one guide for one request, by seeded sampling (JCGM 101:2008): {@link DRAWS} draws of every trait for
- * budgets, temperatures and efficiencies, {@link SPECTRAL_DRAWS} of them with spectra of their own. The same inputs give
- * the same answer to the bit.
+ * All figures of one guide for one request, by seeded sampling (JCGM 101:2008): draws of every trait for budgets,
+ * temperatures and efficiencies, the first of them with spectra of their own. The same inputs give the same answer to the
+ * bit.
  */
 export function predictGuide(
   model: PlatformModel,
@@ -69,9 +71,9 @@ export function predictGuide(
   options: PredictOptions,
 ): GuidePrediction {
   const sensitivity = mismatchSensitivity(model, checked, guide);
-  const drawn = drawTraits(guide, sensitivity);
+  const drawn = drawTraits(guide, sensitivity, options.size ?? DEFAULT_SAMPLE);
   const profile = mismatchProfile(guide.along ?? [], sensitivity);
-  const out: Draws = new FigureDraws();
+  const out: Draws = new FigureDraws(drawn.size.draws);
   const loss = (name: Figure, alpha: Float64Array) =>
     alpha.forEach((a, k) => out.set(name, k, given(toDbPerCm(a))));
   loss("loss_db_cm_signal", drawn.lossS);
@@ -159,7 +161,7 @@ function drawPoints(
   const exists = draws.matched;
   const unmatched = absent(unmatchedReason(checked));
   let nearest = -1;
-  for (let k = 0; k < DRAWS; k++) {
+  for (let k = 0; k < offsets.length; k++) {
     out.set("operating_temperature_c", k, given(draws.temperatureC[k]!));
     out.set("operating_pump_nm", k, exists[k] === 1 ? given(toNm(draws.lambdaP[k]!)) : unmatched);
     const off = (n: number) => Math.abs(offsets[n]! - nominalOffset);
@@ -183,7 +185,7 @@ function predictSite(
   const anywhere = exists.some((x) => x === 1);
   const gratings = walls !== null
     ? [walls]
-    : Array.from({ length: anywhere ? SPECTRAL_DRAWS : 1 }, (_, k) =>
+    : Array.from({ length: anywhere ? drawn.size.spectral : 1 }, (_, k) =>
       drawGrating(guide, { duty: drawn.duty[k]!, dutySd: drawn.dutySd[k]!, merged: drawn.merged[k]! }, k));
   predictConversion(
     { site, checked, drawn, gratings, exists, unmatched },
@@ -231,7 +233,7 @@ function nowhere(checked: CheckedRequest, guide: GuideInputs, out: Draws, reason
       out.fill(figure, absent(reason));
     }
   }
-  return conclude(checked, guide, out, new Uint8Array(DRAWS), null, null, []);
+  return conclude(checked, guide, out, new Uint8Array(out.count), null, null, []);
 }
 
 function conclude(
@@ -246,7 +248,7 @@ function conclude(
   const { request, requirements } = checked;
   const met = requirements.map((r) => meets(out.of(r.figure), r));
   const { joint, each, limiting } = conformity(met, exists);
-  const matched = exists.reduce((sum, x) => sum + x, 0) / DRAWS;
+  const matched = exists.reduce((sum, x) => sum + x, 0) / out.count;
   const weakest = limiting === null ? 1 : each[limiting]!;
   const limitedBy = matched < weakest
     ? "operating_temperature_c"
@@ -260,16 +262,16 @@ function conclude(
       // Two limits on one figure are two requirements: the probability shown is of both.
       const own = met.filter((_, i) => requirements[i]!.figure === figure);
       const reason = out.reason(figure);
-      const absentIn = summary === null || summary.valid === DRAWS
+      const absentIn = summary === null || summary.valid === out.count
         ? null
-        : `${reason} (in ${DRAWS - summary.valid} of ${DRAWS} draws)`;
+        : `${reason} (in ${out.count - summary.valid} of ${out.count} draws)`;
       return {
         figure,
         mean: summary?.mean ?? null,
         u: summary?.u ?? null,
         lo: summary?.lo ?? null,
         hi: summary?.hi ?? null,
-        probability: own.length === 0 ? null : conformity(own, new Uint8Array(DRAWS).fill(1)).joint,
+        probability: own.length === 0 ? null : conformity(own, new Uint8Array(out.count).fill(1)).joint,
         basis: basisOf(figure, guide),
         reason: summary === null ? reason ?? "not computed" : absentIn,
       };

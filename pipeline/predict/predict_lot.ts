@@ -1,4 +1,4 @@
-import { DRAWS, SPECTRAL_DRAWS } from "../../models/decision/mod.ts";
+import { DEFAULT_SAMPLE } from "../../models/decision/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import { askedBy, designsFor, type SolveSetting } from "../designs/mod.ts";
 import { sha256 } from "../json_file.ts";
@@ -78,8 +78,8 @@ export async function predictLot(
     const fingerprint = sha256(JSON.stringify([
       "predict",
       MODEL_VERSION,
-      DRAWS,
-      SPECTRAL_DRAWS,
+      DEFAULT_SAMPLE.draws,
+      DEFAULT_SAMPLE.spectral,
       reduced.fingerprint,
       loaded.fingerprint,
       request.fingerprint,
@@ -102,8 +102,8 @@ export async function predictLot(
         request_sha256: request.fingerprint,
         platform: loaded.platform.platform,
         platform_sha256: loaded.fingerprint,
-        draws: DRAWS,
-        spectral_draws: SPECTRAL_DRAWS,
+        draws: DEFAULT_SAMPLE.draws,
+        spectral_draws: DEFAULT_SAMPLE.spectral,
         definition: request.request,
       },
       modelVersion: MODEL_VERSION,
