@@ -23,15 +23,41 @@ export interface ReviewFlag {
   readonly suspects: readonly ReviewSuspect[];
 }
 
+/** Confidence of every interval of a review. */
+export const CONFIDENCE = 0.95;
+
+export interface Interval {
+  readonly low: number;
+  readonly high: number;
+}
+
+/** Good dies to be expected from the probabilities, with 95 % ranges of their number. */
+export interface ExpectedDies {
+  readonly dies: number;
+  /** If dies are good or bad independently of each other. */
+  readonly low: number;
+  readonly high: number;
+  /** If all dies of a wafer share their doubts: the widest that the number can scatter. */
+  readonly together_low: number;
+  readonly together_high: number;
+}
+
+/** Dies accepted, of those that can be shipped; intervals at 95 %. */
 export interface ShareOf {
   readonly good: number;
   readonly hold: number;
   readonly of: number;
   /** Null for none of none. */
   readonly value: number | null;
+  /** Exact; of several wafers widened for dies that share their wafer's fate. */
   readonly low: number;
   readonly high: number;
   readonly counted: "dies" | "wafers";
+  /** Clopper and Pearson, and Wilson, with every die as evidence of its own. */
+  readonly exact: Interval;
+  readonly score: Interval;
+  /** Null for no die. */
+  readonly expected: ExpectedDies | null;
 }
 
 export interface FigureValue {
@@ -96,6 +122,8 @@ export interface RequestReview {
   readonly decide: { readonly accept_at: number; readonly reject_below: number };
   readonly total: ShareOf;
   readonly wafers: readonly (ShareOf & { readonly wafer: string })[];
+  /** By mask group: dies with an accepted guide of the group, of those that have guides of it. */
+  readonly groups: readonly (ShareOf & { readonly group: string; readonly matched: boolean })[];
   readonly limits: readonly LimitRow[];
   readonly ranked: readonly RankedDie[];
   readonly budgets: readonly Budget[];
@@ -165,6 +193,8 @@ export interface LotYieldRow {
   readonly of: number;
   readonly low: number;
   readonly high: number;
+  readonly exact: Interval;
+  readonly score: Interval;
 }
 
 export interface Answers {
@@ -212,6 +242,8 @@ export interface ReviewData {
   readonly traits: readonly TraitReview[];
   readonly charts: readonly ChartReview[];
   readonly lots: readonly LotYieldRow[];
+  /** Earlier lots that are not compared, and why, in words. */
+  readonly left_out: readonly string[];
   readonly coverage: readonly {
     readonly what: string;
     readonly guides: number;

@@ -1,9 +1,10 @@
 import { dirname } from "node:path";
-import { type Cell, csvText } from "../console/mod.ts";
+import { csvText } from "../console/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import { openLedger } from "../ledger/mod.ts";
 import { loadRules } from "../query/flag/mod.ts";
 import { reviewOf } from "../query/review/build.ts";
+import { allYieldRows, YIELD_COLUMNS } from "../review/yield_rows.ts";
 import { reviewPage } from "../review/page.ts";
 import type { ReviewData } from "../review_types.ts";
 import { type CommonOptions, note, print, printJson } from "./common.ts";
@@ -29,7 +30,7 @@ export async function reviewCommand(lot: string, options: ReviewCommandOptions):
     data = await reviewOf(ledger, { ...found, rules });
   }
   if (options.format === "json") printJson(data);
-  else if (options.format === "csv") print(yieldsCsv(data));
+  else if (options.format === "csv") print(csvText([...YIELD_COLUMNS], allYieldRows(data)));
   if (options.out !== undefined) await writePage(options.out, reviewPage(data));
   return data.flags.some((f) => f.severity !== "note") ? 1 : 0;
 }
@@ -46,63 +47,4 @@ export async function writePage(path: string, page: string): Promise<void> {
   }
   const size = new TextEncoder().encode(page).length;
   note(`${path}: ${(size / 1e6).toFixed(2)} MB, opens in any browser, without a network`);
-}
-
-/** Yields for a spreadsheet: the lot, its wafers, and the lots before it. */
-function yieldsCsv({ lot, started, requests, lots }: ReviewData): string {
-  const titles = [
-    "request",
-    "scope",
-    "id",
-    "started",
-    "accepted",
-    "on_hold",
-    "dies",
-    "yield",
-    "low",
-    "high",
-    "confidence",
-  ];
-  const rows = requests.flatMap((r): Cell[][] => [
-    [
-      r.request,
-      "lot",
-      lot,
-      started,
-      r.total.good,
-      r.total.hold,
-      r.total.of,
-      r.total.value,
-      r.total.low,
-      r.total.high,
-      0.95,
-    ],
-    ...r.wafers.map((w): Cell[] => [
-      r.request,
-      "wafer",
-      w.wafer,
-      started,
-      w.good,
-      w.hold,
-      w.of,
-      w.value,
-      w.low,
-      w.high,
-      0.95,
-    ]),
-    ...lots.filter((l) => l.request === r.request && l.lot !== lot).map((l): Cell[] => [
-      r.request,
-      "earlier lot",
-      l.lot,
-      l.started,
-      l.good,
-      null,
-      l.of,
-      l.good / l.of,
-      l.low,
-      l.high,
-      0.95,
-    ]),
-  ]);
-  return csvText(titles, rows);
 }

@@ -1,6 +1,7 @@
 import type {
   BudgetRow,
   ChartReview,
+  ExpectedDies,
   LimitRow,
   LotYieldRow,
   RequestReview,
@@ -13,11 +14,15 @@ import { chart, Plot } from "./plot.ts";
 
 const WIDTH = 560;
 
-/** Yields of wafers, or of lots, each with its exact interval. */
-export function yieldChart(
-  label: string,
-  rows: readonly (Pick<ShareOf, "good" | "of" | "low" | "high"> & { readonly name: string })[],
-): Html {
+/** What a yield chart shows of a wafer, group or lot. */
+export interface YieldBar extends Pick<ShareOf, "good" | "of" | "low" | "high"> {
+  readonly name: string;
+  /** Good dies expected from the probabilities. */
+  readonly expected?: ExpectedDies | null;
+}
+
+/** Yields of wafers, groups or lots, each with its exact interval, and below it what the probabilities let one expect. */
+export function yieldChart(label: string, rows: readonly YieldBar[]): Html {
   const data = rows.filter((r) => r.of > 0).map((r) => ({
     ...r,
     value: 100 * r.good / r.of,
@@ -27,9 +32,23 @@ export function yieldChart(
       percentText(r.low)
     } to ${percentText(r.high)}`,
   }));
+  const expected = data.flatMap(({ name, of, expected: e }) =>
+    e === null || e === undefined ? [] : [{
+      name,
+      value: 100 * e.dies / of,
+      from: 100 * e.together_low / of,
+      to: 100 * e.together_high / of,
+      hover: `${name}: ${shown(e.dies)} of ${of} expected, ${shown(e.low)} to ${
+        shown(e.high)
+      } if dies are independent, ${shown(e.together_low)} to ${
+        shown(e.together_high)
+      } if a wafer's dies share their doubts`,
+    }]
+  );
+  const below = { dy: 8, title: "hover", stroke: "currentColor" } as const;
   return chart(label, {
     width: WIDTH,
-    height: 44 + 24 * data.length,
+    height: 44 + (expected.length > 0 ? 36 : 24) * data.length,
     marginLeft: 130,
     marginRight: 20,
     marginBottom: 36,
@@ -45,6 +64,8 @@ export function yieldChart(
         title: "hover",
       }),
       Plot.dot(data, { y: "name", x: "value", r: 5, fill: "var(--mark)", title: "hover" }),
+      Plot.ruleY(expected, { y: "name", x1: "from", x2: "to", ...below }),
+      Plot.dot(expected, { y: "name", x: "value", r: 4, fill: "var(--paper)", ...below }),
     ],
   });
 }

@@ -69,9 +69,9 @@ export function csvLink({ caption, file, columns, rows }: PageTable): Html {
   `;
 }
 
-/** A table that opens on demand: what stands under a picture. */
-export function foldedTable(table: PageTable): Html {
+/** A table that opens on demand: what stands under a picture. The CSV may hold more columns than the page has room for. */
+export function foldedTable(table: PageTable, csv: PageTable = table): Html {
   return html`<details class="data"><summary>Table: ${table.caption}</summary>${tableOf(table)}${
-    csvLink(table)
+    csvLink(csv)
   }</details>`;
 }

@@ -1,9 +1,10 @@
-import type { RequestReview, ReviewData } from "../review_types.ts";
+import type { RequestReview, ReviewData, ShareOf } from "../review_types.ts";
 import { controlChart, limitChart, lotRows, yieldChart } from "./charts.ts";
 import { type Html, html } from "./html.ts";
-import { shown } from "./numbers.ts";
+import { percentText, shown } from "./numbers.ts";
 import { figure } from "./plot.ts";
 import { foldedTable, type PageTable } from "./table.ts";
+import { requestYieldRows, YIELD_COLUMNS } from "./yield_rows.ts";
 
 export function yieldsSection(data: ReviewData): Html {
   return html`${
@@ -12,11 +13,13 @@ export function yieldsSection(data: ReviewData): Html {
         ...r.wafers.map((w) => ({ ...w, name: w.wafer })),
         ...(r.wafers.length > 1 ? [{ ...r.total, name: "whole lot" }] : []),
       ];
-      const table: PageTable = {
-        caption: `Yield for ${r.request}`,
+      const groups = r.groups.filter((g) => g.matched).map((g) => ({ ...g, name: `group ${g.group}` }));
+      const table = yieldTable(`Yield for ${r.request}`, [...rows, ...groups]);
+      const csv: PageTable = {
+        caption: table.caption,
         file: `yield-${data.lot}-${r.request}`,
-        columns: ["unit", "accepted", "on hold", "dies", "yield", "low", "high"].map((title) => ({ title })),
-        rows: rows.map((w) => [w.name, w.good, w.hold, w.of, w.value, w.low, w.high]),
+        columns: YIELD_COLUMNS.map((title) => ({ title })),
+        rows: requestYieldRows(data, r),
       };
       const limits: PageTable = {
         caption: `What limits dies for ${r.request}`,
@@ -33,11 +36,18 @@ export function yieldsSection(data: ReviewData): Html {
             r.decide.reject_below,
           )}.</p>
         <div class="pair">${figure(
-          r.wafers.length > 1
-            ? "Dies accepted, of those that can be shipped, with exact 95 % intervals (Clopper–Pearson). That of the whole lot allows that dies share their wafer's fate."
-            : "Dies accepted, of those that can be shipped, with the exact 95 % interval (Clopper–Pearson).",
-          yieldChart(`Yield for ${r.request} by wafer`, rows),
-          foldedTable(table),
+          `Dies accepted, of those that can be shipped (filled), with exact 95 % intervals (Clopper–Pearson)${
+            r.wafers.length > 1
+              ? "; where wafers are taken together, for dies that share their wafer's fate"
+              : ""
+          }. Below (open): dies expected from the probabilities, with the range if a wafer's dies share their doubts.${
+            groups.length > 1 ? " Groups: dies with an accepted guide of that mask group." : ""
+          }`,
+          yieldChart(
+            `Yield for ${r.request} by wafer and group`,
+            groups.length > 1 ? [...rows, ...groups] : rows,
+          ),
+          foldedTable(table, csv),
         )}${r.limits.length === 0 ? html`<p>No die that can be shipped is limited.</p>` : figure(
           "Dies that are not accepted, by the requirement that fails most often.",
           limitChart(`What limits dies for ${r.request}`, r.limits),
@@ -52,6 +62,42 @@ export function yieldsSection(data: ReviewData): Html {
         data.requests_without_match.join(", ")
       }.</p>`
   }`;
+}
+
+/** Yields with every interval, as a page has room for them. */
+function yieldTable(caption: string, rows: readonly (ShareOf & { readonly name: string })[]): PageTable {
+  const interval = ({ low, high }: { readonly low: number; readonly high: number }) =>
+    `${shown(100 * low)} to ${percentText(high)}`;
+  return {
+    caption: `${caption}; intervals and ranges at 95 %`,
+    file: "",
+    columns: [
+      { title: "unit" },
+      { title: "accepted" },
+      { title: "on hold" },
+      { title: "dies" },
+      { title: "yield", show: (cell) => percentText(cell as number | null) },
+      { title: "exact (Clopper–Pearson)" },
+      { title: "score (Wilson)" },
+      { title: "dies sharing their wafer's fate" },
+      { title: "expected dies" },
+      { title: "if independent" },
+      { title: "if a wafer's dies share their doubts" },
+    ],
+    rows: rows.map((w) => [
+      w.name,
+      w.good,
+      w.hold,
+      w.of,
+      w.value,
+      interval(w.exact),
+      interval(w.score),
+      w.counted === "wafers" ? interval(w) : null,
+      w.expected?.dies ?? null,
+      w.expected === null ? null : `${w.expected.low} to ${w.expected.high}`,
+      w.expected === null ? null : `${shown(w.expected.together_low)} to ${shown(w.expected.together_high)}`,
+    ]),
+  };
 }
 
 const requirementText = ({ figure: f, at_least, at_most }: RequestReview["requirements"][number]): string =>

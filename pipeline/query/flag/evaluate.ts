@@ -1,6 +1,7 @@
 import { compareIds } from "../../../shared/ids.ts";
 import type { LotFacts, LotSummary } from "./facts.ts";
-import { earlierLots, lotChart } from "./lot_chart.ts";
+import { earlierLots } from "./earlier_lots.ts";
+import { lotChart } from "./lot_chart.ts";
 import {
   coverageThin,
   figureLimit,
@@ -92,6 +93,7 @@ function withoutEchoes(flags: readonly Flag[]): Flag[] {
 export function summaryOfFacts(facts: LotFacts): LotSummary {
   return {
     lot: facts.lot,
+    made: facts.made,
     started: facts.started,
     wafers: facts.wafers,
     steps: facts.steps,

@@ -98,6 +98,8 @@ export interface LotFacts {
   /** Coatings that count, the last per die and facet. */
   readonly coatings: readonly CoatingRecord[];
   readonly traits: readonly TraitRow[];
+  /** What the traits were computed with. */
+  readonly made: MadeWith;
   readonly reduceRemarks: readonly ReduceRemark[];
   readonly quarantine: readonly QuarantineFact[];
   /** Rows read from the files in force. */
@@ -111,9 +113,25 @@ export interface LotFacts {
   readonly requestsNamed: boolean;
 }
 
+/** What a number was computed with; numbers are compared only where that is the same. */
+export interface MadeWith {
+  readonly model: string;
+  readonly platform_sha256: string;
+  /** Of predictions only. */
+  readonly request_sha256?: string;
+}
+
+export interface YieldSummary {
+  readonly good: number;
+  readonly of: number;
+  readonly made: MadeWith;
+}
+
 /** What earlier and later lots of the platform are compared by. */
 export interface LotSummary {
   readonly lot: string;
+  /** What the traits were computed with. */
+  readonly made: MadeWith;
   /** ISO date; null: it has no place in time. */
   readonly started: string | null;
   readonly wafers: readonly WaferFact[];
@@ -121,7 +139,7 @@ export interface LotSummary {
   /** Series (trait, wavelength, polarisation) → mean of the lot, and spread between dies of a wafer. */
   readonly series: ReadonlyMap<string, SeriesSummary>;
   /** Request → dies accepted, of dies that can be shipped. */
-  readonly yields: ReadonlyMap<string, { readonly good: number; readonly of: number }>;
+  readonly yields: ReadonlyMap<string, YieldSummary>;
 }
 
 export interface SeriesSummary {

@@ -12,11 +12,13 @@ import type {
   FigureFact,
   LotFacts,
   LotSummary,
+  MadeWith,
   OutcomeFact,
   PredictionFacts,
   QuarantineFact,
   StepFact,
   WaferFact,
+  YieldSummary,
 } from "./facts.ts";
 import { guidePeriods } from "./period.ts";
 import { dieVerdicts } from "./verdicts.ts";
@@ -54,6 +56,7 @@ export async function loadFacts(ledger: Ledger, lot: string, options: LoadFactsO
     steps: (await table<StepFact>("steps")).sort((a, b) => a.order - b.order),
     coatings: [...design.coatingOf.values()],
     traits,
+    made: madeWith(reduced),
     reduceRemarks: rowsOf(await ledger.readTable(reduced, "reduce_remarks")) as never,
     quarantine: await table<QuarantineFact>("quarantine"),
     rows: files.reduce((sum, f) => sum + (inputs.get(`${f.run}|${f.name}`)?.rows ?? 0), 0),
@@ -62,6 +65,16 @@ export async function loadFacts(ledger: Ledger, lot: string, options: LoadFactsO
     periods: await guidePeriods(ledger, design, traits),
     predictions: await loadPredictions(ledger, lot, outcomes, options),
     requestsNamed: options.requests !== null,
+  };
+}
+
+/** What a run was computed with. */
+function madeWith({ model, parameters }: Manifest): MadeWith {
+  const { platform_sha256, request_sha256 } = parameters as Record<string, string | undefined>;
+  return {
+    model,
+    platform_sha256: platform_sha256 ?? "",
+    ...(request_sha256 === undefined ? {} : { request_sha256 }),
   };
 }
 
@@ -165,6 +178,7 @@ export async function loadSummaries(
     const series = seriesOf(await loadTraits(ledger, reduced.get(lot)!), TRAIT_NAMES, platform);
     out.push({
       lot,
+      made: madeWith(reduced.get(lot)!),
       started: records.get(lot)!.started,
       wafers: await table<WaferFact>("wafers"),
       steps: await table<StepFact>("steps"),
@@ -177,17 +191,21 @@ export async function loadSummaries(
 
 /** Lot → request → dies accepted, of those that can be shipped; requests that no guide of the lot matches are left out. */
 async function yieldsOf(ledger: Ledger, lots: readonly string[]) {
-  const out = new Map<string, Map<string, { good: number; of: number }>>();
+  const out = new Map<string, Map<string, YieldSummary>>();
   const runs = (await ledger.runsInForce("predict")).filter((run) => lots.includes(run.lot ?? ""));
   if (runs.length === 0) return out;
   for (const lot of lots) {
-    if (!runs.some((run) => run.lot === lot)) continue;
+    const made = new Map(
+      runs.filter((run) => run.lot === lot).map((run) => [requestOf(run)!, madeWith(run)]),
+    );
+    if (made.size === 0) continue;
     using engine = await engineWith(ledger, ["decisions"], { lots: [lot] });
-    const requests = new Map<string, { good: number; of: number }>();
+    const requests = new Map<string, YieldSummary>();
     for (const [request, decisions] of decisionsOf(engine)) {
       if (!decisions.some((d) => d.matched)) continue;
       const ready = dieVerdicts(decisions).filter((d) => d.unavailable === null);
-      requests.set(request, { good: ready.filter((d) => d.decision === "accept").length, of: ready.length });
+      const good = ready.filter((d) => d.decision === "accept").length;
+      requests.set(request, { good, of: ready.length, made: made.get(request)! });
     }
     out.set(lot, requests);
   }

@@ -8,8 +8,8 @@ import {
   type Signal,
 } from "../../../models/decision/charts/mod.ts";
 import { tTwoSided } from "../../../models/decision/tails.ts";
-import { compareIds } from "../../../shared/ids.ts";
 import type { ReadingRef } from "../../traits/trait_row.ts";
+import { earlierLots, leftOut, leftOutSentences } from "./earlier_lots.ts";
 import type { LotSummary } from "./facts.ts";
 import type { RuleOf, Severity } from "./rules.ts";
 import { seriesWords, unitOf } from "./series.ts";
@@ -31,15 +31,6 @@ export interface LotChart {
   readonly z: readonly number[];
   /** Signals that the last lot completes. */
   readonly signals: readonly Signal[];
-}
-
-/** Lots of the platform before another one, in the order of time. A lot without a date has no place among them. */
-export function earlierLots(lot: LotSummary, all: readonly LotSummary[]): LotSummary[] {
-  if (lot.started === null) return [];
-  return all.filter((l) =>
-    l.lot !== lot.lot && l.started !== null &&
-    (l.started < lot.started! || (l.started === lot.started && compareIds(l.lot, lot.lot) < 0))
-  ).sort((a, b) => a.started! < b.started! ? -1 : a.started! > b.started! ? 1 : compareIds(a.lot, b.lot));
 }
 
 /**
@@ -143,12 +134,14 @@ export function lotChart(
   const base = { scope: "lot" as const, id: lot.lot, lot: lot.lot, rule: rule.rule };
   const earlier = earlierLots(lot, all);
   const charts = lotCharts(lot, all, rule);
+  const sentences = leftOutSentences(leftOut(lot, all));
+  const aside = sentences.length === 0 ? "" : `; ${sentences.join("; ")}`;
   if (charts.length === 0) {
     const why = lot.started === null
       ? `Lot ${lot.lot} states no start date in lot.json: it has no place in time among the lots of ${platform}`
       : earlier.length < rule.least_earlier_lots
-      ? `Too few lots for control charts: ${earlier.length} of platform ${platform} before ${lot.lot}, need ${rule.least_earlier_lots}`
-      : `No quantity of lot ${lot.lot} was read in ${rule.least_earlier_lots} earlier lots of ${platform}: no control chart`;
+      ? `Too few lots for control charts: ${earlier.length} of platform ${platform} before ${lot.lot}, need ${rule.least_earlier_lots}${aside}`
+      : `No quantity of lot ${lot.lot} was read in ${rule.least_earlier_lots} earlier lots of ${platform}: no control chart${aside}`;
     return [{
       ...base,
       severity: "note",
@@ -170,7 +163,7 @@ export function lotChart(
         plural(c.lots.length - 1, "lot")
       } before have ${shown(c.centre)} on average, limits ${shown(c.lower)} to ${shown(c.upper)}: ${
         c.signals.map((s) => RUN_RULES[s.rule]).join("; ")
-      }`,
+      }${aside}`,
       evidence: {
         numbers: {
           quantity: c.words,

@@ -2,16 +2,24 @@ import { compareIds } from "../../../shared/ids.ts";
 import type { Answers, ChartReview, RequestReview, ReviewFlag } from "../../review_types.ts";
 import { num, percent, plural } from "../flag/types.ts";
 
+/** Lots of the platform before this one. */
+export interface LotsBefore {
+  readonly platform: string;
+  readonly before: number;
+  readonly compared: number;
+  /** What is not compared and why, in sentences. */
+  readonly leftOut: readonly string[];
+}
+
 /** What the first screen says: the answers that the meeting came for, in words. */
 export function answersOf(
   requests: readonly RequestReview[],
   flags: readonly ReviewFlag[],
   charts: readonly ChartReview[],
-  earlierLots: number,
-  platform: string,
+  lots: LotsBefore,
 ): Answers {
   return {
-    how: [...requests.map(howDid), comparedWith(requests, charts, earlierLots, platform)],
+    how: [...requests.map(howDid), comparedWith(requests, charts, lots), ...lots.leftOut],
     out: outOf(flags),
     behind: behind(flags),
     pay_off: payOff(requests, flags),
@@ -41,16 +49,17 @@ function howDid({ request, total, wafers }: RequestReview): string {
 function comparedWith(
   requests: readonly RequestReview[],
   charts: readonly ChartReview[],
-  earlierLots: number,
-  platform: string,
+  { platform, before, compared }: LotsBefore,
 ): string {
-  if (earlierLots === 0) {
-    return `Compared with earlier lots: there is none of ${platform} in this ledger`;
+  if (compared === 0) {
+    return `Compared with earlier lots: ${
+      before === 0 ? "there is none" : "none may be compared"
+    } of ${platform} in this ledger`;
   }
   const yields = charts.filter((c) => c.key.startsWith("yield|"));
   if (yields.length === 0) {
     return `Compared with earlier lots: ${
-      plural(earlierLots, "lot")
+      plural(compared, "lot")
     } of ${platform}, too few for a control chart; see the yields over lots`;
   }
   return `Compared with earlier lots: ${

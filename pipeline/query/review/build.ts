@@ -1,10 +1,17 @@
-import { exactInterval } from "../../../models/decision/yields.ts";
+import { exactInterval, scoreInterval } from "../../../models/decision/yields.ts";
 import type { Ledger } from "../../ledger/mod.ts";
 import { requestOf } from "../../ledger/mod.ts";
-import type { ChartReview, LotYieldRow, ReviewData, ReviewFlag } from "../../review_types.ts";
+import {
+  type ChartReview,
+  CONFIDENCE,
+  type LotYieldRow,
+  type ReviewData,
+  type ReviewFlag,
+} from "../../review_types.ts";
 import { RUN_RULES } from "../../../models/decision/charts/mod.ts";
 import type { LotFacts, LotSummary } from "../flag/facts.ts";
-import { earlierLots, lotCharts } from "../flag/lot_chart.ts";
+import { earlierLots, leftOut, leftOutSentences, lotsBefore } from "../flag/earlier_lots.ts";
+import { lotCharts } from "../flag/lot_chart.ts";
 import { predictionsInForce } from "../flag/load.ts";
 import { inPlay } from "../flag/verdicts.ts";
 import type { Rule } from "../flag/rules.ts";
@@ -42,6 +49,7 @@ export async function reviewOf(
     facts.predictions.flatMap((p) => p.decisions.map((d) => [d.die_id, d.unavailable] as const)),
   );
   const earlier = earlierLots(own, summaries);
+  const aside = leftOutSentences(leftOut(own, summaries));
   return {
     lot,
     platform: platform.platform,
@@ -54,7 +62,13 @@ export async function reviewOf(
       rows: facts.rows,
       quarantined: facts.quarantine.length,
     },
-    answers: answersOf(requests, shown, charts, earlier.length, platform.platform),
+    answers: answersOf(requests, shown, charts, {
+      platform: platform.platform,
+      before: lotsBefore(own, summaries).length,
+      compared: earlier.length,
+      leftOut: aside,
+    }),
+    left_out: aside,
     flags: shown,
     requests,
     requests_without_match: facts.predictions.filter((p) => !played.includes(p)).map((p) =>
@@ -128,7 +142,9 @@ function yieldsOverLots(lots: readonly LotSummary[], requests: readonly string[]
     lots.flatMap((l): LotYieldRow[] => {
       const y = l.yields.get(request);
       if (y === undefined || y.of === 0) return [];
-      return [{ lot: l.lot, started: l.started, request, ...y, ...exactInterval(y.good, y.of) }];
+      const { good, of } = y;
+      const [exact, score] = [exactInterval(good, of, CONFIDENCE), scoreInterval(good, of, CONFIDENCE)];
+      return [{ lot: l.lot, started: l.started, request, good, of, ...exact, exact, score }];
     })
   );
 }

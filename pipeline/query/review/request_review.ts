@@ -1,14 +1,14 @@
 import type { CheckedRequest } from "../../../shared/schemas/request.ts";
 import type { Figure } from "../../../shared/schemas/figures.ts";
 import { BASES, type Basis } from "../../../shared/vocabulary.ts";
-import type { Budget, BudgetRow, LimitRow, RankedDie, RequestReview, ShareOf } from "../../review_types.ts";
+import type { Budget, BudgetRow, LimitRow, RankedDie, RequestReview } from "../../review_types.ts";
 import type { Engine } from "../engine.ts";
 import type { LotFacts, PredictionFacts } from "../flag/facts.ts";
-import { type DieVerdict, dieVerdicts, lotYield } from "../flag/verdicts.ts";
+import { type DieVerdict, dieVerdicts } from "../flag/verdicts.ts";
 import { type RankedEntry, rankIn } from "../rank.ts";
+import { groupShares, shareOf, waferShares } from "./yields.ts";
 
 const FACTORS = ["survival", "facet", "coupling", "filter", "detector", "heralding"] as const;
-const CONFIDENCE = 0.95;
 const ORDER = ["accept", "hold", "reject"] as const;
 
 /** How a lot does for one request. `engine` holds what a ranking reads, and `used_traits`, of this lot alone. */
@@ -22,7 +22,6 @@ export async function requestReview(
   const dies = dieVerdicts(decisions);
   const ranking = await rankIn(engine, checked, { lots: [facts.lot], allGuides: false, top: null });
   const matched = new Map(decisions.map((d) => [d.guide_id, d.matched]));
-  const wafers = [...new Set(dies.map((d) => d.wafer))];
   return {
     request,
     process: checked.request.process,
@@ -35,7 +34,8 @@ export async function requestReview(
     order_by: checked.orderBy,
     decide: checked.request.decide,
     total: shareOf(dies),
-    wafers: wafers.map((wafer) => ({ wafer, ...shareOf(dies.filter((d) => d.wafer === wafer)) })),
+    wafers: waferShares(dies),
+    groups: groupShares(decisions, (guide) => facts.design.guideById.get(guide)?.group ?? null),
     limits: limitsOf(prediction, dies),
     // Within a decision in the order of the request; what can't be shipped is rejected and comes last as it is.
     ranked: ORDER.flatMap((decision) => ranking.dies.filter((e) => e.decision === decision))
@@ -43,11 +43,6 @@ export async function requestReview(
     budgets: checked.request.process === "pair-generation" ? budgetsOf(ranking.dies) : [],
     rests_on: restsOn(engine, request, new Set(decisions.filter((d) => d.matched).map((d) => d.guide_id))),
   };
-}
-
-function shareOf(dies: readonly DieVerdict[]): ShareOf {
-  const y = lotYield(dies, CONFIDENCE);
-  return { ...y, value: Number.isNaN(y.value) ? null : y.value };
 }
 
 /** A request in one line. */

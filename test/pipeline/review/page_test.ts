@@ -145,8 +145,14 @@ Deno.test("the demo's lots: flagged, reviewed, and on pages that stand alone", a
           equal(decided.length, data.dies.length);
           const yields = files.get(`yield-${lot}-${request.request}.csv`)!;
           deepEqual(
-            yields.slice(0, request.wafers.length).map((y) => [y.unit, Number(y.accepted), Number(y.high)]),
-            request.wafers.map((w) => [w.wafer, w.good, w.high]),
+            yields.filter((y) => y.scope === "wafer").map((
+              y,
+            ) => [y.id, Number(y.accepted), Number(y.exact_high), Number(y.score_low), Number(y.expected)]),
+            request.wafers.map((w) => [w.wafer, w.good, w.exact.high, w.score.low, w.expected!.dies]),
+          );
+          deepEqual(
+            yields.filter((y) => y.scope === "group").map((y) => [y.id, Number(y.accepted), Number(y.dies)]),
+            request.groups.map((g) => [g.group, g.good, g.of]),
           );
         }
         for (const trait of data.traits) {

@@ -107,6 +107,7 @@ export function simulatedLot(number: number, shape: SimulatedLot = {}): LotFacts
     ),
     coatings: [],
     traits: READ.flatMap((read) => traitRows(guides, read, random, shape.fault)),
+    made: { model: "1", platform_sha256: SOURCE.source_file },
     reduceRemarks: [],
     quarantine: [],
     rows: 1000,
