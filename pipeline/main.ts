@@ -168,10 +168,22 @@ const requestOption = () =>
     "only for this request, by name or path; may repeat (default: those predicted that the lot can be tuned to)",
   ).argParser(collect).default([], "all");
 
+const RULES_HELP = `
+Your own rules (--rules FILE), as JSON:
+  { "rules": [
+    { "rule": "loss-high", "above_default_by_u": 4 },   changes fields of a built-in rule
+    { "rule": "coating-unknown", "off": true },         silences one
+    { "rule": "loss-limit", "kind": "trait_limit", "trait": "loss_db_cm",
+      "at_most": 0.5, "confidence": 0.95, "severity": "watch" }   adds one
+  ] }
+The built-in ones are in pipeline/query/flag_rules.json; editors check a file by
+shared/schemas/json/flag-rules.schema.json.`;
+
 command("flag", "say what is out of line in a lot, and what may be behind it", "flag K07 --ledger ledger")
+  .addHelpText("after", RULES_HELP)
   .argument("[lot]", "one lot (default: every lot of the ledger)")
   .addOption(requestOption())
-  .option("--rules <file>", "your own rules, in place of the built-in ones of the same names")
+  .option("--rules <file>", "your own rules, beside or in place of the built-in ones (see flag --help)")
   .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
     workersOption(),
   )
@@ -184,7 +196,7 @@ command("flag", "say what is out of line in a lot, and what may be behind it", "
 command("review", "write the review of a lot as one page", "review K07 --out K07.html")
   .argument("<lot>", "the lot")
   .addOption(requestOption())
-  .option("--rules <file>", "your own rules, in place of the built-in ones of the same names")
+  .option("--rules <file>", "your own rules, beside or in place of the built-in ones (see flag --help)")
   .option("--out <file>", "the page to write (HTML, needs nothing else)")
   .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
     workersOption(),

@@ -4,6 +4,7 @@ import { z } from "zod";
 import { platformSchema } from "../shared/schemas/platform.ts";
 import { requestSchema } from "../shared/schemas/request.ts";
 import { jsonSchemas } from "./ingest/mod.ts";
+import { ownRulesSchema } from "./query/flag/rules_schema.ts";
 
 const FOLDER = fileURLToPath(new URL("../shared/schemas/json/", import.meta.url));
 
@@ -13,6 +14,7 @@ export function schemaFiles(): Map<string, string> {
     ...jsonSchemas(),
     platform: z.toJSONSchema(platformSchema, { io: "input" }),
     request: z.toJSONSchema(requestSchema, { io: "input" }),
+    "flag-rules": z.toJSONSchema(ownRulesSchema, { io: "input" }),
   };
   return new Map(
     Object.entries(all).map((

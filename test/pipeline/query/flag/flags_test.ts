@@ -456,6 +456,37 @@ Deno.test("a user's rules stand beside the program's, replace namesakes and sile
       loadRules(file),
       (e: InputError) => e instanceof InputError && /rules\[0\]\.trait/.test(e.message),
     );
+    await write([
+      { rule: "loss-high", off: true },
+      { rule: "yield-low", floor: 0.8 },
+    ]);
+    const changed = await loadRules(file);
+    equal(changed.find((r) => r.rule === "loss-high"), undefined);
+    deepEqual(changed.find((r) => r.rule === "yield-low"), {
+      ...rules.find((r) => r.rule === "yield-low")!,
+      floor: 0.8,
+    });
+    for (
+      const [entry, why] of [
+        [
+          { rule: "loss-hihg", off: true },
+          /rules\[0\]\.rule: .* \(did you mean "loss-high"\?\).*found "loss-hihg"/,
+        ],
+        [{ rule: "yield-low", floorr: 1 }, /rules\[0\]: unknown key "floorr" \(did you mean "floor"\?\)/],
+        [{ rule: "yield-low", floor: 80 }, /rules\[0\]\.floor: .*<=1 \(found "80"\)/],
+        [
+          { rule: "x", kind: "yield_flor" },
+          /rules\[0\]\.kind: found "yield_flor", need one of .*yield_floor/,
+        ],
+        [{ rule: "rows-aside", severity: "bad" }, /rules\[0\]\.severity: .*"act"\|"watch"\|"note"/],
+      ] as const
+    ) {
+      await write([entry]);
+      await rejects(loadRules(file), (e: InputError) => {
+        match(e.message, why);
+        return e.message.includes(file);
+      });
+    }
     await write([{ rule: "x", kind: "trait_limit", trait: "loss_db_cm", confidence: 0.9, severity: "act" }]);
     await rejects(loadRules(file), /need at least one of at_least/);
   } finally {
