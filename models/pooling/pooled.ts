@@ -188,6 +188,16 @@ function evidenceOf(leaves: readonly Leaf[], observations: readonly LotObservati
   const by = (key: (l: Leaf) => string | undefined) => Map.groupBy(own, key);
   const [guides, dies, wafers] = [by((l) => l.guide), by((l) => l.die), by((l) => l.wafer)];
   const isRead = (guide: string) => guides.has(guide);
+  const lists = new Map<string, { readonly used: readonly number[]; readonly otherWidth: boolean }>();
+  const listOf = (found: readonly Leaf[], basis: Basis, widthUm: number | undefined) => {
+    const same = found.filter((l) =>
+      basis === "measured" || l.widthUm === undefined || widthUm === undefined || l.widthUm === widthUm
+    );
+    const used = (same.length > 0 ? same : found).flatMap((l) =>
+      l.members.map((k) => observations[k]!.index)
+    );
+    return { used, otherWidth: same.length === 0 };
+  };
   const find = (asked: Asked & { readonly die: string; readonly guide: string }, platform: string) => {
     const tiers: [Basis, string, readonly Leaf[] | undefined][] = [
       ["measured", asked.guide, guides.get(asked.guide)],
@@ -197,14 +207,11 @@ function evidenceOf(leaves: readonly Leaf[], observations: readonly LotObservati
     ];
     for (const [basis, from, found] of tiers) {
       if (found === undefined || found.length === 0) continue;
-      const same = found.filter((l) =>
-        basis === "measured" || l.widthUm === undefined || asked.widthUm === undefined ||
-        l.widthUm === asked.widthUm
-      );
-      const used = (same.length > 0 ? same : found).flatMap((l) =>
-        l.members.map((k) => observations[k]!.index)
-      );
-      return { basis, from, used, otherWidth: same.length === 0 };
+      // Thousands of guides may rest on one list of thousands: made once.
+      const key = `${basis}|${from}|${asked.widthUm}`;
+      let held = lists.get(key);
+      if (held === undefined) lists.set(key, held = listOf(found, basis, asked.widthUm));
+      return { basis, from, ...held };
     }
     return { basis: "platform" as const, from: platform, used: [], otherWidth: false };
   };

@@ -46,7 +46,8 @@ export function trendChooser(
   const { leaves, places } = question;
   const none = designOf({ ...question, trend: null, lot: "" });
   const dies = new Set(leaves.map((l) => l.die).filter((d) => d !== undefined));
-  if (need === Infinity || dies.size < 3 || [...dies].some((d) => !places.has(d))) {
+  const apart = [...places.values()].some((p) => Math.hypot(p.x, p.y) > 0);
+  if (need === Infinity || dies.size < 3 || !apart || [...dies].some((d) => !places.has(d))) {
     return () => ({ taken: null, trials: [], design: none });
   }
   const without = spreadsOf(leaves, none, prior).mode;

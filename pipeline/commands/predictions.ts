@@ -4,7 +4,7 @@ import { type Ledger, openLedger } from "../ledger/mod.ts";
 import { predictLot } from "../predict/predict_lot.ts";
 import { checkRanges } from "../predict/request_range.ts";
 import { OutOfDate } from "../out_of_date.ts";
-import { lotsOf } from "../records.ts";
+import { lotsOf, recordsOf } from "../records.ts";
 import { reduceLot } from "../reduce/reduce_lot.ts";
 import type { LoadedRequest } from "../requests.ts";
 import { type CommonOptions, note, noteAll, threadsOf } from "./common.ts";
@@ -66,13 +66,16 @@ async function everyLot(
   const chosen = await chosenLots(ledger, lots);
   await checkRanges(ledger, chosen, requests, options.platforms);
   const out: Predicted[] = [];
-  for (const lot of chosen) {
-    const solving = solvingProgress(lot);
+  // Traits are pooled over all lots of a platform: all of them are reduced before the first is predicted.
+  for (const lot of await lotsPooledWith(ledger, chosen)) {
     const { remarks } = await reduceLot(ledger, lot, options.platforms, {
       workers: threadsOf(options),
-      onSolving: solving,
+      onSolving: solvingProgress(lot),
     });
-    if (!quiet) noteAll(remarks.map((r) => r.statement));
+    if (!quiet && chosen.includes(lot)) noteAll(remarks.map((r) => r.statement));
+  }
+  for (const lot of chosen) {
+    const solving = solvingProgress(lot);
     using bar = progressBar(`predicting ${lot}`);
     const done = await predictLot(ledger, lot, requests, {
       ...(options.platforms === undefined ? {} : { platforms: options.platforms }),
@@ -81,6 +84,17 @@ async function everyLot(
       onSolving: solving,
     });
     out.push(...done.map((d) => ({ lot, ...d })));
+  }
+  return out;
+}
+
+/** Lots of the platforms of some lots, these first. */
+async function lotsPooledWith(ledger: Ledger, chosen: readonly string[]): Promise<string[]> {
+  const platformOf = async (lot: string) => (await recordsOf(ledger, "lots", lot))[0]?.platform;
+  const platforms = new Set(await Promise.all(chosen.map(platformOf)));
+  const out = [...chosen];
+  for (const lot of await lotsOf(ledger)) {
+    if (!out.includes(lot) && platforms.has(await platformOf(lot))) out.push(lot);
   }
   return out;
 }

@@ -12,8 +12,10 @@ import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_tra
 import { alongGuides } from "../traits/along_guide.ts";
 import { completeWalls, streamWalls } from "../traits/guide_walls.ts";
 import { loadTraits } from "../traits/load_traits.ts";
+import { loadOtherLots, pooledRuns } from "../traits/pooled_lots.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { couplingRemarks, powerCautions } from "./cautions.ts";
+import { contradictionsOf, contradictionTable } from "./contradictions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import type { Job, WorkerSetup } from "./jobs.ts";
 import { type JobPool, openPool } from "./pool.ts";
@@ -53,6 +55,12 @@ const ROLE_SHAPE = {
   distance: "f64",
   readings_used: "i32",
   note: "text",
+  share_own: "f64",
+  share_die: "f64",
+  share_wafer: "f64",
+  share_lot: "f64",
+  share_other_lots: "f64",
+  share_platform: "f64",
 } as const satisfies TableShape;
 
 /**
@@ -72,6 +80,8 @@ export async function predictLot(
   for (const request of requests) checkRange(request, loaded);
   const reduced = (await ledger.runsInForce("reduce")).find((run) => run.lot === lot);
   if (reduced === undefined) throw new InputError(`Cannot predict lot ${lot}: its readings are not reduced`);
+  // Every lot of the platform says how much lots, wafers, dies and guides differ.
+  const others = (await pooledRuns(ledger, loaded)).filter((run) => run.lot !== lot);
   const stale: { request: LoadedRequest; fingerprint: string }[] = [];
   const done: PredictedRequest[] = [];
   for (const request of requests) {
@@ -81,6 +91,7 @@ export async function predictLot(
       DEFAULT_SAMPLE.draws,
       DEFAULT_SAMPLE.spectral,
       reduced.fingerprint,
+      others.map((run) => [run.lot, run.fingerprint]),
       loaded.fingerprint,
       request.fingerprint,
     ]));
@@ -90,13 +101,20 @@ export async function predictLot(
   }
   if (stale.length === 0) return done;
   if (!ledger.writable) throw new OutOfDate(`predictions of lot ${lot}`);
-  const computed = await compute(ledger, design, loaded, reduced, stale.map((s) => s.request), options);
+  const computed = await compute(
+    ledger,
+    design,
+    loaded,
+    [reduced, ...others],
+    stale.map((s) => s.request),
+    options,
+  );
   for (const [k, { request, fingerprint }] of stale.entries()) {
     const run = await ledger.commit({
       kind: "predict",
       lot,
       inputs: [],
-      parents: [reduced.run, ...computed.designRuns],
+      parents: [reduced.run, ...others.map((run) => run.run), ...computed.designRuns],
       parameters: {
         request: request.name,
         request_sha256: request.fingerprint,
@@ -112,6 +130,12 @@ export async function predictLot(
         figures: computed.stores[k]!.figureTable(),
         decisions: computed.stores[k]!.decisionTable(computed.unavailable),
         used_traits: roleTable(lot, request.name, computed.roles[k]!),
+        contradictions: contradictionTable(
+          lot,
+          request.name,
+          contradictionsOf(computed.pools, request),
+          computed.pools,
+        ),
       },
     });
     done.push({ request: request.name, run: run.run, computed: true });
@@ -125,6 +149,7 @@ interface Computed {
   readonly roles: { guide: GuideRecord; roles: readonly RoleTrait[] }[][];
   readonly unavailable: Map<string, string>;
   readonly designRuns: readonly string[];
+  readonly pools: TraitPools;
 }
 
 const BATCH = 4;
@@ -133,7 +158,7 @@ async function compute(
   ledger: Ledger,
   design: LotDesign,
   loaded: LoadedPlatform,
-  reduced: Manifest,
+  [reduced, ...others]: readonly [Manifest, ...Manifest[]],
   requests: readonly LoadedRequest[],
   options: PredictLotOptions,
 ): Promise<Computed> {
@@ -150,7 +175,7 @@ async function compute(
     },
   );
   const traits = await loadTraits(ledger, reduced);
-  const pools = new TraitPools(loaded.platform, design, traits);
+  const pools = new TraitPools(loaded.platform, design, traits, await loadOtherLots(ledger, others));
   const windows = windowsByUnit(await recordsOf(ledger, "poling", lot));
   const along = alongGuides(await recordsOf(ledger, "geometry", lot), loaded.platform);
   const unavailable = unavailableDies(design, await recordsOf(ledger, "cutback", lot));
@@ -202,7 +227,7 @@ async function compute(
   } finally {
     pool.close();
   }
-  return { stores, roles, unavailable, designRuns };
+  return { stores, roles, unavailable, designRuns, pools };
 }
 
 /** Gathers jobs into batches: one message per job would cost as much as a small job. */
@@ -237,5 +262,11 @@ function roleTable(lot: string, request: string, guides: Computed["roles"][numbe
     distance: rows.map((r) => r.role.distance),
     readings_used: rows.map((r) => r.role.used.length + r.role.refs.length),
     note: rows.map((r) => r.role.note),
+    share_own: rows.map((r) => r.role.shares?.own ?? null),
+    share_die: rows.map((r) => r.role.shares?.die ?? null),
+    share_wafer: rows.map((r) => r.role.shares?.wafer ?? null),
+    share_lot: rows.map((r) => r.role.shares?.lot ?? null),
+    share_other_lots: rows.map((r) => r.role.shares?.lots ?? null),
+    share_platform: rows.map((r) => r.role.shares?.prior ?? null),
   });
 }

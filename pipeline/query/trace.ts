@@ -9,6 +9,7 @@ import { MODEL_VERSION } from "../model_version.ts";
 import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
 import { type GuideRecord, loadDesign, type LotDesign } from "../records.ts";
 import { loadTraits } from "../traits/load_traits.ts";
+import { loadOtherLots } from "../traits/pooled_lots.ts";
 import type { TraitRow } from "../traits/trait_row.ts";
 import { rankGuides } from "./rank.ts";
 import { figureNamed, lotOf, predictionOf, type PredictParameters, requestInRun } from "./trace_find.ts";
@@ -46,7 +47,7 @@ export async function traceFigure(ledger: Ledger, id: string, options: TraceOpti
   }
   const guideId = isDie ? await bestGuide(ledger, lot, checked, id) : id;
   await using past = await openLedger(ledger.directory, { write: false, upTo: run.sequence });
-  const reduced = (await past.runs()).find((r) => r.run === run.parents[0] && r.kind === "reduce");
+  const [reduced, ...others] = await pooledBy(past, run);
   if (reduced === undefined) throw new LedgerError(`Cannot trace: run ${run.run} names no run of traits`);
   const design = await loadDesign(past, lot);
   const guide = design.guideById.get(guideId);
@@ -58,9 +59,18 @@ export async function traceFigure(ledger: Ledger, id: string, options: TraceOpti
     );
   }
   const loaded = await loadPlatform(parameters.platform, options.platforms);
-  const remarks = await staleness(ledger, past, run, reduced, parameters, loaded, options.requestFingerprint);
+  const remarks = await staleness(
+    ledger,
+    past,
+    run,
+    [reduced, ...others],
+    parameters,
+    loaded,
+    options.requestFingerprint,
+  );
   const traits = await loadTraits(past, reduced);
-  const roles = await followedRoles(past, run, design, traits, loaded, checked, guide, remarks);
+  const context = { past, run, design, traits, others };
+  const roles = await followedRoles(context, loaded, checked, guide, remarks);
   const ofFigure = ROLES.filter((role) => RESTS_ON[figure].includes(role));
   const shown = roles.filter((r) => ofFigure.includes(r.role));
   const [decision] = await rowsOfGuide<{ unavailable: string | null }>(past, run, "decisions", guideId);
@@ -82,7 +92,12 @@ export async function traceFigure(ledger: Ledger, id: string, options: TraceOpti
     run: run.run,
     model: run.model,
     program: run.program,
-    runs: { predict: run.run, reduce: reduced.run, ingest: reduced.parents },
+    runs: {
+      predict: run.run,
+      reduce: reduced.run,
+      ingest: reduced.parents,
+      other_lots: others.map((r) => r.run),
+    },
     remarks,
     traits: await tracedTraits(past, lot, ofFigure, shown, traits, parameters.platform),
     platform: {
@@ -127,12 +142,22 @@ async function bestGuide(ledger: Ledger, lot: string, checked: CheckedRequest, d
   );
 }
 
+/** Runs of traits that a prediction was made from: its own lot's first, then those of the other lots. */
+async function pooledBy(past: Ledger, run: Manifest): Promise<Manifest[]> {
+  const runs = new Map((await past.runs()).map((r) => [r.run, r]));
+  const reduced = run.parents.map((p) => runs.get(p)).filter((r) => r?.kind === "reduce") as Manifest[];
+  return reduced[0]?.run === run.parents[0] ? reduced : [];
+}
+
 /** The stored traits of a guide with what is under them. Where platform or model differ, what can still be told is. */
 async function followedRoles(
-  past: Ledger,
-  run: Manifest,
-  design: LotDesign,
-  traits: readonly TraitRow[],
+  { past, run, design, traits, others }: {
+    readonly past: Ledger;
+    readonly run: Manifest;
+    readonly design: LotDesign;
+    readonly traits: readonly TraitRow[];
+    readonly others: readonly Manifest[];
+  },
   { platform, fingerprint }: LoadedPlatform,
   checked: CheckedRequest,
   guide: GuideRecord,
@@ -143,7 +168,8 @@ async function followedRoles(
   const exact = fingerprint === platform_sha256 && run.model === MODEL_VERSION;
   let derived: Awaited<ReturnType<typeof deriveRoles>> = [];
   try {
-    derived = await deriveRoles(past, design, traits, platform, checked, guide);
+    const pooled = await loadOtherLots(past, others);
+    derived = await deriveRoles(past, design, traits, platform, checked, guide, pooled);
   } catch (error) {
     if (exact || !(error instanceof InputError)) throw error;
   }

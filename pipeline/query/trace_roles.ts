@@ -6,13 +6,20 @@ import { type GuideRecord, type LotDesign, recordsOf } from "../records.ts";
 import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
 import { alongGuides } from "../traits/along_guide.ts";
 import { completeWalls } from "../traits/guide_walls.ts";
+import type { OtherLot } from "../traits/pooled_lots.ts";
 import { TraitPools } from "../traits/pools.ts";
 import type { TraitRow } from "../traits/trait_row.ts";
 
 /** A row of `used_traits`: what the prediction of a guide wrote down of one trait. */
-export interface StoredRole extends Omit<RoleTrait, "from" | "used" | "refs"> {
+export interface StoredRole extends Omit<RoleTrait, "from" | "used" | "refs" | "shares"> {
   readonly from_unit: string;
   readonly readings_used: number;
+  readonly share_own: number | null;
+  readonly share_die: number | null;
+  readonly share_wafer: number | null;
+  readonly share_lot: number | null;
+  readonly share_other_lots: number | null;
+  readonly share_platform: number | null;
 }
 
 /** A stored trait together with the trait rows and readings under it. */
@@ -54,9 +61,10 @@ export async function deriveRoles(
   platform: Platform,
   checked: CheckedRequest,
   guide: GuideRecord,
+  others: readonly OtherLot[],
 ): Promise<readonly RoleTrait[]> {
   const { lot } = design.lot;
-  const pools = new TraitPools(platform, design, traits);
+  const pools = new TraitPools(platform, design, traits, others);
   const windows = windowsByUnit(await recordsOf(past, "poling", lot));
   const file = completeWalls(traits).get(guide.guide_id);
   const walls = file === undefined ? null : await wallsOf(past, lot, guide.guide_id, file);
@@ -84,6 +92,15 @@ async function wallsOf(past: Ledger, lot: string, guide: string, file: string): 
 }
 
 const SAME = ["role", "trait", "wavelength_nm", "polarisation", "basis", "distance", "note"] as const;
+
+const SHARES = [
+  ["share_own", "own"],
+  ["share_die", "die"],
+  ["share_wafer", "wafer"],
+  ["share_lot", "lot"],
+  ["share_other_lots", "lots"],
+  ["share_platform", "prior"],
+] as const;
 
 /**
  * Puts derived traits beside the stored ones.
@@ -130,6 +147,10 @@ function difference(stored: StoredRole, again: RoleTrait, exact: boolean): strin
   if (!exact) return null;
   for (const name of ["value", "u"] as const) {
     if (!Object.is(stored[name], again[name])) return said(name, stored[name], again[name]);
+  }
+  for (const [name, share] of SHARES) {
+    const now = again.shares?.[share] ?? null;
+    if (!Object.is(stored[name], now)) return said(name, stored[name], now);
   }
   return null;
 }

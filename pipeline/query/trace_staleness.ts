@@ -1,6 +1,7 @@
 import type { Ledger, Manifest } from "../ledger/mod.ts";
 import { MODEL_VERSION } from "../model_version.ts";
 import type { LoadedPlatform } from "../platforms.ts";
+import { pooledRuns } from "../traits/pooled_lots.ts";
 import type { PredictParameters } from "./trace_find.ts";
 
 /** What has changed since the prediction, in sentences. */
@@ -8,7 +9,7 @@ export async function staleness(
   now: Ledger,
   past: Ledger,
   run: Manifest,
-  reduced: Manifest,
+  [reduced, ...others]: readonly [Manifest, ...Manifest[]],
   parameters: PredictParameters,
   loaded: LoadedPlatform,
   requestFingerprint: string | undefined,
@@ -28,6 +29,18 @@ export async function staleness(
   } else if (inForce !== undefined && inForce.run !== reduced.run) {
     remarks.push(
       `the prediction is out of date: the readings were reduced anew by ${inForce.run}; run predict ${lot}`,
+    );
+  }
+  const known = new Map(others.map((r) => [r.lot, r.fingerprint]));
+  const pooled = (await pooledRuns(now, loaded)).filter((r) => r.lot !== lot);
+  const changedLots = [
+    ...pooled.filter((r) => known.get(r.lot) !== r.fingerprint).map((r) => r.lot!),
+    ...others.filter((o) => !pooled.some((r) => r.lot === o.lot)).map((o) => o.lot!),
+  ];
+  if (remarks.length === 0 && changedLots.length > 0 && loaded.fingerprint === parameters.platform_sha256) {
+    remarks.push(
+      `the prediction is out of date: readings of ${changedLots.slice(0, 3).join(", ")} that it is pooled ` +
+        `with have changed since; run predict ${lot}`,
     );
   }
   if (loaded.fingerprint !== parameters.platform_sha256) {

@@ -3,7 +3,7 @@ import type { Ledger } from "../ledger/mod.ts";
 import type { TraitRow } from "../traits/trait_row.ts";
 import { ReadingRows } from "./trace_readings.ts";
 import type { FollowedRole } from "./trace_roles.ts";
-import type { TracedDefault, TracedTrait } from "./trace_types.ts";
+import type { TracedDefault, TracedShares, TracedTrait } from "./trace_types.ts";
 
 /** Traits in the roles of a figure, each with its trait rows and their readings. */
 export async function tracedTraits(
@@ -31,6 +31,7 @@ export async function tracedTraits(
       distance: f.distance,
       note: f.note,
       readings_used: f.readings_used,
+      shares: sharesOf(f),
       measured: f.used.map((k) => {
         const t = traits[k]!;
         return {
@@ -54,6 +55,16 @@ export async function tracedTraits(
   });
 }
 
+const sharesOf = (f: FollowedRole): TracedShares | null =>
+  f.share_own === null ? null : {
+    own: f.share_own,
+    die: f.share_die!,
+    wafer: f.share_wafer!,
+    lot: f.share_lot!,
+    other_lots: f.share_other_lots!,
+    platform: f.share_platform!,
+  };
+
 /** A role that no trait fills: the model's own value stands, or none. */
 function unread(role: Role, platform: string): TracedTrait {
   const [trait, note] = role === "phase_matching"
@@ -71,6 +82,7 @@ function unread(role: Role, platform: string): TracedTrait {
     distance: null,
     note,
     readings_used: 0,
+    shares: null,
     measured: [],
     readings: [],
   };

@@ -54,11 +54,25 @@ export interface TracedTrait {
   /** Farthest reading used, (λ_reading − λ)/λ. */
   readonly distance: number | null;
   readonly note: string | null;
+  /**
+   * Share of the value that each has: the guide's own readings, those of its die, wafer, lot (each without the nearer ones),
+   * of other lots, and the platform's default; they sum to 1. Null where the trait is not pooled.
+   */
+  readonly shares: TracedShares | null;
   /** Trait rows (or stretches of readings) that the prediction used. */
   readonly readings_used: number;
   readonly measured: readonly TracedTraitRow[];
   /** Readings used as they are, without a trait row in between. */
   readonly readings: readonly TracedReading[];
+}
+
+export interface TracedShares {
+  readonly own: number;
+  readonly die: number;
+  readonly wafer: number;
+  readonly lot: number;
+  readonly other_lots: number;
+  readonly platform: number;
 }
 
 /** A default of the platform that stood in. */
@@ -119,7 +133,13 @@ export interface Trace {
   readonly run: string;
   readonly model: string;
   readonly program: string;
-  readonly runs: { readonly predict: string; readonly reduce: string; readonly ingest: readonly string[] };
+  readonly runs: {
+    readonly predict: string;
+    readonly reduce: string;
+    readonly ingest: readonly string[];
+    /** Runs of traits of the other lots that the traits were pooled with. */
+    readonly other_lots: readonly string[];
+  };
   readonly remarks: readonly string[];
   readonly traits: readonly TracedTrait[];
   readonly platform: {

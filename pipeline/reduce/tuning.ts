@@ -1,6 +1,6 @@
 import { effectiveLength, fitTuningScan, isRefused, mismatchSpread } from "../../models/metrology/mod.ts";
 import { mismatchProfile, parameterSlope } from "../../models/decision/mod.ts";
-import { mismatch } from "../../models/guides/mod.ts";
+import { type GeometryParameter, mismatch } from "../../models/guides/mod.ts";
 import {
   bandForPeak,
   type Grating,
@@ -84,12 +84,13 @@ function reduceScan(
   const peak = peaks.get(guide.guide_id)?.deltaBeta ?? 2 * Math.PI / um(guide.period_um);
   const sign = Math.sign(fit.centre.value);
   const varying = along.get(guide.guide_id) ?? [];
-  const profile = mismatchProfile(varying.flatMap((v) => v.along ?? []), (parameter) =>
+  const slopeOf = (parameter: GeometryParameter) =>
     parameterSlope(
       readings.model,
       { waves: wavesAt(nearest), geometry, temperatureC: nearest.temperature_c },
       parameter,
-    ));
+    );
+  const profile = mismatchProfile(varying.flatMap((v) => v.along ?? []), slopeOf);
   const target = profile === undefined
     ? sign * peak
     : peakAlong(guide, peaks.get(guide.guide_id)?.grating ?? null, profile, sign);
@@ -117,6 +118,8 @@ function reduceScan(
     trait: "mismatch_offset_per_m",
     value: (target - fit.centre.value) / scale,
     u: fit.centre.u / scale,
+    // As far as the scan's guide is not as wide or thick as it is taken to be, its offset is its own.
+    u_pooled: Math.hypot(fit.centre.u / scale, ...errors.map((e) => slopeOf(e.parameter) * e.resolved.u)),
   });
   const length = effectiveLength(fit.fwhm, 1);
   out.traits.push({ ...common, trait: "effective_length_mm", value: length.value * 1e3, u: length.u * 1e3 });

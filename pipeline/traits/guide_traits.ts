@@ -10,6 +10,7 @@ import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import { mm, toNm, um } from "../../shared/units.ts";
 import type { Basis, Polarisation } from "../../shared/vocabulary.ts";
 import { processName } from "../../models/guides/mod.ts";
+import type { InformationShares } from "../../models/pooling/mod.ts";
 import type { GuideRecord, PolingRecord } from "../records.ts";
 import type { AlongByGuide, AlongReadings } from "./along_guide.ts";
 import { resolveGeometry } from "./geometry.ts";
@@ -34,6 +35,8 @@ export interface RoleTrait {
   /** Readings used directly, without a trait row in between. */
   readonly refs: readonly ReadingRef[];
   readonly note: string | null;
+  /** Share of the value that readings of each level and the platform's default have; null where it is not pooled. */
+  readonly shares: InformationShares | null;
 }
 
 /** Poling windows in force, by the full id of the guide, die or wafer that they belong to. */
@@ -96,6 +99,7 @@ export function resolveGuide(
           used: [],
           refs: [],
           note: "no coating of the output facet in lot.json: bare, from the effective index",
+          shares: null,
         }
         : roleOf(`${name}_facet`, resolved),
     );
@@ -141,7 +145,7 @@ export function resolveGuide(
 }
 
 /** Rounded to 1e-6 nm, so that a wavelength that went through SI compares equal to the one in the file. */
-const wavelengthNm = (lambda: number): number => Number(toNm(lambda).toFixed(6));
+export const wavelengthNm = (lambda: number): number => Number(toNm(lambda).toFixed(6));
 
 const used = ({ value, u, basis, key }: ResolvedTrait): UsedTrait => ({ value, u, basis, key });
 
@@ -158,6 +162,7 @@ const roleOf = (role: Role, t: ResolvedTrait): RoleTrait => ({
   used: t.used,
   refs: [],
   note: t.otherWidth ? "from guides of another design width" : null,
+  shares: t.shares,
 });
 
 /** Readings along a guide, used or seen to say nothing. */
@@ -179,6 +184,7 @@ function alongRole({ parameter, along, sd, u, places, refs }: AlongReadings, gui
         u.toPrecision(2)
       }: not used`
       : `varies by ${sd.toPrecision(2)} over ${places} places`,
+    shares: null,
   };
 }
 
@@ -196,6 +202,7 @@ function resolvePoling(
     value: null,
     u: null,
     distance: null,
+    shares: null,
   };
   if (walls !== null) {
     const used = pools.positions("walls_complete", guide.guide_id).filter((k) => pools.rows[k]!.value === 1);

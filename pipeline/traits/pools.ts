@@ -1,5 +1,16 @@
-import { type Estimate, inherit, type Observation, type Pool } from "../../models/pooling/mod.ts";
-import { coatedReflectivity, isRefused, nearestReading } from "../../models/metrology/mod.ts";
+import {
+  type Contradiction,
+  type Estimate,
+  type HierarchicalPool,
+  type InformationShares,
+  inherit,
+  type LotObservation,
+  type Pool,
+  pools,
+  type Spread,
+  spreadFromDefault,
+} from "../../models/pooling/mod.ts";
+import { coatedReflectivity, isRefused } from "../../models/metrology/mod.ts";
 import type { FacetTrait, UsedTrait } from "../../models/decision/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import type { DefaultTrait, Platform } from "../../shared/schemas/platform.ts";
@@ -7,6 +18,16 @@ import { nm } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
 import type { GuideRecord, LotDesign } from "../records.ts";
 import { defaultOf, spreadOf } from "./platform_defaults.ts";
+import {
+  describer,
+  observationOf,
+  ownReadings,
+  readingsNear,
+  scalesWithWavelength,
+  type UsedRows,
+  withSharedU,
+} from "./pool_observations.ts";
+import { type OtherLot, type Places, placesOf } from "./pooled_lots.ts";
 import type { TraitName, TraitRow } from "./trait_row.ts";
 
 /** A trait as one guide uses it, and how it came about. */
@@ -21,20 +42,72 @@ export interface ResolvedTrait extends UsedTrait {
   /** Positions in the list of trait rows. */
   readonly used: readonly number[];
   readonly otherWidth: boolean;
+  /** Where the value comes from; null where it is not pooled. */
+  readonly shares: InformationShares | null;
 }
-
-/** How far (as a share of it) a reading's wavelength may be from where it is used. */
-const WITHIN = 0.05;
 
 type PooledTrait = Extract<TraitName, DefaultTrait>;
 
-/** Traits of every guide of a lot: its own readings, else its die's, wafer's, lot's, else the platform's. */
+/** A reading, or all readings of one unit, that the others of its trait contradict; it is in use all the same. */
+export interface ContradictingReading extends Omit<Contradiction, "readings"> {
+  readonly trait: PooledTrait;
+  readonly wavelength_nm: number | null;
+  readonly polarisation: Polarisation | null;
+  readonly process: string | null;
+  /** Positions in the list of trait rows. */
+  readonly used: readonly number[];
+}
+
+/** Natural bounds of what is pooled; readings may lie outside, true values can't. */
+const BOUNDS: Partial<Record<PooledTrait, { readonly low?: number; readonly high?: number }>> = {
+  loss_db_cm: { low: 0 },
+  mfd_x_um: { low: 0 },
+  mfd_y_um: { low: 0 },
+  duty: { low: 0, high: 1 },
+  duty_sd: { low: 0 },
+  merged: { low: 0, high: 1 },
+  film_thickness_nm: { low: 0 },
+  etch_depth_nm: { low: 0 },
+  titanium_nm: { low: 0 },
+};
+
+/**
+ * Cross-sections are pooled within their lot: a scan's offset is counted beside them when the lot is reduced, and has to
+ * meet the same cross-section when it is used, whatever lots come later.
+ */
+const WITHIN_LOT: readonly TraitName[] = [
+  "width_error_um",
+  "film_thickness_nm",
+  "etch_depth_nm",
+  "titanium_nm",
+];
+
+/** Counts of rare events and spreads have skew errors: a tail that a normal would call impossible is theirs by nature. */
+const SKEW: readonly TraitName[] = ["merged", "duty_sd"];
+
+interface Held {
+  readonly pool: HierarchicalPool;
+  /** Guides' own readings as they are, where these outrank what the others suggest. */
+  readonly own: Pool;
+  readonly describe: (used: readonly number[]) => UsedRows;
+}
+
+/**
+ * Traits of every guide of a lot, from its own readings and those of the guides, dies, wafers and lots around it: the
+ * hierarchical model of models/pooling over all lots of the platform.
+ */
 export class TraitPools {
-  readonly #pools = new Map<string, { pool: Pool; describe: (used: readonly number[]) => UsedRows }>();
+  readonly #pools = new Map<string, Held>();
   readonly #byTrait = new Map<TraitName, number[]>();
   readonly #byUnit = new Map<string, number[]>();
+  #places: Places | null = null;
 
-  constructor(readonly platform: Platform, readonly design: LotDesign, readonly rows: readonly TraitRow[]) {
+  constructor(
+    readonly platform: Platform,
+    readonly design: LotDesign,
+    readonly rows: readonly TraitRow[],
+    readonly others: readonly OtherLot[] = [],
+  ) {
     rows.forEach((row, k) => {
       append(this.#byTrait, row.trait, k);
       append(this.#byUnit, `${row.trait}|${row.unit}`, k);
@@ -58,32 +131,40 @@ export class TraitPools {
     polarisation: Polarisation | null,
     process: string | null = null,
   ): ResolvedTrait | null {
-    const key = `${trait}|${wavelength_nm}|${polarisation}|${process}`;
-    const fallback = defaultOf(this.platform, trait, polarisation);
-    let held = this.#pools.get(key);
-    if (held === undefined) {
-      held = this.#make(trait, wavelength_nm, polarisation, process);
-      this.#pools.set(key, held);
-    }
-    let estimate: Estimate;
+    const held = this.#held(trait, wavelength_nm, polarisation, process);
+    return this.#resolved(held.pool, held, trait, guide, wavelength_nm, polarisation, process);
+  }
+
+  #resolved(
+    pool: Pool | HierarchicalPool,
+    { describe }: Held,
+    trait: PooledTrait,
+    guide: GuideRecord,
+    wavelength_nm: number | null,
+    polarisation: Polarisation | null,
+    process: string | null,
+  ): ResolvedTrait | null {
+    let estimate: Estimate & { readonly shares?: InformationShares | null };
     try {
-      estimate = held.pool.estimate({
+      estimate = pool.estimate({
         wafer: guide.wafer,
         die: guide.die_id,
         guide: guide.guide_id,
         widthUm: guide.width_um,
       });
     } catch (error) {
-      if (error instanceof RangeError && fallback === null) return null;
+      if (error instanceof RangeError && defaultOf(this.platform, trait, polarisation) === null) return null;
       throw error;
     }
-    const { value, u, basis, from, used, otherWidth } = estimate;
-    const { distance, list } = held.describe(used);
+    const { value, u, basis, from, used, otherWidth, shares } = estimate;
+    const { distance, list } = describe(used);
     return {
       value,
       u,
       basis,
-      key: basis === "platform" ? `${key}|platform` : `${trait}|${polarisation}|${process}|${from}|${list}`,
+      key: basis === "platform"
+        ? `${poolKey(trait, wavelength_nm, polarisation, process)}|platform`
+        : `${trait}|${polarisation}|${process}|${from}|${list}`,
       trait,
       polarisation,
       wavelength_nm,
@@ -91,7 +172,42 @@ export class TraitPools {
       from,
       used,
       otherWidth,
+      shares: shares ?? null,
     };
+  }
+
+  /** Readings of the lot that contradict the others of their trait, as it is pooled at a wavelength. */
+  contradictions(
+    trait: PooledTrait,
+    wavelength_nm: number | null,
+    polarisation: Polarisation | null,
+    process: string | null = null,
+  ): ContradictingReading[] {
+    if (SKEW.includes(trait)) return [];
+    const { pool } = this.#held(trait, wavelength_nm, polarisation, process);
+    return pool.contradictions().map(({ readings, ...rest }) => ({
+      ...rest,
+      trait,
+      wavelength_nm,
+      polarisation,
+      process,
+      used: readings,
+    }));
+  }
+
+  #held(
+    trait: PooledTrait,
+    wavelength_nm: number | null,
+    polarisation: Polarisation | null,
+    process: string | null,
+  ): Held {
+    const key = poolKey(trait, wavelength_nm, polarisation, process);
+    let held = this.#pools.get(key);
+    if (held === undefined) {
+      held = this.#make(trait, wavelength_nm, polarisation, process);
+      this.#pools.set(key, held);
+    }
+    return held;
   }
 
   #make(
@@ -99,50 +215,50 @@ export class TraitPools {
     wavelength_nm: number | null,
     polarisation: Polarisation | null,
     process: string | null,
-  ) {
-    const distances = new Map<number, number>();
-    const observations: Observation[] = [];
-    for (const units of this.#unitByUnit(trait, polarisation, process)) {
-      for (const [k, scale, distance] of chosen(this.rows, units, wavelength_nm, scales(trait))) {
-        const row = this.rows[k]!;
-        if (distance !== null) distances.set(k, distance);
-        observations.push({
-          wafer: row.wafer!,
-          ...(row.die_id === null ? {} : { die: row.die_id }),
-          ...(row.guide_id === null ? {} : { guide: row.guide_id }),
-          ...(row.width_um === null ? {} : { widthUm: row.width_um }),
-          value: row.value * scale,
-          u: row.u * scale,
-          index: k,
-        });
-      }
-    }
-    const weighed = trait === "merged" ? withSharedU(observations) : observations;
+  ): Held {
+    const { lot } = this.design.lot;
+    const asked = { wavelength_nm, polarisation, process };
+    const own = readingsNear(this.rows, this.positions(trait), asked);
+    const others = WITHIN_LOT.includes(trait) ? [] : this.others.flatMap((other) => {
+      const all = other.rows.flatMap((row, k) => row.trait === trait ? [k] : []);
+      // Their readings are never among those that an estimate of this lot names.
+      return readingsNear(other.rows, all, asked).map((near) => observationOf(near, other.lot, -1));
+    });
+    const all = [...own.map((near) => observationOf(near, lot, near.position)), ...others];
+    const observations = trait === "merged" ? withSharedU(all) : all;
     const fallback = defaultOf(this.platform, trait, polarisation);
     const at = fallback?.at_nm ?? null;
+    const carry = scalesWithWavelength(trait) && at !== null && wavelength_nm !== null
+      ? wavelength_nm / at
+      : 1;
     const carried = fallback === null ? null : {
-      value: fallback.value *
-        (scales(trait) && at !== null && wavelength_nm !== null ? wavelength_nm / at : 1),
-      u: fallback.u * (scales(trait) && at !== null && wavelength_nm !== null ? wavelength_nm / at : 1),
+      value: fallback.value * carry,
+      u: fallback.u * carry,
       from: this.platform.platform,
     };
+    const spread = fallback === null && this.platform.priors[trait] === undefined
+      ? spreadOfOne(all)
+      : spreadOf(this.platform, trait, fallback);
+    const scaled = {
+      lotSd: spread.lotSd * carry,
+      waferSd: spread.waferSd * carry,
+      dieSd: spread.dieSd * carry,
+      guideSd: spread.guideSd * carry,
+    };
+    const bounds = BOUNDS[trait];
     return {
-      pool: inherit(weighed, spreadOf(this.platform, trait, fallback), carried, this.design.lot.lot),
-      describe: describer(distances),
+      pool: pools(observations, this.places(), scaled, carried, bounds === undefined ? {} : { bounds })(lot),
+      own: inherit(ownReadings(own, lot), scaled, carried, lot),
+      describe: describer(own),
     };
   }
 
-  /** Rows of a trait, polarisation and process, unit by unit. */
-  #unitByUnit(trait: TraitName, polarisation: Polarisation | null, process: string | null): number[][] {
-    const units = new Map<string, number[]>();
-    for (const k of this.positions(trait)) {
-      const row = this.rows[k]!;
-      if (row.polarisation !== polarisation || row.process !== process) continue;
-      const held = units.get(row.unit);
-      if (held === undefined) units.set(row.unit, [k]);
-      else held.push(k);
-    }
-    return [...units.values()];
+  /** Centres of all dies that readings may be of. */
+  places(): Places {
+    return this.#places ??= new Map([
+      ...placesOf(this.design.guides ?? []),
+      ...this.others.flatMap((o) => [...o.places]),
+    ]);
   }
 
   /** The same as {@link estimate}; a trait that nothing is known of is an error of the platform file. */
@@ -179,7 +295,13 @@ export class TraitPools {
     const readings = positions.map((k) => this.rows[k]!)
       .map((r) => ({ lambda: nm(r.wavelength_nm!), reflectivity: r.value, u: r.u }));
     const found = coatedReflectivity(readings, nm(wavelength_nm));
-    const common = { trait: "reflectivity" as const, polarisation: null, wavelength_nm, otherWidth: false };
+    const common = {
+      trait: "reflectivity" as const,
+      polarisation: null,
+      wavelength_nm,
+      otherWidth: false,
+      shares: null,
+    };
     if (!isRefused(found)) {
       const used = found.used.map((k) => positions[k]!);
       const resolved: ResolvedTrait = {
@@ -222,79 +344,35 @@ export class TraitPools {
    * guides only where the platform says how far its calculation may be off. Null: no scan and no such default.
    */
   offset(guide: GuideRecord, processKey: string, fundamental_nm: number): ResolvedTrait | null {
-    const found = this.estimate("mismatch_offset_per_m", guide, fundamental_nm, null, processKey);
-    if (found === null || found.basis === "measured") return found;
-    return defaultOf(this.platform, "mismatch_offset_per_m", null) === null ? null : found;
-  }
-}
-
-/**
- * The u of a share of rare events goes with the share itself: weighed by 1/u², guides that happened to count none would
- * outweigh all others. Within a wafer every guide's share gets the root mean square of their u, so that all weigh alike.
- */
-function withSharedU(observations: readonly Observation[]): Observation[] {
-  const byWafer = new Map<string, { squares: number; count: number }>();
-  for (const { wafer, u } of observations) {
-    const { squares, count } = byWafer.get(wafer) ?? { squares: 0, count: 0 };
-    byWafer.set(wafer, { squares: squares + u * u, count: count + 1 });
-  }
-  return observations.map((o) => {
-    const { squares, count } = byWafer.get(o.wafer)!;
-    return { ...o, u: Math.sqrt(squares / count) };
-  });
-}
-
-/**
- * What is told of the rows that an estimate used: the farthest one's distance in wavelength, and all their distances as text.
- * With the unit they name the readings whatever else the lot holds: seeds made of positions would move with every new file.
- */
-interface UsedRows {
-  readonly distance: number | null;
-  readonly list: string;
-}
-
-/** Describes lists of rows; once each: a whole lot inherits from one list of thousands. */
-function describer(distances: ReadonlyMap<number, number>): (used: readonly number[]) => UsedRows {
-  const held = new WeakMap<readonly number[], UsedRows>();
-  return (used) => {
-    let rows = held.get(used);
-    if (rows === undefined) {
-      const distance = used.reduce<number | null>((far, k) => {
-        const d = distances.get(k);
-        return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
-      }, null);
-      rows = { distance, list: [...new Set(used.map((k) => distances.get(k) ?? 0))].sort().join(",") };
-      held.set(used, rows);
+    const trait = "mismatch_offset_per_m";
+    const held = this.#held(trait, fundamental_nm, null, processKey);
+    const found = this.#resolved(held.pool, held, trait, guide, fundamental_nm, null, processKey);
+    if (found?.basis === "measured") {
+      return this.#resolved(held.own, held, trait, guide, fundamental_nm, null, processKey);
     }
-    return rows;
-  };
+    return defaultOf(this.platform, trait, null) === null ? null : found;
+  }
 }
+
+/**
+ * Spreads where the platform states nothing. Several units tell them by themselves (all 0: not stated); a single one is taken
+ * to be off by half of itself for other guides (common practice, no source), and never to hold for them as it was read.
+ */
+function spreadOfOne(observations: readonly LotObservation[]): Spread {
+  const units = new Set(observations.map((o) => o.guide ?? o.die ?? o.wafer));
+  if (units.size !== 1) return spreadFromDefault(0);
+  return spreadFromDefault(Math.max(...observations.map(({ value, u }) => Math.max(u, Math.abs(value) / 2))));
+}
+
+const poolKey = (
+  trait: TraitName,
+  wavelength_nm: number | null,
+  polarisation: Polarisation | null,
+  process: string | null,
+): string => `${trait}|${wavelength_nm}|${polarisation}|${process}`;
 
 function append<K>(map: Map<K, number[]>, key: K, k: number): void {
   const held = map.get(key);
   if (held === undefined) map.set(key, [k]);
   else held.push(k);
-}
-
-/** A mode's size goes with the wavelength; a loss does not. */
-const scales = (trait: TraitName): boolean => trait === "mfd_x_um" || trait === "mfd_y_um";
-
-/** Of one unit's rows those nearest in wavelength: position, factor on value and u, signed distance. */
-function chosen(
-  rows: readonly TraitRow[],
-  unit: readonly number[],
-  wavelength_nm: number | null,
-  scaled: boolean,
-): [position: number, scale: number, distance: number | null][] {
-  if (wavelength_nm === null) return unit.map((k) => [k, 1, null]);
-  const near = nearestReading(
-    unit.map((k) => ({ lambda: nm(rows[k]!.wavelength_nm!) })),
-    nm(wavelength_nm),
-    WITHIN,
-  );
-  if (near === null) return [];
-  return near.repeats.map((r) => {
-    const k = unit[r]!;
-    return [k, scaled ? wavelength_nm / rows[k]!.wavelength_nm! : 1, near.distance];
-  });
 }

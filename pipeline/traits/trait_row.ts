@@ -44,6 +44,11 @@ export interface TraitRow {
   readonly process: string | null;
   readonly value: number;
   readonly u: number;
+  /**
+   * u of the value as a sample of its neighbours, where that is more than u: a scan's offset holds what the guide's own
+   * cross-section errs by, which is nothing of its neighbours'. Null or left out: u.
+   */
+  readonly u_pooled?: number | null;
   /** Where u comes from: stated with the readings, the platform's default, or the fit. */
   readonly u_from: "stated" | "platform" | "fit";
   readonly method: string;
@@ -66,6 +71,7 @@ export const TRAIT_SHAPE = {
   process: "text",
   value: "f64",
   u: "f64",
+  u_pooled: "f64",
   u_from: "text",
   method: "text",
   readings: "text",

@@ -274,7 +274,9 @@ Deno.test("a run folder's predictions are those of an independent calculation", 
     equal(basis("Z09-1/03/g1", "loss_db_cm_signal"), "measured");
     equal(basis("Z09-1/03/g2", "loss_db_cm_signal"), "die");
     assertClose(mean("open", "Z09-1/03/g1", "loss_db_cm_signal"), 0.45, { abs: 0.001 });
-    assertClose(mean("open", "Z09-1/03/g2", "loss_db_cm_idler"), 0.6, { abs: 0.01 });
+    // Its neighbour was read at 0.6 dB/cm, the platform says 0.5: between the two, the reading within its doubt.
+    const idler = guide("open", "Z09-1/03/g2").figures.loss_db_cm_idler;
+    ok(idler.mean! < 0.6 && 0.6 - idler.mean! < 2 * idler.u!, `${idler.mean} ± ${idler.u}`);
     equal(basis("Z09-1/03/g2", "coupling_signal"), "wafer");
     // Coated, but the spectrum is 100 nm away: the platform's coated default, never the bare facet's 7 %.
     equal(basis("Z09-1/03/g1", "facet_signal"), "platform");

@@ -47,7 +47,7 @@ Deno.test("a grating is known by walls, else by windows, else by the pooled duty
 
   const pooled = resolve(rows, [], SAME_DIE).inputs.poling;
   ok(pooled.from === "duty");
-  assertClose(pooled.duty.value, 0.45, { rel: 1e-9 });
+  assertClose(pooled.duty.value, 0.45, { abs: 0.005 });
   deepEqual([pooled.duty.basis, pooled.dutySd.basis, pooled.merged.basis], ["die", "die", "die"]);
 
   const design = resolve([]).inputs.poling;
@@ -71,7 +71,9 @@ Deno.test("each role takes its own wavelength and polarisation", () => {
   const loss = (nm: number, pol: "TE" | "TM", value: number) =>
     traitRow("loss_db_cm", HERE.guide_id, value, { wavelength_nm: nm, polarisation: pol });
   const { inputs, roles } = resolve([loss(791, "TE", 0.7), loss(1582, "TE", 0.4), loss(1582, "TM", 0.6)]);
-  deepEqual([inputs.pumpLoss.value, inputs.signal.loss.value, inputs.idler.loss.value], [0.7, 0.4, 0.6]);
+  assertClose(inputs.pumpLoss.value, 0.7, { abs: 1e-4 });
+  assertClose(inputs.signal.loss.value, 0.4, { abs: 1e-4 });
+  assertClose(inputs.idler.loss.value, 0.6, { abs: 1e-4 });
   deepEqual(
     roles.filter((r) => r.trait === "loss_db_cm").map((r) => [r.role, r.wavelength_nm, r.polarisation]),
     [["pump_loss", 791, "TE"], ["signal_loss", 1582, "TE"], ["idler_loss", 1582, "TM"]],

@@ -1,0 +1,122 @@
+import type { LotObservation } from "../../models/pooling/mod.ts";
+import { nearestReading } from "../../models/metrology/mod.ts";
+import { nm } from "../../shared/units.ts";
+import type { Polarisation } from "../../shared/vocabulary.ts";
+import type { TraitName, TraitRow } from "./trait_row.ts";
+
+/** How far (as a share of it) a reading's wavelength may be from where it is used. */
+const WITHIN = 0.05;
+
+/** What a trait is asked at; null where it does not depend on that. */
+export interface AskedAt {
+  readonly wavelength_nm: number | null;
+  readonly polarisation: Polarisation | null;
+  readonly process: string | null;
+}
+
+/** A trait row as it counts at a wavelength. */
+export interface NearReading {
+  readonly row: TraitRow;
+  /** Position of the row in its list. */
+  readonly position: number;
+  /** Factor on value and u. */
+  readonly scale: number;
+  /** (λ_reading − λ)/λ; null without a wavelength. */
+  readonly distance: number | null;
+}
+
+/** A mode's size goes with the wavelength; a loss does not. */
+export const scalesWithWavelength = (trait: TraitName): boolean =>
+  trait === "mfd_x_um" || trait === "mfd_y_um";
+
+/**
+ * Rows of one polarisation and process: of each unit those nearest in wavelength within ±5 %, repeats alike; without a
+ * wavelength all of them.
+ */
+export function readingsNear(
+  rows: readonly TraitRow[],
+  positions: readonly number[],
+  { wavelength_nm, polarisation, process }: AskedAt,
+): NearReading[] {
+  const ofKind = positions.filter((k) =>
+    rows[k]!.polarisation === polarisation && rows[k]!.process === process
+  );
+  return [...Map.groupBy(ofKind, (k) => rows[k]!.unit).values()].flatMap((unit): NearReading[] => {
+    if (wavelength_nm === null) {
+      return unit.map((position) => ({ row: rows[position]!, position, scale: 1, distance: null }));
+    }
+    const lambdas = unit.map((k) => ({ lambda: nm(rows[k]!.wavelength_nm!) }));
+    const near = nearestReading(lambdas, nm(wavelength_nm), WITHIN);
+    return (near?.repeats ?? []).map((r) => {
+      const position = unit[r]!;
+      const row = rows[position]!;
+      const scale = scalesWithWavelength(row.trait) ? wavelength_nm / row.wavelength_nm! : 1;
+      return { row, position, scale, distance: near!.distance };
+    });
+  });
+}
+
+/** A reading as one of many of its trait; `index` is the caller's handle on it. */
+export function observationOf(
+  { row, scale }: NearReading,
+  lot: string,
+  index: number,
+  u = row.u_pooled ?? row.u,
+): LotObservation {
+  return {
+    lot,
+    wafer: row.wafer!,
+    ...(row.die_id === null ? {} : { die: row.die_id }),
+    ...(row.guide_id === null ? {} : { guide: row.guide_id }),
+    ...(row.width_um === null ? {} : { widthUm: row.width_um }),
+    value: row.value * scale,
+    u: u * scale,
+    index,
+  };
+}
+
+/** Readings of single guides as they are, for those guides alone. */
+export const ownReadings = (readings: readonly NearReading[], lot: string): LotObservation[] =>
+  readings.filter(({ row }) => row.guide_id !== null)
+    .map((near) => observationOf(near, lot, near.position, near.row.u));
+
+/**
+ * The u of a share of rare events goes with the share itself: weighed by 1/u², guides that happened to count none would
+ * outweigh all others. Within a wafer every guide's share gets the root mean square of their u, so that all weigh alike.
+ */
+export function withSharedU(observations: readonly LotObservation[]): LotObservation[] {
+  const byWafer = Map.groupBy(observations, (o) => o.wafer);
+  const shared = new Map(
+    [...byWafer].map((
+      [wafer, all],
+    ) => [wafer, Math.sqrt(all.reduce((s, { u }) => s + u * u, 0) / all.length)]),
+  );
+  return observations.map((o) => ({ ...o, u: shared.get(o.wafer)! }));
+}
+
+/**
+ * What is told of the rows that an estimate used: the farthest one's distance in wavelength, and all their distances as text.
+ * With the unit they name the readings whatever else the lot holds: seeds made of positions would move with every new file.
+ */
+export interface UsedRows {
+  readonly distance: number | null;
+  readonly list: string;
+}
+
+/** Describes lists of positions; once each: a whole lot inherits from one list of thousands. */
+export function describer(readings: readonly NearReading[]): (used: readonly number[]) => UsedRows {
+  const distances = new Map(readings.flatMap((r) => r.distance === null ? [] : [[r.position, r.distance]]));
+  const held = new WeakMap<readonly number[], UsedRows>();
+  return (used) => {
+    let rows = held.get(used);
+    if (rows === undefined) {
+      const distance = used.reduce<number | null>((far, k) => {
+        const d = distances.get(k);
+        return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
+      }, null);
+      rows = { distance, list: [...new Set(used.map((k) => distances.get(k) ?? 0))].sort().join(",") };
+      held.set(used, rows);
+    }
+    return rows;
+  };
+}
