@@ -1,6 +1,13 @@
 import { numberText, outputWidth, visibleText, wrap } from "../console/mod.ts";
 import type { Basis } from "../../shared/vocabulary.ts";
-import type { Trace, TracedReading, TracedStep, TracedTrait, TracedTraitRow } from "../query/trace_types.ts";
+import type {
+  Trace,
+  TracedReading,
+  TracedShares,
+  TracedStep,
+  TracedTrait,
+  TracedTraitRow,
+} from "../query/trace_types.ts";
 
 interface Node {
   readonly text: string;
@@ -112,9 +119,24 @@ function traitNode(t: TracedTrait, guide: string): Node {
     : `; readings up to ${numberText(100 * Math.abs(t.distance), 2)} % away in wavelength`;
   const remark = t.note === null ? "" : `; ${t.note}`;
   return leafOf(`${t.role}  ${t.trait}${where(t)}${value}, ${basis}${far}${remark}`, [
+    ...t.shares === null ? [] : [leafOf(sharesText(t.shares))],
     ...some(t.measured, (row) => rowNode(row, guide), "trait rows"),
     ...some(t.readings, (r) => leafOf(readingText(r)), "readings"),
   ]);
+}
+
+/** What the value is made of, largest part first; parts below half a per cent are not worth a word. */
+export function sharesText(shares: TracedShares): string {
+  const parts = [
+    ["its own readings", shares.own],
+    ["its die's", shares.die],
+    ["its wafer's", shares.wafer],
+    ["its lot's", shares.lot],
+    ["other lots'", shares.other_lots],
+    ["the platform's default", shares.platform],
+  ] as const;
+  const counted = parts.filter(([, share]) => share >= 0.005).sort((a, b) => b[1] - a[1]);
+  return `made of ${counted.map(([name, share]) => `${name} ${(100 * share).toFixed(0)} %`).join(", ")}`;
 }
 
 function rowNode(row: TracedTraitRow, guide: string): Node {

@@ -1,6 +1,7 @@
 import assert from "node:assert/strict";
 import { join } from "node:path";
 import { parse } from "csv-parse/sync";
+import { sharesText } from "../../../pipeline/commands/trace_text.ts";
 import { sha256 } from "../../../pipeline/json_file.ts";
 import { wavelot } from "../../run_wavelot.ts";
 import { CUTBACK, tracedScene, WALLS } from "../query/traced_lot.ts";
@@ -70,4 +71,9 @@ Deno.test("trace answers as a tree, CSV and JSON, and changes nothing in the led
   assert.equal(old.stdout, tree.stdout);
   assert.match(old.stderr, /remark: the prediction is out of date: readings\/cutback\.csv/);
   assert.equal(await runs(), before + 1);
+});
+
+Deno.test("what a trait is made of is told largest part first, without parts below half a per cent", () => {
+  const shares = { own: 0, die: 0.2, wafer: 0.703, lot: 0.004, other_lots: 0, platform: 0.093 };
+  assert.equal(sharesText(shares), "made of its wafer's 70 %, its die's 20 %, the platform's default 9 %");
 });
