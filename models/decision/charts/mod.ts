@@ -15,3 +15,4 @@ export * from "./group_means.ts";
 export * from "./individuals.ts";
 export * from "./run_rules.ts";
 export * from "./grouped_yield.ts";
+export * from "./spread_growth.ts";

@@ -14,7 +14,8 @@ import { quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
 import { periodOff, repeatedReadings, scanResidual } from "./residual_rules.ts";
 import type { Rule } from "./rules.ts";
 import { seriesOf, summaryOf } from "./series.ts";
-import { spreadGrowth, traitLimit, waferContrast } from "./trait_rules.ts";
+import { spreadGrowth } from "./spread_rules.ts";
+import { traitLimit, waferContrast } from "./trait_rules.ts";
 import { TRAIT_NAMES } from "./facts.ts";
 import { type Flag, SEVERITY_ORDER } from "./types.ts";
 

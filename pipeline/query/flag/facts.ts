@@ -142,13 +142,19 @@ export interface LotSummary {
   readonly yields: ReadonlyMap<string, YieldSummary>;
 }
 
+/** Dies of a wafer in one series. */
+export interface WaferSummary {
+  readonly wafer: string;
+  /** Means of the dies. */
+  readonly values: readonly number[];
+  /** Mean of their u². */
+  readonly readingVariance: number;
+}
+
 export interface SeriesSummary {
   /** Mean of the means of dies. */
   readonly mean: number;
-  readonly dies: number;
-  /** Variance of the die means inside wafers, with its degrees of freedom. */
-  readonly variance: number;
-  readonly degreesOfFreedom: number;
+  readonly wafers: readonly WaferSummary[];
 }
 
 /** Where a guide of the lot's design is. */

@@ -123,20 +123,14 @@ export const oneSided = (confidence: number, dies: number): number =>
   tFactor(2 * Math.max(confidence, 0.5 + 1e-9) - 1, dies < 2 ? 1e6 : dies - 1);
 
 /** What lots are compared by. */
-export function summaryOf(series: Series): SeriesSummary {
-  const groups = new Map<string, number[]>();
-  for (const { wafer, value } of series.dies) groups.set(wafer, [...groups.get(wafer) ?? [], value]);
-  let [squares, degreesOfFreedom] = [0, 0];
-  for (const values of groups.values()) {
-    const centre = mean(values);
-    squares += values.reduce((sum, v) => sum + (v - centre) ** 2, 0);
-    degreesOfFreedom += values.length - 1;
-  }
+export function summaryOf({ dies }: Series): SeriesSummary {
   return {
-    mean: mean(series.dies.map((d) => d.value)),
-    dies: series.dies.length,
-    variance: degreesOfFreedom > 0 ? squares / degreesOfFreedom : NaN,
-    degreesOfFreedom,
+    mean: mean(dies.map((d) => d.value)),
+    wafers: [...Map.groupBy(dies, (d) => d.wafer)].map(([wafer, own]) => ({
+      wafer,
+      values: own.map((d) => d.value),
+      readingVariance: mean(own.map((d) => d.u ** 2)),
+    })),
   };
 }
 

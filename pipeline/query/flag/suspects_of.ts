@@ -6,7 +6,7 @@ import {
 } from "../../../models/decision/suspects/mod.ts";
 import { dieOfGuide } from "../../../shared/ids.ts";
 import type { LotFacts, LotSummary, StepFact, WaferFact } from "./facts.ts";
-import { type FlagSuspect, plural } from "./types.ts";
+import { type FlagSuspect, plural, pText } from "./types.ts";
 
 /** Separates the parts of an attribute's name; no id or step may hold it. */
 const PART = "\u001f";
@@ -173,14 +173,13 @@ export function suspectName(s: Pick<FlagSuspect, "kind" | "step" | "tool" | "rec
 /** What the comparison says of a suspect, as a sentence. */
 export function suspectSentence(s: FlagSuspect): string {
   const rest = s.unaffected === 0 ? "" : `, ${s.unaffected_with} of ${plural(s.unaffected, "other")}`;
-  const short = (p: number) => p < 1e-4 ? "p < 0.0001" : `p = ${Number(p.toPrecision(2))}`;
   const weight = {
-    suspect: `over-represented (${short(s.p_value)}, corrected)`,
-    measured: `measured: ${s.compared} (${short(s.p_value)})`,
+    suspect: `over-represented (${pText(s.p_value)}, corrected)`,
+    measured: `measured: ${s.compared} (${pText(s.p_value)})`,
     no_power: `with ${s.compared} to compare, chance can't be excluded (${
-      short(s.p_value_uncorrected)
+      pText(s.p_value_uncorrected)
     } at best)`,
-    not_shown: `not shown to be more than chance (${short(s.p_value)}, corrected)`,
+    not_shown: `not shown to be more than chance (${pText(s.p_value)}, corrected)`,
   }[s.verdict];
   const only = s.only_difference ? "; nothing else on record tells them apart" : "";
   const same = s.same_as.length === 0 ? "" : `; can't be told apart from ${s.same_as.join(", ")}`;

@@ -1,7 +1,6 @@
 import { mean, quantileOfSorted } from "../../../shared/statistics.ts";
-import { fTail } from "../../../models/decision/tails.ts";
 import { defaultOf } from "../../traits/platform_defaults.ts";
-import type { LotFacts, LotSummary } from "./facts.ts";
+import type { LotFacts } from "./facts.ts";
 import type { RuleOf } from "./rules.ts";
 import {
   isDefaultTrait,
@@ -9,7 +8,6 @@ import {
   type Series,
   seriesOf,
   seriesWords,
-  summaryOf,
   unitOf,
   type WaferMean,
   waferMeans,
@@ -157,44 +155,4 @@ function isFarther(facts: LotFacts, { trait, polarisation }: Series, a: WaferMea
   const known = isDefaultTrait(trait) ? defaultOf(facts.platform, trait, polarisation) : null;
   const from = known?.value ?? 0;
   return Math.abs(a.value - from) >= Math.abs(b.value - from);
-}
-
-/** Dies of a wafer that differ more than those of the lots before (variance ratio, Fisher's F). */
-export function spreadGrowth(
-  facts: LotFacts,
-  rule: RuleOf<"spread_growth">,
-  earlier: readonly LotSummary[],
-): Flag[] {
-  return seriesOf(facts.traits, rule.traits, facts.platform).flatMap((series): Flag[] => {
-    const own = summaryOf(series);
-    const before = earlier.map((l) => l.series.get(series.key)).filter((s) =>
-      s !== undefined && s.degreesOfFreedom > 0
-    ) as ReturnType<typeof summaryOf>[];
-    const degrees = before.reduce((sum, s) => sum + s.degreesOfFreedom, 0);
-    if (own.degreesOfFreedom < 2 || degrees < 4) return [];
-    const variance = before.reduce((sum, s) => sum + s.degreesOfFreedom * s.variance, 0) / degrees;
-    const ratio = own.variance / variance;
-    const p = fTail(ratio, own.degreesOfFreedom, degrees);
-    if (!(p < rule.alpha && Math.sqrt(ratio) >= rule.least_ratio)) return [];
-    const [now, then] = [Math.sqrt(own.variance), Math.sqrt(variance)];
-    const unit = unitOf(series.trait);
-    return [{
-      scope: "lot",
-      id: facts.lot,
-      lot: facts.lot,
-      rule: rule.rule,
-      severity: rule.severity,
-      brief: `${seriesWords(series)} spreads ${num(now / then, 2)} times as much as before`,
-      statement:
-        `Lot ${facts.lot}: ${seriesWords(series)} differs between dies of a wafer by ${num(now)}${unit} ` +
-        `(standard deviation, ${plural(own.dies, "die")}), ${num(now / then, 2)} times the ${
-          num(then)
-        }${unit} of the ${plural(before.length, "lot")} before (p = ${num(p, 2)})`,
-      evidence: {
-        numbers: { trait: series.trait, sd: now, sd_before: then, p_value: p, lots_before: before.length },
-        readings: mergeRefs(series.dies.flatMap((d) => d.refs)),
-      },
-      suspects: [],
-    }];
-  });
 }

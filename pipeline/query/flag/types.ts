@@ -90,4 +90,6 @@ export function num(x: number, digits = 3): string {
 }
 /** A share in percent; what would round to nothing beside a whole is told as 0. */
 export const percent = (x: number): string => `${x < 5e-5 ? "0" : num(100 * x, x < 0.1 ? 2 : 3)} %`;
+/** `p = 0.023`; what is smaller than one in ten thousand needs no digits. */
+export const pText = (p: number): string => p < 1e-4 ? "p < 0.0001" : `p = ${num(p, 2)}`;
 export const plural = (n: number, one: string, many = `${one}s`): string => `${n} ${n === 1 ? one : many}`;

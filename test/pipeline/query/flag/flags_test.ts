@@ -139,20 +139,29 @@ Deno.test("a lot that steps out of line with its forerunners is flagged; too few
   match(undated!.statement, /no start date/);
 });
 
-Deno.test("dies that differ more than before are watched", () => {
+Deno.test("dies that differ more than before are watched, at the wafer if it is one wafer's and at the lot if it is all", () => {
   const lots = Array.from({ length: 6 }, (_, k) => simulatedLot(k + 60));
-  const wild = simulatedLot(70, {
-    fault: (trait, g) =>
-      trait === "loss_db_cm" ? (g.die_id.endsWith("1") || g.die_id.endsWith("4") ? 0.15 : 0) : 0,
-  });
-  const summaries = [...lots, wild].map(summaryOfFacts);
-  const [flag, ...none] = flagsOf(wild, only("spread-grown"), summaries);
+  const wild = (where: (wafer: string) => boolean, step = 0.15) =>
+    simulatedLot(70, {
+      wafers: 3,
+      fault: (trait, g) => trait === "loss_db_cm" && where(g.wafer) && /[14]$/.test(g.die_id) ? step : 0,
+    });
+  const flagged = (lot: LotFacts, before = lots) =>
+    flagsOf(lot, only("spread-grown"), [...before, lot].map(summaryOfFacts));
+  const [whole, ...none] = flagged(wild(() => true));
   deepEqual(none, []);
+  deepEqual([whole!.scope, whole!.id], ["lot", "L070"]);
   match(
-    flag!.statement,
-    /loss at 1550 nm TM differs between dies of a wafer by 0\.\d+ dB\/cm .* times the 0\.\d+ dB\/cm of the 6 lots before/,
+    whole!.statement,
+    /loss at 1550 nm TM differs between dies of a wafer by 0\.\d+ dB\/cm .* times the 0\.\d+ dB\/cm of the 6 lots before .*corrected for 12 comparisons/,
   );
-  deepEqual(flagsOf(lots[5]!, only("spread-grown"), summaries), []);
+  const [one, ...others] = flagged(wild((wafer) => wafer.endsWith("-2")));
+  deepEqual(others, []);
+  deepEqual([one!.scope, one!.id, one!.severity], ["wafer", "L070-2", "watch"]);
+  match(one!.statement, /^Wafer L070-2: .* of the lot's other wafers and the 6 lots before/);
+  // Without any lot before, the siblings alone still tell a wafer that spreads four times as much.
+  deepEqual(flagged(wild((wafer) => wafer.endsWith("-2"), 0.3), []).map((f) => f.id), ["L070-2"]);
+  deepEqual(flagged(lots[5]!, lots.slice(0, 5)), []);
 });
 
 Deno.test("a yield is flagged when its whole interval lies below the floor, and only noted when not", () => {
