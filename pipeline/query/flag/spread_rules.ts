@@ -96,8 +96,8 @@ function flagOf(facts: LotFacts, rule: RuleOf<"spread_growth">, test: Test, p: n
       wafer === null ? "a" : "this"
     } wafer by ${num(sd)}${unit} (standard deviation, ${plural(dies, "die")}), ${
       num(sd / then, 2)
-    } times the ${num(then)}${unit} of ${against} (variance ratio ${num(found.ratio)}, p = ${
-      num(p, 2)
+    } times the ${num(then)}${unit} of ${against} (variance ratio ${num(found.ratio)}, ${
+      pText(p)
     }, corrected for ${plural(tried, "comparison")})`,
     evidence: {
       numbers: {
