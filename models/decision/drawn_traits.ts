@@ -2,7 +2,9 @@
 import type { GeometryParameter } from "../guides/mod.ts";
 import { randomFrom } from "../../shared/random.ts";
 import { dbPerCm } from "../../shared/units.ts";
+import type { Basis } from "../../shared/vocabulary.ts";
 import { type Bounds, DEFAULT_SAMPLE, drawTrait, nestedStrata, type SampleSize } from "./draws.ts";
+import type { Role } from "./figure_basis.ts";
 import type { ArmTraits, GuideInputs, UsedTrait } from "./guide_inputs.ts";
 
 /** Draws of everything uncertain in one guide; index k of every array belongs to draw k. */
@@ -19,6 +21,21 @@ export interface DrawnTraits {
   readonly merged: Float64Array;
   /** Offset of Δβ, 1/m. */
   readonly offset: Float64Array;
+  /** The same draws trait by trait, for whoever asks which trait a figure follows. */
+  readonly columns: readonly TraitColumn[];
+}
+
+/** Draws of one trait in its own unit (that of its name). Roles that share a key share one column. */
+export interface TraitColumn {
+  readonly key: string;
+  /** `loss_db_cm`, `duty` …; with the roles it says what was drawn. */
+  readonly trait: string;
+  readonly roles: readonly Role[];
+  readonly value: number;
+  readonly u: number;
+  readonly basis: Basis;
+  /** All equal where u is 0, or where nothing depends on the trait. */
+  readonly draws: Float64Array;
 }
 
 export interface DrawnArm {
@@ -55,36 +72,60 @@ export function drawTraits(
     return strata;
   };
   // One reading shares its probabilities, not its values: a mode size is scaled to the wavelength of each arm.
-  const draw = (trait: UsedTrait, bounds: Bounds): Float64Array =>
-    drawTrait(trait, bounds, trait.u === 0 ? new Float64Array(draws) : strataOf(trait.key));
-  const loss = (trait: UsedTrait) => draw(trait, NOT_NEGATIVE).map(dbPerCm);
-  const arm = ({ mode, facet }: ArmTraits): DrawnArm => ({
-    modeX: "reason" in mode ? null : draw(mode.x, SIZE),
-    modeY: "reason" in mode ? null : draw(mode.y, SIZE),
-    reflectivity: facet.state === "bare" ? null : draw(facet.reflectivity, SHARE),
+  const columns = new Map<string, TraitColumn>();
+  const noted = (role: Role, name: string, trait: UsedTrait, values: Float64Array): Float64Array => {
+    const held = columns.get(trait.key);
+    const { key, value, u, basis } = trait;
+    columns.set(
+      key,
+      held === undefined
+        ? { key, trait: name, roles: [role], value, u, basis, draws: values }
+        : { ...held, roles: held.roles.includes(role) ? held.roles : [...held.roles, role] },
+    );
+    return values;
+  };
+  const draw = (role: Role, name: string, trait: UsedTrait, bounds: Bounds): Float64Array =>
+    noted(
+      role,
+      name,
+      trait,
+      drawTrait(trait, bounds, trait.u === 0 ? new Float64Array(draws) : strataOf(trait.key)),
+    );
+  const loss = (role: Role, trait: UsedTrait) => draw(role, "loss_db_cm", trait, NOT_NEGATIVE).map(dbPerCm);
+  const arm = (name: "signal" | "idler", { mode, facet }: ArmTraits): DrawnArm => ({
+    modeX: "reason" in mode ? null : draw(`${name}_mode`, "mfd_x_um", mode.x, SIZE),
+    modeY: "reason" in mode ? null : draw(`${name}_mode`, "mfd_y_um", mode.y, SIZE),
+    reflectivity: facet.state === "bare"
+      ? null
+      : draw(`${name}_facet`, "reflectivity", facet.reflectivity, SHARE),
   });
   const none = () => new Float64Array(draws);
   const { poling } = guide;
-  return {
+  const drawn = {
     size,
-    lossP: loss(guide.pumpLoss),
-    lossS: loss(guide.signal.loss),
-    lossI: loss(guide.idler.loss),
-    signal: arm(guide.signal),
-    idler: arm(guide.idler),
-    duty: poling.from === "duty" ? draw(poling.duty, DUTY) : none(),
-    dutySd: poling.from === "duty" ? draw(poling.dutySd, NOT_NEGATIVE) : none(),
-    merged: poling.from === "duty" ? draw(poling.merged, SHARE) : none(),
+    lossP: loss("pump_loss", guide.pumpLoss),
+    lossS: loss("signal_loss", guide.signal.loss),
+    lossI: loss("idler_loss", guide.idler.loss),
+    signal: arm("signal", guide.signal),
+    idler: arm("idler", guide.idler),
+    duty: poling.from === "duty" ? draw("poling", "duty", poling.duty, DUTY) : none(),
+    dutySd: poling.from === "duty" ? draw("poling", "duty_sd", poling.dutySd, NOT_NEGATIVE) : none(),
+    merged: poling.from === "duty" ? draw("poling", "merged", poling.merged, SHARE) : none(),
     offset: drawOffset(),
   };
+  return { ...drawn, columns: [...columns.values()] };
 
   /** Offset of Δβ: the scan's, and what the errors of the geometry make of it. */
   function drawOffset(): Float64Array {
-    const offset = guide.offset === null ? none() : Float64Array.from(draw(guide.offset, {}));
+    const role = "phase_matching";
+    const offset = guide.offset === null
+      ? none()
+      : Float64Array.from(draw(role, "mismatch_offset_per_m", guide.offset, {}));
     for (const { parameter, trait } of guide.geometryErrors) {
       const slope = trait.u === 0 ? 0 : sensitivity(parameter);
-      if (slope === 0) continue;
-      draw(trait, {}).forEach((x, k) => offset[k]! += slope * (x - trait.value));
+      const name = parameter === "width_um" ? "width_error_um" : parameter;
+      if (slope === 0) noted(role, name, trait, new Float64Array(draws).fill(trait.value));
+      else draw(role, name, trait, {}).forEach((x, k) => offset[k]! += slope * (x - trait.value));
     }
     return offset;
   }

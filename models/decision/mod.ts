@@ -16,6 +16,8 @@ export * from "./figure_basis.ts";
 export * from "./guide_inputs.ts";
 export { type OperatingPoint, operatingPoints, type OperatingQuestion } from "./operating_point.ts";
 export type { RecordedSpectrum } from "./pair_prediction.ts";
+export { type GuideSample, sampleGuide, type SampleOptions } from "./guide_sample.ts";
+export { type TraitColumn } from "./drawn_traits.ts";
 export { platformDesign, processRemarks } from "./platform_design.ts";
 export { type PlatformModel, platformModel, validTemperatures } from "./platform_model.ts";
 export {

@@ -12,6 +12,7 @@ export const FIGURE_SHAPE = {
   figure: "text",
   mean: "f64",
   u: "f64",
+  u_linear: "f64",
   lo: "f64",
   hi: "f64",
   probability: "f64",
@@ -30,6 +31,8 @@ export const DECISION_SHAPE = {
   probability: "f64",
   decision: "text",
   limited_by: "text",
+  draws: "i32",
+  settled: "bool",
   matched: "f64",
   unavailable: "text",
   other_temperatures: "text",
@@ -40,7 +43,11 @@ export const DECISION_SHAPE = {
   remarks: "text",
 } as const satisfies TableShape;
 
-/** Figures of a lot's guides for one request, flat: a guide with n figures costs 5 numbers and a byte each. */
+const NUMBER_FIELDS = ["mean", "u", "uLinear", "lo", "hi", "probability"] as const;
+type NumberField = typeof NUMBER_FIELDS[number];
+const NUMBERS = NUMBER_FIELDS.length;
+
+/** Figures of a lot's guides for one request, flat: a guide with n figures costs 6 numbers and a byte each. */
 export class FigureStore {
   readonly #numbers: Float64Array;
   readonly #basis: Uint8Array;
@@ -50,39 +57,43 @@ export class FigureStore {
 
   constructor(readonly lot: string, readonly request: string, readonly guides: readonly GuideRecord[]) {
     const cells = guides.length * FIGURES.length;
-    this.#numbers = new Float64Array(5 * cells).fill(NaN);
+    this.#numbers = new Float64Array(NUMBERS * cells).fill(NaN);
     this.#basis = new Uint8Array(cells);
     this.#present = new Uint8Array(cells);
     this.#predictions = guides.map(() => null);
   }
 
+  /** Sets the prediction of a guide, or one of more draws in the place of the first. */
   set(guide: number, prediction: GuidePrediction): void {
     const { figures, ...rest } = prediction;
     this.#predictions[guide] = rest;
     for (const f of figures) {
       const cell = guide * FIGURES.length + FIGURES.indexOf(f.figure);
-      [f.mean, f.u, f.lo, f.hi, f.probability].forEach((x, k) => this.#numbers[5 * cell + k] = x ?? NaN);
+      NUMBER_FIELDS.forEach((name, k) => this.#numbers[NUMBERS * cell + k] = f[name] ?? NaN);
       this.#basis[cell] = BASES.indexOf(f.basis);
       this.#present[cell] = 1;
-      if (f.reason !== null) this.#reasons.set(cell, f.reason);
+      if (f.reason === null) this.#reasons.delete(cell);
+      else this.#reasons.set(cell, f.reason);
     }
   }
 
   figureTable(): TableStream {
     const cells = [...this.#present.keys()].filter((cell) => this.#present[cell] === 1);
     const guideOf = (cell: number) => this.guides[Math.floor(cell / FIGURES.length)]!;
-    const number = (k: number) => Float64Array.from(cells, (cell) => this.#numbers[5 * cell + k]!);
+    const number = (name: NumberField) =>
+      Float64Array.from(cells, (cell) => this.#numbers[NUMBERS * cell + NUMBER_FIELDS.indexOf(name)]!);
     return tableStream(FIGURE_SHAPE, {
       lot: cells.map(() => this.lot),
       request: cells.map(() => this.request),
       die_id: cells.map((c) => guideOf(c).die_id),
       guide_id: cells.map((c) => guideOf(c).guide_id),
       figure: cells.map((c) => FIGURES[c % FIGURES.length]!),
-      mean: number(0),
-      u: number(1),
-      lo: number(2),
-      hi: number(3),
-      probability: number(4),
+      mean: number("mean"),
+      u: number("u"),
+      u_linear: number("uLinear"),
+      lo: number("lo"),
+      hi: number("hi"),
+      probability: number("probability"),
       basis: cells.map((c) => BASES[this.#basis[c]!]!),
       reason: cells.map((c) => this.#reasons.get(c) ?? null),
     });
@@ -106,6 +117,8 @@ export class FigureStore {
       probability: rows.map((r) => r.p.probability),
       decision: rows.map((r) => reason(r.guide) === null ? r.p.decision : "reject"),
       limited_by: rows.map((r) => r.p.limitedBy),
+      draws: rows.map((r) => r.p.draws),
+      settled: rows.map((r) => r.p.settled),
       matched: rows.map((r) => r.p.matched),
       unavailable: rows.map((r) => reason(r.guide)),
       other_temperatures: rows.map((r) =>

@@ -7,6 +7,7 @@ const figure = (mean: number) => [{
   figure: "pump_power_at_g2_mw" as const,
   mean,
   u: 0,
+  uLinear: null,
   lo: mean,
   hi: mean,
   probability: null,

@@ -39,6 +39,8 @@ Deno.test("a guide on such a die is rejected whatever its probability, and keeps
     probability: 1,
     decision: "accept",
     limitedBy: null,
+    draws: 256,
+    settled: true,
     matched: 1,
     otherTemperatures: [],
     pairs: null,
