@@ -1,5 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 export * from "./conformity.ts";
+export { windowStatistics } from "./grating_draws.ts";
 export { mismatchProfile } from "./mismatch_profile.ts";
 export {
   matchingPeriod,

@@ -1,145 +1,160 @@
 // Pure: no I/O, no clock, no hidden randomness.
+import {
+  envelopeCurves,
+  type GratingEnvelope,
+  mismatchSteps,
+  realiseMismatch,
+  stepPhases,
+} from "../poling/mod.ts";
+import { randomFrom } from "../../shared/random.ts";
 import type { Uncertain } from "../../shared/vocabulary.ts";
-import { HALF_MAXIMUM } from "./_sinc.ts";
+import { peakShape } from "./_peak_shape.ts";
 import type { Refused } from "./refusal.ts";
+import type { TuningFit } from "./tuning_scan.ts";
 
-/** A spread of the mismatch along a guide that would explain how broad its tuning curve is. */
+/** A spread of the mismatch along a guide that would explain the shape of its tuning curve. */
 export interface MismatchSpread {
-  /** Standard deviation of δβ(z) before its mean over the guide is taken off, 1/m. */
+  /** Standard deviation of δβ(z), 1/m. */
   readonly sd: Uncertain;
-  /** Measured width over that of the poled length. */
+  /** Measured width over that of the guide without a spread, as the same fit finds both. */
   readonly broadening: Uncertain;
-  /** Mean share of the ideal peak efficiency that such guides keep. */
+  /** Root of what neighbouring points differ alike from the fitted sinc², as a share of the peak; noise is not in it. */
+  readonly structure: number;
+  /** Share of the peak efficiency without a spread that such guides keep, mean over them. */
   readonly peakKept: number;
 }
 
-/** Steps in the lag and nodes along the guide: the width then holds to 1e-4 up to `WIDEST`. */
-const LAGS = 240;
-const PLACES = 40;
-/** Broadening beyond which a curve is several peaks rather than one broadened one. */
-const WIDEST = 6;
+/** Why no spread is told; `below`: where a single guide's curve leaves an upper limit, its σ lies below with P = 0.683, 1/m. */
+export interface NoSpread extends Refused {
+  readonly below: number | null;
+}
+
+/** Simulated guides, and standard deviations that each is given, from 0 to the largest in equal steps. */
+const GUIDES = 64;
+const STEPS = 24;
+/**
+ * The largest one has the phase walk by so many rad over the guide (root mean square, ℓ ≪ L): beyond it side peaks are as
+ * high as the main one.
+ */
+const WIDEST_WALK = 8;
+/** How near a simulated curve has to come to count: relative in width and structure, and a least structure. */
+const NEAR = { width: 0.02, structure: 0.15, least: 0.003 };
+/** ln of the likelihood by which no spread at all has to be worse than the best one. */
+const TOLD = 2;
+/** Below this likelihood even the best spread does not explain the curve: over three times too far off. */
+const UNEXPLAINED = Math.exp(-4.5);
+
+/** Mean product of neighbours to an amplitude, with its sign. */
+const amplitude = (product: number) => Math.sign(product) * Math.sqrt(Math.abs(product));
 
 /**
- * Standard deviation of δβ at a stated correlation length ℓ that would explain a tuning curve broader than its poled
- * length L allows.
+ * Standard deviation of δβ at a stated correlation length ℓ that explains the shape of a tuning curve: how much broader it
+ * is than the guide's own, and how much structure beside the main peak it has.
  *
- * δβ(z) is taken as a stationary normal process with covariance σ²e^{−|Δz|/ℓ}; its mean over the guide shifts the
- * centre, which the scan's fit has taken off, so only θ(z) − θ(L)z/L acts. For normal phases ⟨e^{i(θ−θ′)}⟩ =
- * e^{−½Var(θ−θ′)}, and the mean tuning curve is
- *
- *   ⟨|φ|²⟩(Δβ) = (2/L²) ∫₀^L cos(Δβu) ∫₀^{L−u} e^{−½σ²v(z, z+u)} dz du,
- *   v(z, z+u) = D(u) − (u/L)·[D(z+u) − D(z) + D(L−z) − D(L−z−u)] + (u/L)²·D(L),  D(u) = 2ℓ²(u/ℓ − 1 + e^{−u/ℓ}).
- *
- * σ is where the half-width of that mean curve meets the measured one: guides of one σ scatter about it, so for a
- * single scan this is an estimate whose u holds the reading error only. A shorter poled length broadens alike: check
- * it first. The peak's height is on a free scale and cannot be used.
- * Refused where the curve is not broader than the poled length's own within 2 u, so that only an upper limit could be
- * told, or broader than one peak can be.
- * @param fwhm measured width in Δβ, 1/m
- * @param poledLength L, m
+ * δβ(z) is taken as stationary, normal, with covariance σ²e^{−|Δz|/ℓ}. Realisations of many σ are put on the guide's own
+ * grating, sampled at the scan's own points and fitted as the scan was. Every one of them weighs by how near its width and
+ * structure come to the scan's (rejection sampling made smooth: M. A. Beaumont, W. Zhang & D. J. Balding, Genetics 162, 2025
+ * (2002)); σ has equal weight a priori. The width alone says little: with ℓ ≪ L one guide keeps a narrow main peak and loses
+ * its height to side peaks. The height itself is on a free scale and cannot be used. u holds the reading and that other
+ * guides of the same σ would look different.
+ * Refused where the curve is as without a spread, so that only an upper limit could be told, or is like none with one.
+ * @param offsets of the scan's points from the fitted centre in scaled Δβ, 1/m, those that the fit used
+ * @param envelope the guide without a spread, of `mismatchSteps` stretches for ℓ
  * @param correlationLength ℓ, m
- * @throws RangeError for a value that is not positive
+ * @throws RangeError for a correlation length that is not positive, or an envelope cut otherwise
  */
 export function mismatchSpread(
-  fwhm: Uncertain,
-  poledLength: number,
+  offsets: Float64Array,
+  { fwhm, residual }: Pick<TuningFit, "fwhm" | "residual">,
+  envelope: GratingEnvelope,
   correlationLength: number,
-): MismatchSpread | Refused {
-  for (const [name, x] of Object.entries({ fwhm: fwhm.value, poledLength, correlationLength })) {
-    if (!(x > 0 && x < Infinity)) {
-      throw new RangeError(`Cannot explain a width: found ${name} = ${x}, need a finite number > 0`);
-    }
+): MismatchSpread | NoSpread {
+  const length = envelope.step * envelope.re.length;
+  if (mismatchSteps(length, correlationLength) !== envelope.re.length) {
+    throw new RangeError(
+      `Cannot tell a spread: found an envelope of ${envelope.re.length} stretches, need ${
+        mismatchSteps(length, correlationLength)
+      }`,
+    );
   }
-  if (!(fwhm.u >= 0)) throw new RangeError(`Cannot explain a width: found u ${fwhm.u}, need u >= 0`);
-  const own = 4 * HALF_MAXIMUM / poledLength;
-  const broadening = { value: fwhm.value / own, u: fwhm.u / own };
-  const text = `${broadening.value.toFixed(4)} times the width of the poled length`;
-  if (!(broadening.value - 1 > Math.max(2 * broadening.u, 1e-3))) {
-    return {
-      refused: `tuning curve ${text}, u ${broadening.u.toFixed(4)}: not broader, so no spread can be told`,
-    };
-  }
-  if (!(broadening.value <= WIDEST)) return { refused: `tuning curve ${text}: more than one peak` };
-  const curve = meanCurve(correlationLength / poledLength);
-  const sigma = inverseWidth(curve, broadening.value);
-  if (sigma === null) {
-    return {
-      refused: `tuning curve ${text}: no spread with a correlation of ${correlationLength} m broadens so`,
-    };
-  }
-  // Where one u more or less leaves the range that can be inverted, the other side alone tells the slope.
-  const up = inverseWidth(curve, Math.min(WIDEST, broadening.value + broadening.u)) ?? sigma;
-  const down = inverseWidth(curve, broadening.value - broadening.u) ?? sigma;
-  return {
-    sd: { value: sigma / poledLength, u: (up - down) / 2 / poledLength },
-    broadening,
-    peakKept: curve(sigma)(0),
+  const x = Float64Array.from(offsets).sort();
+  const curveOf = envelopeCurves(envelope);
+  const sampled = (theta?: Float64Array) => {
+    const curve = curveOf(theta);
+    const y = x.map((at) => curve.power(curve.peak.at + at) / curve.peak.power);
+    const shape = peakShape(x, y, curve.width ?? fwhm.value);
+    return { shape, height: curve.peak.power };
   };
-}
-
-/** ⟨|φ|²⟩ as a function of ΔβL for a given σL, L = 1; `c` = ℓ/L. */
-function meanCurve(c: number): (sigma: number) => (phase: number) => number {
-  const D = (u: number) => 2 * c * c * excess(u / c);
-  const v = new Float64Array((LAGS + 1) * PLACES);
-  for (let j = 0; j <= LAGS; j++) {
-    const u = j / LAGS;
-    for (let k = 0; k < PLACES; k++) {
-      const z = (k + 0.5) / PLACES * (1 - u);
-      const bridge = D(z + u) - D(z) + D(1 - z) - D(Math.max(0, 1 - z - u));
-      v[j * PLACES + k] = Math.max(0, D(u) - u * bridge + u * u * D(1));
-    }
+  const own = sampled();
+  if (own.shape === null) {
+    return { refused: "the scan's points would not show the peak of the guide's own grating", below: null };
   }
-  return (sigma) => {
-    const h = new Float64Array(LAGS + 1);
-    for (let j = 0; j <= LAGS; j++) {
-      let sum = 0;
-      for (let k = 0; k < PLACES; k++) sum += Math.exp(-sigma * sigma * v[j * PLACES + k]! / 2);
-      const simpson = j === 0 || j === LAGS ? 1 : j % 2 === 1 ? 4 : 2;
-      h[j] = simpson / (3 * LAGS) * (1 - j / LAGS) * sum / PLACES;
-    }
-    return (phase) => {
-      let sum = 0;
-      for (let j = 0; j <= LAGS; j++) sum += h[j]! * Math.cos(phase * j / LAGS);
-      return 2 * sum;
-    };
+  const { width, height } = { width: own.shape.width, height: own.height };
+  const broadening = { value: fwhm.value / width, u: fwhm.u / width };
+  const n = residual.degreesOfFreedom + 4;
+  const squares = residual.relative ** 2 * residual.degreesOfFreedom / n;
+  const product = residual.lag1 * squares;
+  const noise = squares * (1 - Math.max(0, residual.lag1));
+  const uProduct = Math.sqrt(noise * (noise + 2 * Math.max(0, product)) / n);
+  const structure = amplitude(product);
+  const uStructure = uProduct / (2 * Math.max(Math.abs(structure), Math.sqrt(uProduct)));
+  const near = {
+    width: Math.hypot(broadening.u, NEAR.width * broadening.value),
+    structure: Math.hypot(uStructure, NEAR.structure * structure, NEAR.least),
   };
+  const likelihood = (shape: { readonly width: number; readonly structure: number } | null): number =>
+    shape === null ? 0 : Math.exp(
+      -0.5 * ((shape.width / width - broadening.value) / near.width) ** 2 -
+        0.5 * ((amplitude(shape.structure) - structure) / near.structure) ** 2,
+    );
+
+  const largest = WIDEST_WALK *
+    (Math.sqrt(length / (2 * correlationLength)) + Math.sqrt(2 * correlationLength / length)) /
+    length;
+  const bySd = new Float64Array(STEPS + 1);
+  const kept = new Float64Array(STEPS + 1);
+  bySd[0] = likelihood(own.shape);
+  kept[0] = bySd[0];
+  for (let guide = 0; guide < GUIDES; guide++) {
+    const unit = stepPhases(realiseMismatch(
+      { start: envelope.start, length, sd: 1, correlationLength },
+      randomFrom(`mismatch spread|${guide}`),
+    ));
+    for (let k = 1; k <= STEPS; k++) {
+      const { shape, height: there } = sampled(unit.map((t) => t * largest * k / STEPS));
+      const weight = likelihood(shape) / GUIDES;
+      bySd[k]! += weight;
+      kept[k]! += weight * there / height;
+    }
+  }
+  const total = sum(bySd);
+  const best = Math.max(...bySd);
+  const text = `tuning curve ${broadening.value.toFixed(4)} times as wide as the guide's own, u ${
+    broadening.u.toFixed(4)
+  }, with ${(100 * structure).toFixed(1)} % of structure beside it`;
+  if (!(best > UNEXPLAINED / GUIDES)) {
+    return {
+      refused: `${text}: no spread with a correlation of ${correlationLength} m looks so`,
+      below: null,
+    };
+  }
+  const sdAt = (k: number) => largest * k / STEPS;
+  if (bySd[0] > Math.exp(-TOLD) * best) {
+    const below = (share: number): number => {
+      let [k, held] = [0, bySd[0]!];
+      while (held < share * total) held += bySd[++k]!;
+      return sdAt(Math.max(1, k));
+    };
+    return {
+      refused: `${text}: as without a spread, which is below ${below(0.95).toPrecision(2)} 1/m (P = 0.95)`,
+      below: below(0.683),
+    };
+  }
+  const mean = bySd.reduce((s, w, k) => s + w * sdAt(k), 0) / total;
+  const variance = bySd.reduce((s, w, k) => s + w * (sdAt(k) - mean) ** 2, 0) / total;
+  // A step of the list more or less is not told apart.
+  const u = Math.hypot(Math.sqrt(variance), sdAt(1) / Math.sqrt(12));
+  return { sd: { value: mean, u }, broadening, structure, peakKept: sum(kept) / total };
 }
 
-/** x − 1 + e^{−x} for x ≥ 0 without cancellation. */
-function excess(x: number): number {
-  return x < 0.02 ? x * x / 2 * (1 - x / 3 * (1 - x / 4 * (1 - x / 5))) : x + Math.expm1(-x);
-}
-
-/** Half-width at half maximum over that of the ideal curve. */
-function widthOf(curve: (phase: number) => number): number {
-  const half = curve(0) / 2;
-  const step = HALF_MAXIMUM / 4;
-  let high = step;
-  while (curve(high) > half && high < 2 * HALF_MAXIMUM * 4 * WIDEST) high += step;
-  let low = high - step;
-  for (let pass = 0; pass < 24; pass++) {
-    const mid = (low + high) / 2;
-    if (curve(mid) > half) low = mid;
-    else high = mid;
-  }
-  return (low + high) / 2 / (2 * HALF_MAXIMUM);
-}
-
-function inverseWidth(
-  curve: (sigma: number) => (phase: number) => number,
-  broadening: number,
-): number | null {
-  if (broadening <= 1) return 0;
-  let high = 1;
-  while (widthOf(curve(high)) < broadening) {
-    high *= 1.5;
-    if (high > 3000) return null;
-  }
-  let low = high === 1 ? 0 : high / 1.5;
-  for (let pass = 0; pass < 24; pass++) {
-    const mid = (low + high) / 2;
-    if (widthOf(curve(mid)) < broadening) low = mid;
-    else high = mid;
-  }
-  return (low + high) / 2;
-}
+const sum = (values: Float64Array): number => values.reduce((a, b) => a + b, 0);

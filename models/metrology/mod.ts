@@ -8,4 +8,5 @@ export * from "./mode_overlap.ts";
 export * from "./nearest_reading.ts";
 export * from "./tuning_scan.ts";
 export * from "./effective_length.ts";
+export * from "./mean_tuning_curve.ts";
 export * from "./mismatch_spread.ts";

@@ -13,7 +13,7 @@ import { buildModel, loadPlatform } from "../platforms.ts";
 import { loadDesign } from "../records.ts";
 import { MODEL_VERSION } from "../model_version.ts";
 import { OutOfDate } from "../out_of_date.ts";
-import { type AlongByGuide, alongGuides } from "../traits/along_guide.ts";
+import { alongGuides } from "../traits/along_guide.ts";
 import { streamWalls } from "../traits/guide_walls.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { REDUCE_REMARK_SHAPE, type ReduceRemark, TRAIT_SHAPE, type TraitRow } from "../traits/trait_row.ts";
@@ -64,7 +64,7 @@ export async function reduceLot(
   );
   const readings = await loadReadings(ledger, design, loaded.platform, buildModel({ ...loaded, designs }));
   const along = alongGuides(readings.geometry, loaded.platform);
-  const walls = await walkWalls(ledger, readings, along);
+  const walls = await walkWalls(ledger, readings);
   const geometry = reduceGeometry(readings);
   const parts: Reduced[] = [
     reduceCutback(readings),
@@ -98,7 +98,6 @@ export async function reduceLot(
 async function walkWalls(
   ledger: Ledger,
   readings: LotReadings,
-  along: AlongByGuide,
 ): Promise<{ reduced: Reduced; peaks: WallPeaks }> {
   const scanned = new Set(readings.tuning.map((r) => r.guide_id));
   const reduced: Reduced = { traits: [], remarks: [] };
@@ -110,10 +109,7 @@ async function walkWalls(
     const complete = traits.some((t) => t.trait === "walls_complete" && t.value === 1);
     if (complete && scanned.has(walls.guide_id)) {
       const { peak, grating } = peakOf(readings, walls.guide_id, walls.positions_um);
-      const varies = (along.get(walls.guide_id) ?? []).some((v) => v.along !== null);
-      if (peak !== null) {
-        peaks.set(walls.guide_id, { deltaBeta: peak, refs: walls.refs, grating: varies ? grating : null });
-      }
+      if (peak !== null) peaks.set(walls.guide_id, { deltaBeta: peak, refs: walls.refs, grating });
     }
   }
   return { reduced, peaks };

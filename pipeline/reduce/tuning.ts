@@ -1,4 +1,4 @@
-import { effectiveLength, fitTuningScan, isRefused, mismatchSpread } from "../../models/metrology/mod.ts";
+import { fitTuningScan, isRefused } from "../../models/metrology/mod.ts";
 import { mismatchProfile, parameterSlope } from "../../models/decision/mod.ts";
 import { type GeometryParameter, mismatch } from "../../models/guides/mod.ts";
 import {
@@ -15,16 +15,15 @@ import type { AlongByGuide } from "../traits/along_guide.ts";
 import { resolveGeometry } from "../traits/geometry.ts";
 import type { TraitPools } from "../traits/pools.ts";
 import { type ReadingRef, refsOf, type TraitRow } from "../traits/trait_row.ts";
+import { type WindowsByUnit, windowsByUnit } from "../traits/guide_traits.ts";
 import { grouped, type LotReadings, placeOf, type Reduced } from "./lot_readings.ts";
-
-/** Correlation length (m) at which a spread of δβ is stated; a spread means nothing without one. */
-const CORRELATION_LENGTH = 1e-3;
+import { shapeTraits } from "./scan_shape.ts";
 
 /** Peak of |φ|² over |Δβ|·scale (1/m) of a guide whose walls are all known, and the lines that they stand on. */
 export interface WallPeak {
   readonly deltaBeta: number;
   readonly refs: readonly ReadingRef[];
-  /** Kept of guides whose cross-section was read along them: there the peak depends on the process, too. */
+  /** With it the guide's own share in a scan's shape is known, and where its cross-section varies the peak of any process. */
   readonly grating?: Grating | null;
 }
 /** By guide id. */
@@ -39,7 +38,8 @@ export function reduceTuning(
 ): Reduced {
   const out: Reduced = { traits: [], remarks: [] };
   const scans = grouped(readings.tuning, (r) => `${r.unit}|${r.scan}|${r.polarisations}|${r.file_name}`);
-  for (const scan of scans) reduceScan(readings, scan, peaks, pools, along, out);
+  const windows = windowsByUnit(readings.poling);
+  for (const scan of scans) reduceScan(readings, scan, peaks, pools, along, windows, out);
   return out;
 }
 
@@ -49,6 +49,7 @@ function reduceScan(
   peaks: WallPeaks,
   pools: TraitPools,
   along: AlongByGuide,
+  windows: WindowsByUnit,
   out: Reduced,
 ): void {
   const first = scan[0]!;
@@ -121,20 +122,9 @@ function reduceScan(
     // As far as the scan's guide is not as wide or thick as it is taken to be, its offset is its own.
     u_pooled: Math.hypot(fit.centre.u / scale, ...errors.map((e) => slopeOf(e.parameter) * e.resolved.u)),
   });
-  const length = effectiveLength(fit.fwhm, 1);
-  out.traits.push({ ...common, trait: "effective_length_mm", value: length.value * 1e3, u: length.u * 1e3 });
-  const spread = mismatchSpread(fit.fwhm, mm(guide.poled_length_mm), CORRELATION_LENGTH);
-  if (!isRefused(spread)) {
-    out.traits.push({
-      ...common,
-      trait: "mismatch_sd_per_m",
-      value: spread.sd.value,
-      u: spread.sd.u,
-      detail: `at a correlation length of ${CORRELATION_LENGTH * 1e3} mm; the curve is ${
-        spread.broadening.value.toFixed(2)
-      } times as wide as the poled length allows`,
-    });
-  }
+  const offsets = Float64Array.from(fit.used, (k) => points[k]!.x - fit.centre.value);
+  const walls = peaks.get(guide.guide_id)?.grating ?? null;
+  out.traits.push(...shapeTraits(fit, offsets, { guide, walls, profile, peak: target }, windows, common));
 }
 
 /** Δβ·scale (1/m, signed) at the peak of |φ|² of a guide whose mismatch varies along it. */

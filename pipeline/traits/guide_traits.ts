@@ -217,14 +217,9 @@ function resolvePoling(
     });
     return { from: "walls", walls: walls.map(um), basis: "measured" };
   }
-  for (
-    const [basis, unit] of [["measured", guide.guide_id], ["die", guide.die_id], [
-      "wafer",
-      guide.wafer,
-    ]] as const
-  ) {
-    const own = windows.get(unit)?.filter((w) => w.domains + w.merged > 0) ?? [];
-    if (own.length === 0) continue;
+  const around = windowsAround(windows, guide);
+  if (around !== null) {
+    const { basis, unit, own } = around;
     roles.push({
       ...common,
       trait: "poling windows",
@@ -248,7 +243,20 @@ function resolvePoling(
   return { from: "duty", duty: need("duty"), dutySd: need("duty_sd"), merged: need("merged") };
 }
 
-const windowOf = (w: PolingRecord): PolingWindow => ({
+/** The poling windows that speak for a guide: its own, else its die's, else its wafer's; null without any. */
+export function windowsAround(
+  windows: WindowsByUnit,
+  guide: GuideRecord,
+): { readonly basis: Basis; readonly unit: string; readonly own: readonly PolingRecord[] } | null {
+  const units = [["measured", guide.guide_id], ["die", guide.die_id], ["wafer", guide.wafer]] as const;
+  for (const [basis, unit] of units) {
+    const own = windows.get(unit)?.filter((w) => w.domains + w.merged > 0) ?? [];
+    if (own.length > 0) return { basis, unit, own };
+  }
+  return null;
+}
+
+export const windowOf = (w: PolingRecord): PolingWindow => ({
   from: mm(w.window_start_mm),
   length: mm(w.window_length_mm),
   domains: w.domains,

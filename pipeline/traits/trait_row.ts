@@ -18,6 +18,7 @@ export type TraitName =
   | "walls_complete"
   | "mismatch_offset_per_m"
   | "effective_length_mm"
+  | "asymmetry"
   | "mismatch_sd_per_m";
 
 /** Lines of one file that a trait rests on, as stretches [first, last]. */

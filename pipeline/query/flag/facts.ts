@@ -20,6 +20,7 @@ export const TRAIT_NAMES = [
   "titanium_nm",
   "mismatch_offset_per_m",
   "effective_length_mm",
+  "asymmetry",
   "mismatch_sd_per_m",
 ] as const satisfies readonly TraitName[];
 

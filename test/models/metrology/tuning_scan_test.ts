@@ -5,7 +5,6 @@ import {
   effectiveLength,
   fitTuningScan,
   isRefused,
-  mismatchSpread,
   type ScanPoint,
   type TuningFit,
 } from "../../../models/metrology/mod.ts";
@@ -191,58 +190,4 @@ Deno.test("effectiveLength() is the length of the uniform grating of that width"
   assertClose(length.u, 0.0002, { rel: 1e-9 });
   throws(() => effectiveLength({ value: 0, u: 0 }, 1), RangeError);
   throws(() => effectiveLength({ value: 1, u: 0 }, 0), RangeError);
-});
-
-Deno.test("mismatchSpread() finds the spread whose simulated guides are that broad", () => {
-  const [L, own] = [0.02, 5.566229513 / 0.02];
-  const random = randomFrom("spread");
-  for (const [ell, broad] of [[0.002, 1.5], [0.01, 1.3]] as const) {
-    const result = mismatchSpread({ value: broad * own, u: 0.02 * own }, L, ell);
-    if (isRefused(result)) throw new Error(result.refused);
-    // An explicit simulation: first-order autoregressive δβ, mean taken off, |φ|² at the centre and at half width.
-    const [steps, runs] = [250, 1500];
-    const [dz, keep] = [L / steps, Math.exp(-L / steps / ell)];
-    let [peak, half] = [0, 0];
-    const delta = new Float64Array(steps);
-    for (let n = 0; n < runs; n++) {
-      let [value, sum] = [result.sd.value * random.normal(), 0];
-      for (let k = 0; k < steps; k++) {
-        delta[k] = value;
-        sum += value;
-        value = keep * value + Math.sqrt(1 - keep * keep) * result.sd.value * random.normal();
-      }
-      let [theta, re0, im0, re1, im1] = [0, 0, 0, 0, 0];
-      for (let k = 0; k < steps; k++) {
-        theta += (delta[k]! - sum / steps) * dz;
-        const angle = theta + broad * own / 2 * (k + 1) * dz;
-        re0 += Math.cos(theta);
-        im0 += Math.sin(theta);
-        re1 += Math.cos(angle);
-        im1 += Math.sin(angle);
-      }
-      peak += (re0 ** 2 + im0 ** 2) / steps ** 2 / runs;
-      half += (re1 ** 2 + im1 ** 2) / steps ** 2 / runs;
-    }
-    assertClose(peak, result.peakKept, { rel: 0.04 });
-    assertClose(half / peak, 0.5, { rel: 0.07 });
-    ok(result.sd.u > 0 && result.sd.u < result.sd.value);
-  }
-});
-
-Deno.test("mismatchSpread() refuses what cannot be told, and grows with the broadening", () => {
-  const [L, own] = [0.02, 5.566229513 / 0.02];
-  const at = (broad: number, u = 0.01) => mismatchSpread({ value: broad * own, u: u * own }, L, 0.004);
-  const why = (r: ReturnType<typeof mismatchSpread>) => isRefused(r) ? r.refused : "told";
-  ok(why(at(1)).includes("not broader"));
-  ok(why(at(1.1, 0.06)).includes("not broader"));
-  ok(why(at(9)).includes("more than one peak"));
-  let last = 0;
-  for (const broad of [1.05, 1.2, 1.6, 2.5]) {
-    const r = at(broad);
-    if (isRefused(r)) throw new Error(r.refused);
-    ok(r.sd.value > last && r.peakKept < 1);
-    last = r.sd.value;
-  }
-  throws(() => mismatchSpread({ value: own, u: 0 }, L, 0), RangeError);
-  throws(() => mismatchSpread({ value: own, u: NaN }, L, 0.01), RangeError);
 });

@@ -52,7 +52,7 @@ const PERIOD_UM = (() => {
 function reduce(tuning: object[], of = { ...guide, period_um: PERIOD_UM }) {
   const design = lotDesign({}, [of]);
   return reduceTuning(
-    { tuning, design, platform: PLATFORM, model: ktp } as unknown as LotReadings,
+    { tuning, poling: [], design, platform: PLATFORM, model: ktp } as unknown as LotReadings,
     new Map(),
     new TraitPools(PLATFORM, design, []),
   );
@@ -88,4 +88,17 @@ Deno.test("a scan that names no guide, or a guide that is not poled, is refused 
   deepEqual(bare.traits, []);
   match(bare.remarks[0]!.statement, /not poled/);
   equal(bare.remarks[0]!.code, "tuning_refused");
+});
+
+Deno.test("a clean scan is told to be symmetric, and to leave no spread: 0 with the limit for its u", () => {
+  const reduced = reduce(scan(0, 0.01, 3));
+  const asymmetry = trait(reduced, "asymmetry");
+  ok(Math.abs(asymmetry.value) < 4 * asymmetry.u && asymmetry.u < 0.1, JSON.stringify(asymmetry));
+  const spread = trait(reduced, "mismatch_sd_per_m");
+  equal(spread.value, 0);
+  ok(spread.u > 0 && spread.u < 300, `${spread.u}`);
+  match(
+    spread.detail!,
+    /none told at a correlation length of 1 mm, beside an ideal grating: .*as without a spread/,
+  );
 });

@@ -67,6 +67,7 @@ function scan(offset: number) {
 function offsetOf(known: AlongByGuide) {
   const readings = {
     tuning: scan(40),
+    poling: [],
     design: { guideById: new Map([[guide.guide_id, guide]]), lot: { lot: "A" } },
     platform: { defaults: {}, priors: {}, platform: "p" },
     model,

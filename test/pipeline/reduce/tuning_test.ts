@@ -46,7 +46,7 @@ function scan(offset: number, peak: number) {
 function offsetOf(tuning: ReturnType<typeof scan>, peaks: WallPeaks): number {
   const design = { guideById: new Map([[guide.guide_id, guide]]), lot: { lot: "A" } };
   const platform = { defaults: {}, priors: {}, platform: "p" };
-  const readings = { tuning, design, platform, model: ktp } as unknown as LotReadings;
+  const readings = { tuning, poling: [], design, platform, model: ktp } as unknown as LotReadings;
   const pools = new TraitPools(readings.platform, readings.design, []);
   const { traits, remarks } = reduceTuning(readings, peaks, pools);
   assert.deepEqual(remarks, []);
