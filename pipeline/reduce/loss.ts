@@ -98,7 +98,7 @@ function fitDie(readings: LotReadings, lines: CutbackRecord[][], out: Reduced): 
 
 function pushFit(
   { design }: LotReadings,
-  { fit, slope_db_cm, coupling_db }: CutbackFit,
+  { fit, slope_db_cm, coupling_db, covariance }: CutbackFit,
   rows: readonly CutbackRecord[],
   place: CutbackRecord,
   method: string,
@@ -127,6 +127,15 @@ function pushFit(
       trait: "coupling_db",
       value: coupling_db[0]!.value,
       u: coupling_db[0]!.u * widen,
+      detail: [
+        ...common.detail === null ? [] : [common.detail],
+        // One line gives both: what its slope errs up, its intercept errs down.
+        ...slope_db_cm.u > 0
+          ? [
+            `correlation with the slope ${(covariance[0]! / (slope_db_cm.u * coupling_db[0]!.u)).toFixed(3)}`,
+          ]
+          : [],
+      ].join("; ") || null,
     });
   }
   if (poor) {

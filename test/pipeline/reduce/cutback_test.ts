@@ -57,6 +57,11 @@ Deno.test("a guide with two lengths has a line of its own, per wavelength and po
   ]);
   // Two readings of 0.01 dB a centimetre apart: u = 0.01·√2 dB/cm.
   assertClose(losses(reduced)[0]!.u, 0.01 * Math.SQRT2, { rel: 1e-9 });
+  // Equal weights at 1 cm and 2 cm: −mean(x)/√mean(x²) = −1.5/√2.5.
+  match(
+    reduced.traits.find((t) => t.trait === "coupling_db")!.detail!,
+    /correlation with the slope -0\.949/,
+  );
   const coupling = reduced.traits.filter((t) => t.trait === "coupling_db").map((t) =>
     Number(t.value.toFixed(9))
   );
