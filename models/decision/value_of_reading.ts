@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import normalQuantile from "@stdlib/stats-base-dists-normal-quantile";
-import { CholeskyDecomposition, inverse, Matrix, solve } from "ml-matrix";
+import { CholeskyDecomposition, inverse, Matrix } from "ml-matrix";
 import { mean } from "../../shared/statistics.ts";
 import { decide, type Decision, type Limits } from "./conformity.ts";
 import type { TraitDraws } from "./variance_shares.ts";
@@ -90,26 +90,59 @@ function outcomesOf(question: OpenDecision, { kind, reads }: ReadingKind, now: n
     return { x: found.draws, u };
   });
   const prior = independentColumns(columns);
-  if (prior === null) return [now];
+  if (prior === null || question.figures.length === 0) return [now];
   const { standard, covariance, errors } = prior;
   const m = errors.length;
+  const n = standard.length / m;
   const sum = Matrix.add(covariance, Matrix.diag(errors.map((u) => u * u)));
   const moves = covariance.mmul(inverse(sum)).mmul(covariance);
   const shift = lowerFactor(moves);
   const narrow = lowerFactor(Matrix.sub(covariance, moves)).mmul(inverse(lowerFactor(covariance)));
-  const responses = question.figures.map((f) => response(standard, f.draws));
-  const narrowed = standard.map((row) => narrow.mmul(Matrix.columnVector(row)).to1DArray());
+  const narrowed = new Float64Array(n * m);
+  for (let k = 0; k < n; k++) {
+    for (let a = 0; a < m; a++) {
+      for (let b = 0; b < m; b++) narrowed[k * m + a]! += narrow.get(a, b) * standard[k * m + b]!;
+    }
+  }
+  const figures = question.figures.map(({ draws, limits }) => {
+    const { linear, square } = response(standard, m, draws);
+    // What is left of a draw when the traits that are read have had their say.
+    const rest = draws.map((value, k) => {
+      let said = 0;
+      for (let a = 0; a < m; a++) {
+        const x = standard[k * m + a]!;
+        said += (linear[a]! + square[a]! * x) * x;
+      }
+      return value - said;
+    });
+    return { linear, square, rest, limits };
+  });
+  const by = new Float64Array(m);
   return evenNormals(m, OUTCOMES).map((z) => {
-    const by = shift.mmul(Matrix.columnVector(z)).to1DArray();
-    const moved = narrowed.map((row) => row.map((x, a) => x + by[a]!));
-    const figures = question.figures.map(({ draws }, f) =>
-      draws.map((value, k) => value + responses[f]!(moved[k]!) - responses[f]!(standard[k]!))
-    );
-    return conforming(question, figures);
+    for (let a = 0; a < m; a++) {
+      by[a] = 0;
+      for (let b = 0; b <= a; b++) by[a]! += shift.get(a, b) * z[b]!;
+    }
+    let good = 0;
+    for (let k = 0; k < n; k++) {
+      const met = figures.every(({ linear, square, rest, limits }) => {
+        let value = rest[k]!;
+        for (let a = 0; a < m; a++) {
+          const x = narrowed[k * m + a]! + by[a]!;
+          value += (linear[a]! + square[a]! * x) * x;
+        }
+        return value >= limits.atLeast && value <= limits.atMost;
+      });
+      if (met) good++;
+    }
+    return good / n;
   });
 }
 
-/** Traits in units of their own spread, about their means, without those that the others fix; null when none varies. */
+/**
+ * Traits in units of their own spread, about their means, without those that the others fix: draw k of trait a is
+ * standard[k·m + a]. Null when none varies.
+ */
 function independentColumns(columns: readonly { readonly x: Float64Array; readonly u: number }[]) {
   const n = columns[0]?.x.length ?? 0;
   const kept: { z: Float64Array; u: number }[] = [];
@@ -125,9 +158,14 @@ function independentColumns(columns: readonly { readonly x: Float64Array; readon
     if (!same) kept.push({ z, u: Math.max(u / sd, BEST_READING) });
   }
   if (kept.length === 0) return null;
-  const standard = Array.from({ length: n }, (_, k) => kept.map(({ z }) => z[k]!));
-  const matrix = new Matrix(standard);
-  return { standard, covariance: matrix.transpose().mmul(matrix).div(n - 1), errors: kept.map((k) => k.u) };
+  const m = kept.length;
+  const standard = new Float64Array(n * m);
+  kept.forEach(({ z }, a) => z.forEach((v, k) => standard[k * m + a] = v));
+  const covariance = Matrix.zeros(m, m);
+  kept.forEach(({ z: x }, a) =>
+    kept.forEach(({ z: y }, b) => covariance.set(a, b, x.reduce((sum, v, k) => sum + v * y[k]!, 0) / (n - 1)))
+  );
+  return { standard, covariance, errors: kept.map((k) => k.u) };
 }
 
 function lowerFactor(matrix: Matrix): Matrix {
@@ -138,18 +176,44 @@ function lowerFactor(matrix: Matrix): Matrix {
   return factor.lowerTriangularMatrix;
 }
 
-/** Quadratic response of a figure to standardised traits, from the draws in which it exists. */
+/** Quadratic response of a figure to standardised traits, from the draws in which it exists: Σ (linear + square·x)·x. */
 function response(
-  standard: readonly (readonly number[])[],
+  standard: Float64Array,
+  m: number,
   figure: Float64Array,
-): (row: readonly number[]) => number {
-  const kept = standard.map((_, k) => k).filter((k) => Number.isFinite(figure[k]!));
-  const terms = (row: readonly number[]) => [...row, ...row.map((x) => x * x)];
-  const width = 2 * (standard[0]?.length ?? 0);
-  if (kept.length < 3 * (width + 1)) return () => 0;
-  const design = new Matrix(kept.map((k) => [1, ...terms(standard[k]!)]));
-  const answer = solve(design, Matrix.columnVector(kept.map((k) => figure[k]!)), true).to1DArray();
-  return (row) => terms(row).reduce((sum, t, i) => sum + t * answer[i + 1]!, 0);
+): { linear: Float64Array; square: Float64Array } {
+  const width = 2 * m + 1;
+  const out = { linear: new Float64Array(m), square: new Float64Array(m) };
+  const normal = Matrix.zeros(width, width);
+  const right = Matrix.zeros(width, 1);
+  const row = new Float64Array(width);
+  row[0] = 1;
+  const existing = figure.filter((y) => Number.isFinite(y));
+  if (existing.length < 3 * width) return out;
+  // The figure about its mean: normal equations lose no digits to a large constant.
+  const centre = mean(existing);
+  figure.forEach((y, k) => {
+    if (!Number.isFinite(y)) return;
+    for (let a = 0; a < m; a++) {
+      const x = standard[k * m + a]!;
+      row[1 + a] = x;
+      row[1 + m + a] = x * x;
+    }
+    for (let i = 0; i < width; i++) {
+      right.set(i, 0, right.get(i, 0) + row[i]! * (y - centre));
+      for (let j = 0; j <= i; j++) normal.set(i, j, normal.get(i, j) + row[i]! * row[j]!);
+    }
+  });
+  for (let i = 0; i < width; i++) for (let j = 0; j < i; j++) normal.set(j, i, normal.get(i, j));
+  const factor = new CholeskyDecomposition(normal);
+  // A trait of two values has the same square everywhere: its bend can't be told, and no response is better than any.
+  if (!factor.isPositiveDefinite()) return out;
+  const answer = factor.solve(right).to1DArray();
+  for (let a = 0; a < m; a++) {
+    out.linear[a] = answer[1 + a]!;
+    out.square[a] = answer[1 + m + a]!;
+  }
+  return out;
 }
 
 /** Points that fill a standard normal of some dimensions evenly: an additive recurrence with the generalised golden ratio. */
