@@ -11,7 +11,8 @@ import {
 } from "./prediction_rules.ts";
 import { coatingOffTarget, coatingUnknown } from "./coating_rules.ts";
 import { quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
-import { periodOff, repeatedReadings, scanResidual } from "./residual_rules.ts";
+import { periodOff } from "./period_rule.ts";
+import { repeatedReadings, scanResidual } from "./residual_rules.ts";
 import type { Rule } from "./rules.ts";
 import { seriesOf, summaryOf } from "./series.ts";
 import { spreadGrowth } from "./spread_rules.ts";

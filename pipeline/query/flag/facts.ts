@@ -1,4 +1,4 @@
-import type { GuidePeriod } from "./period.ts";
+import type { FoundPeriod } from "./period.ts";
 import type { Platform } from "../../../shared/schemas/platform.ts";
 import type { CheckedRequest } from "../../../shared/schemas/request.ts";
 import type { Basis } from "../../../shared/vocabulary.ts";
@@ -106,7 +106,7 @@ export interface LotFacts {
   /** Rows read from the files in force. */
   readonly rows: number;
   readonly outcomes: readonly OutcomeFact[];
-  readonly periods: readonly GuidePeriod[];
+  readonly periods: readonly FoundPeriod[];
   /** sha256 of the files in force, by name. */
   readonly files: ReadonlyMap<string, string>;
   readonly predictions: readonly PredictionFacts[];

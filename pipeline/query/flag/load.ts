@@ -20,7 +20,7 @@ import type {
   WaferFact,
   YieldSummary,
 } from "./facts.ts";
-import { guidePeriods } from "./period.ts";
+import { foundPeriods } from "./period.ts";
 import { dieVerdicts } from "./verdicts.ts";
 import { seriesOf, summaryOf } from "./series.ts";
 import { TRAIT_NAMES } from "./facts.ts";
@@ -62,7 +62,7 @@ export async function loadFacts(ledger: Ledger, lot: string, options: LoadFactsO
     rows: files.reduce((sum, f) => sum + (inputs.get(`${f.run}|${f.name}`)?.rows ?? 0), 0),
     files: new Map(files.map((f) => [f.name, f.sha256])),
     outcomes,
-    periods: await guidePeriods(ledger, design, traits),
+    periods: await foundPeriods(ledger, design, traits),
     predictions: await loadPredictions(ledger, lot, outcomes, options),
     requestsNamed: options.requests !== null,
   };

@@ -3,8 +3,6 @@ import type { TraitRow } from "../../traits/trait_row.ts";
 import type { LotFacts } from "./facts.ts";
 import type { RuleOf } from "./rules.ts";
 import { seriesWords, unitOf } from "./series.ts";
-import { suspectsOfDies } from "./suspects_of.ts";
-import { diesOfWafers } from "./trait_rules.ts";
 import { type Flag, mergeRefs, num, plural } from "./types.ts";
 
 /** Readings of the same thing that differ by more than k·u. */
@@ -98,45 +96,5 @@ export function scanResidual(facts: LotFacts, rule: RuleOf<"scan_residual">): Fl
       },
       suspects: [],
     }];
-  });
-}
-
-/** A period found that is not the one drawn. */
-export function periodOff(facts: LotFacts, rule: RuleOf<"period_off">): Flag[] {
-  const off = facts.periods.filter(({ found_um, drawn_um, u_um }) => {
-    const difference = Math.abs(found_um - drawn_um);
-    return difference > rule.tolerance * drawn_um && difference > rule.k * u_um;
-  });
-  const byWafer = new Map<string, typeof off>();
-  for (const p of off) byWafer.set(p.wafer, [...byWafer.get(p.wafer) ?? [], p]);
-  return [...byWafer].map(([wafer, periods]) => {
-    const first = periods[0]!;
-    const read = facts.periods.filter((p) => p.wafer === wafer).length;
-    return {
-      scope: "wafer",
-      id: wafer,
-      lot: facts.lot,
-      rule: rule.rule,
-      severity: rule.severity,
-      brief: `period of ${plural(periods.length, "guide")} not as drawn`,
-      statement:
-        `Wafer ${wafer}: the period of ${periods.length} of ${
-          plural(read, "inspected guide")
-        } is not the one drawn; ` +
-        `${first.guide_id} has ${num(first.found_um, 5)} µm (u ${
-          num(first.u_um, 2)
-        }, from ${first.from}), drawn ${num(first.drawn_um, 5)} µm`,
-      evidence: {
-        numbers: {
-          found_um: first.found_um,
-          drawn_um: first.drawn_um,
-          u_um: first.u_um,
-          guides_off: periods.length,
-        },
-        readings: mergeRefs(periods.flatMap((p) => p.readings)),
-        guides: periods.map((p) => p.guide_id),
-      },
-      suspects: suspectsOfDies(facts, diesOfWafers(facts, new Set(byWafer.keys()))),
-    };
   });
 }

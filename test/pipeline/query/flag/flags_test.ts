@@ -1,13 +1,11 @@
 import { deepEqual, equal, match, ok, rejects } from "node:assert/strict";
 import { flagsOf, summaryOfFacts } from "../../../../pipeline/query/flag/evaluate.ts";
 import type { DecisionFact, FigureFact, LotFacts } from "../../../../pipeline/query/flag/facts.ts";
-import { periodFromWalls, periodFromWindows } from "../../../../pipeline/query/flag/period.ts";
 import { type DieVerdict, lotYield } from "../../../../pipeline/query/flag/verdicts.ts";
 import { loadRules, type Rule } from "../../../../pipeline/query/flag/rules.ts";
 import type { TraitRow } from "../../../../pipeline/traits/trait_row.ts";
 import { type CheckedRequest, checkRequest, requestSchema } from "../../../../shared/schemas/request.ts";
 import { InputError } from "../../../../shared/errors.ts";
-import { randomFrom } from "../../../../shared/random.ts";
 import { assertClose } from "../../../assert_close.ts";
 import { simulatedLot, SOURCE } from "./simulated_lots.ts";
 
@@ -282,23 +280,6 @@ Deno.test("a coating run off its target is found by its own witness, at the wave
   deepEqual(flagsOf(coated(0.039), only("coating-off"), []), []);
 });
 
-Deno.test("periods: walls to the nanometre in spite of missing domains, windows only roughly", () => {
-  const random = randomFrom("walls");
-  const walls: number[] = [];
-  for (let k = 0; k < 600; k++) {
-    if (k % 11 === 5) continue; // a missing domain: both of its walls
-    walls.push(k * 17.3 + 0.3 * random.normal(), k * 17.3 + 8.65 + 0.3 * random.normal());
-  }
-  const found = periodFromWalls(walls)!;
-  assertClose(found.found_um, 17.3, { abs: 4 * found.u_um });
-  ok(found.u_um < 0.05, `u ${found.u_um}`);
-  const windows = Array.from({ length: 4 }, () => ({ window_length_mm: 1, domains: 57, merged: 1 }));
-  const rough = periodFromWindows(windows)!;
-  assertClose(rough.found_um, 1000 / 58, { rel: 1e-12 });
-  ok(rough.u_um > 0.1, "whoever counts rounds alike in every window");
-  equal(periodFromWalls([1, 2, 3]), null);
-});
-
 Deno.test("readings, outcomes and records that contradict each other are flagged where they stand", () => {
   const lot = simulatedLot(7);
   const first = lot.traits.find((t) => t.trait === "loss_db_cm")!;
@@ -308,12 +289,13 @@ Deno.test("readings, outcomes and records that contradict each other are flagged
     ...lot,
     traits: [...lot.traits, again],
     periods: [{
-      guide_id: guide.guide_id,
       wafer: guide.wafer,
+      units: [guide.guide_id],
       drawn_um: 17,
-      found_um: 16.5,
-      u_um: 0.01,
+      ratio: 16.5 / 17,
+      u_ratio: 0.01 / 17,
       from: "walls",
+      count: 2100,
       readings: [],
     }],
     reduceRemarks: [{
