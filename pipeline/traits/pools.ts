@@ -10,13 +10,12 @@ import {
   type Spread,
   spreadFromDefault,
 } from "../../models/pooling/mod.ts";
-import { coatedReflectivity, isRefused } from "../../models/metrology/mod.ts";
-import type { FacetTrait, UsedTrait } from "../../models/decision/mod.ts";
+import type { UsedTrait } from "../../models/decision/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import type { DefaultTrait, Platform } from "../../shared/schemas/platform.ts";
-import { nm } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
 import type { GuideRecord, LotDesign } from "../records.ts";
+import { type OutputFacet, outputFacetOf } from "./output_facet.ts";
 import { defaultOf, spreadOf } from "./platform_defaults.ts";
 import {
   describer,
@@ -279,64 +278,9 @@ export class TraitPools {
     );
   }
 
-  /**
-   * The output facet of a guide at a wavelength (nm): bare, or coated with the run's spectrum, or coated with the platform's
-   * default where the spectrum does not reach. Facets are known by the die's coating record: basis `die`.
-   */
-  outputFacet(
-    guide: GuideRecord,
-    wavelength_nm: number,
-    polarisation: Polarisation,
-  ): { facet: FacetTrait; resolved: ResolvedTrait | null } {
-    const coating = this.design.coatingOf.get(`${guide.die_id}|out`);
-    if (coating === undefined) return { facet: { state: "bare", basis: "die" }, resolved: null };
-    const unit = `${coating.coating_run}|out`;
-    const positions = this.positions("reflectivity", unit);
-    const readings = positions.map((k) => this.rows[k]!)
-      .map((r) => ({ lambda: nm(r.wavelength_nm!), reflectivity: r.value, u: r.u }));
-    const found = coatedReflectivity(readings, nm(wavelength_nm));
-    const common = {
-      trait: "reflectivity" as const,
-      polarisation: null,
-      wavelength_nm,
-      otherWidth: false,
-      shares: null,
-    };
-    if (!isRefused(found)) {
-      const used = found.used.map((k) => positions[k]!);
-      const resolved: ResolvedTrait = {
-        ...common,
-        value: found.value,
-        u: found.u,
-        basis: "die",
-        key: `reflectivity|${unit}|${wavelength_nm}`,
-        distance: null,
-        from: coating.coating_run,
-        used,
-      };
-      return { facet: { state: "coated", reflectivity: resolved }, resolved };
-    }
-    const fallback = defaultOf(this.platform, "coated_reflectivity", polarisation);
-    if (fallback === null) {
-      throw new InputError(
-        `Platform ${this.platform.platform} gives no default for coated_reflectivity, and coating run ` +
-          `${coating.coating_run} says nothing at ${
-            wavelength_nm.toFixed(1)
-          } nm (${found.refused}): add it to "defaults"`,
-        { column: "defaults.coated_reflectivity" },
-      );
-    }
-    const resolved: ResolvedTrait = {
-      ...common,
-      value: fallback.value,
-      u: fallback.u,
-      basis: "platform",
-      key: `reflectivity|platform|${wavelength_nm}|${polarisation}`,
-      distance: null,
-      from: this.platform.platform,
-      used: [],
-    };
-    return { facet: { state: "coated", reflectivity: resolved }, resolved };
+  /** {@link outputFacetOf} this lot. */
+  outputFacet(guide: GuideRecord, wavelength_nm: number, polarisation: Polarisation): OutputFacet {
+    return outputFacetOf(this, guide, wavelength_nm, polarisation);
   }
 
   /**
