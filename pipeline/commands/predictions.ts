@@ -83,7 +83,8 @@ async function everyLot(
       onProgress: (n, of) => bar.update(n, of),
       onSolving: solving,
     });
-    out.push(...done.map((d) => ({ lot, ...d })));
+    if (!quiet) noteAll([...new Set(done.flatMap((d) => d.contradictions))]);
+    out.push(...done.map(({ contradictions: _, ...d }) => ({ lot, ...d })));
   }
   return out;
 }

@@ -76,3 +76,24 @@ export function contradictionTable(
     readings: found.map((c) => JSON.stringify(c.used.flatMap((k) => pools.rows[k]!.readings))),
   });
 }
+
+/** A contradiction as a sentence: the lines read, what they say, and what the others lead one to expect. */
+export function contradictionText(
+  { trait, unit, value, expected, uExpected, used, wavelength_nm, polarisation }: ContradictingReading,
+  pools: TraitPools,
+): string {
+  const lines = used.flatMap((k) => pools.rows[k]!.readings).flatMap(({ file_name, lines }) =>
+    lines.map(([first, last]) => `${file_name}:${first === last ? first : `${first}-${last}`}`)
+  );
+  const at = [
+    wavelength_nm === null ? "" : ` at ${Number(wavelength_nm.toFixed(2))} nm`,
+    polarisation === null ? "" : ` ${polarisation}`,
+  ].join("");
+  const shown = lines.length > 3 ? [...lines.slice(0, 3), `… ${lines.length - 3} more`] : lines;
+  return `${unit}: ${trait}${at} of ${Number(value.toPrecision(4))} (${
+    shown.join(", ")
+  }) contradicts the other ` +
+    `readings, which lead to ${Number(expected.toPrecision(4))} ± ${
+      Number(uExpected.toPrecision(2))
+    }; it is kept`;
+}

@@ -15,7 +15,7 @@ import { loadTraits } from "../traits/load_traits.ts";
 import { loadOtherLots, pooledRuns } from "../traits/pooled_lots.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { couplingRemarks, powerCautions } from "./cautions.ts";
-import { contradictionsOf, contradictionTable } from "./contradictions.ts";
+import { contradictionsOf, contradictionTable, contradictionText } from "./contradictions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import type { Job, WorkerSetup } from "./jobs.ts";
 import { type JobPool, openPool } from "./pool.ts";
@@ -38,6 +38,8 @@ export interface PredictedRequest {
   readonly run: string;
   /** False when nothing had changed and nothing was computed. */
   readonly computed: boolean;
+  /** Readings that the others contradict, as sentences; told when the prediction is computed. */
+  readonly contradictions: readonly string[];
 }
 
 const ROLE_SHAPE = {
@@ -97,7 +99,7 @@ export async function predictLot(
     ]));
     const held = await ledger.findRun({ kind: "predict", lot, request: request.name, fingerprint });
     if (held === null) stale.push({ request, fingerprint });
-    else done.push({ request: request.name, run: held.run, computed: false });
+    else done.push({ request: request.name, run: held.run, computed: false, contradictions: [] });
   }
   if (stale.length === 0) return done;
   if (!ledger.writable) throw new OutOfDate(`predictions of lot ${lot}`);
@@ -110,6 +112,7 @@ export async function predictLot(
     options,
   );
   for (const [k, { request, fingerprint }] of stale.entries()) {
+    const contradictions = contradictionsOf(computed.pools, request);
     const run = await ledger.commit({
       kind: "predict",
       lot,
@@ -130,15 +133,15 @@ export async function predictLot(
         figures: computed.stores[k]!.figureTable(),
         decisions: computed.stores[k]!.decisionTable(computed.unavailable),
         used_traits: roleTable(lot, request.name, computed.roles[k]!),
-        contradictions: contradictionTable(
-          lot,
-          request.name,
-          contradictionsOf(computed.pools, request),
-          computed.pools,
-        ),
+        contradictions: contradictionTable(lot, request.name, contradictions, computed.pools),
       },
     });
-    done.push({ request: request.name, run: run.run, computed: true });
+    done.push({
+      request: request.name,
+      run: run.run,
+      computed: true,
+      contradictions: contradictions.map((c) => contradictionText(c, computed.pools)),
+    });
   }
   const order = new Map(requests.map((r, k) => [r.name, k]));
   return done.sort((a, b) => order.get(a.request)! - order.get(b.request)!);
