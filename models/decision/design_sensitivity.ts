@@ -1,51 +1,38 @@
 // Pure: no I/O, no clock, no hidden randomness.
 // What a small error of fabrication or temperature does to a design's phase matching.
-import {
-  GEOMETRY_PARAMETERS,
-  type GeometryParameter,
-  mismatch,
-  mismatchOverTemperature,
-  PROCESS_PARAMETERS,
-  processName,
-  type ProcessParameter,
-  type SolverIndexModel,
-} from "../guides/mod.ts";
+import { type GeometryParameter, mismatch, mismatchOverTemperature, processName } from "../guides/mod.ts";
 import type { GuideGeometry, Polarisation, Process, ThreeWaves } from "../../shared/vocabulary.ts";
+import { isGeometry, parameterSlope, type SlopePoint } from "./parameter_slope.ts";
 import type { PlatformModel } from "./platform_model.ts";
+import { PROCESS_NUDGES, type ProcessNudge } from "./process_changes.ts";
 import { acceptanceScan } from "./site.ts";
 
 /** What may be off, by how much in the unit of its name. */
 export interface Nudge {
-  readonly parameter: GeometryParameter | ProcessParameter | "temperature_c";
+  readonly parameter: GeometryParameter | ProcessNudge["parameter"] | "temperature_c";
   readonly by: number;
 }
 
-/** Small errors as they occur: 0.1 µm of width, 1 nm of a film, 0.1 µm of diffusion, 1e-4 of an index step, 1 °C. */
+/** Small errors as they occur: 0.1 µm of width, 1 nm of a film, those of the process, 1 °C. */
 export const NUDGES: readonly Nudge[] = [
   { parameter: "width_um", by: 0.1 },
   { parameter: "film_thickness_nm", by: 1 },
   { parameter: "etch_depth_nm", by: 1 },
   { parameter: "titanium_nm", by: 1 },
-  { parameter: "diffusion_lateral_um", by: 0.1 },
-  { parameter: "diffusion_depth_um", by: 0.1 },
-  { parameter: "exchange_depth_um", by: 0.1 },
-  { parameter: "index_step", by: 1e-4 },
+  ...PROCESS_NUDGES,
   { parameter: "temperature_c", by: 1 },
 ];
 
-export interface SensitivityPoint {
-  readonly waves: ThreeWaves;
+export interface SensitivityPoint extends SlopePoint {
   readonly process: Process;
-  /** Every parameter that the index depends on has to be stated. */
-  readonly geometry: GuideGeometry;
-  readonly temperatureC: number;
 }
 
 /** What one nudge does. */
 export interface NudgeEffect extends Nudge {
   /**
-   * Change of Δβ, 1/m: of the geometry as it is after the nudge (near a non-critical width the slope alone says nothing),
-   * of a process parameter to first order; for a temperature what is left of it beside the expansion of the grating.
+   * Change of Δβ, 1/m: of the guide as it is after the nudge (near a non-critical width the slope alone says nothing);
+   * to first order where that guide has no mode or was not solved; for a temperature what is left of it beside the
+   * expansion of the grating.
    */
   readonly deltaBeta: number;
   /**
@@ -59,47 +46,80 @@ export interface NudgeEffect extends Nudge {
   readonly efficiency: number | null;
 }
 
-/** A nudge down is told, too, where it is no mirror image of the nudge up: from this share of it. */
+/**
+ * A nudge down is told, too, where it is no mirror image of the nudge up: from this share of it. Where a nudge sends the
+ * centre out of reach, a tenth of it is told beside it.
+ */
 const ASYMMETRY = 0.1;
 
-/** The effects of all nudges that the platform's index depends on. @throws RangeError beyond its limits */
-export function nudgeEffects(model: PlatformModel, point: SensitivityPoint): NudgeEffect[] {
+/**
+ * The effects of all nudges that the platform's index depends on. `changed`: the platform as it is with its process off;
+ * without it a process is told to first order and without efficiency.
+ * @throws RangeError beyond the index's limits
+ */
+export function nudgeEffects(
+  model: PlatformModel,
+  point: SensitivityPoint,
+  changed: readonly (ProcessNudge & { readonly model: PlatformModel })[] = [],
+): NudgeEffect[] {
   const { waves, geometry, temperatureC: T } = point;
   const net = netMismatch(model, waves, geometry);
-  const perKelvin = slope(net, T, 0.5, model.index.range(waves.polP, geometry).temperatureC);
+  const warmest = model.index.range(waves.polP, geometry).temperatureC;
+  const perKelvin = slope(net, T, 0.5, warmest);
   const centre = centreMove(model, point);
   const here = mismatch(model.index, waves, T, geometry);
-  const before = strength(model, point, {});
-  const effect = (parameter: Nudge["parameter"], by: number, deltaBeta: number): NudgeEffect => {
-    const warm = parameter === "temperature_c";
-    const after = !warm && isGeometry(parameter) ? strength(model, point, { [parameter]: by }) : null;
+  const before = strength(model, point);
+  /** The guide with one thing off, or null where there is none such. */
+  const nudged = ({ parameter, by }: Nudge): { model: PlatformModel; point: SensitivityPoint } | null => {
+    if (parameter === "temperature_c") return { model, point: { ...point, temperatureC: T + by } };
+    if (isGeometry(parameter)) {
+      const held = geometry[parameter as GeometryParameter];
+      return held === undefined
+        ? null
+        : { model, point: { ...point, geometry: { ...geometry, [parameter]: held + by } } };
+    }
+    const other = changed.find((c) => c.parameter === parameter && c.by === by);
+    return other === undefined ? null : { model: other.model, point };
+  };
+  const effect = (nudge: Nudge, deltaBeta: number): NudgeEffect => {
+    const there = nudged(nudge);
+    const after = there === null ? null : strength(there.model, there.point);
     return {
-      parameter,
-      by,
+      ...nudge,
       deltaBeta,
       centre: centre(deltaBeta),
-      temperatureC: warm ? null : -deltaBeta / perKelvin,
+      temperatureC: nudge.parameter === "temperature_c" ? null : -deltaBeta / perKelvin,
       efficiency: before === null || after === null ? null : after / before - 1,
     };
   };
-  return NUDGES.flatMap(({ parameter, by }): NudgeEffect[] => {
-    if (parameter === "temperature_c") return [effect(parameter, by, perKelvin * by)];
-    const per = parameterSlope(model, point, parameter);
-    if (per === 0) return [];
-    const change = (step: number): number => {
-      if (!isGeometry(parameter)) return per * step;
+  return NUDGES.flatMap((nudge): NudgeEffect[] => {
+    const { parameter, by } = nudge;
+    if (parameter === "temperature_c") return [effect(nudge, perKelvin * by)];
+    const furnace = parameter === "diffusion_hours" || parameter === "diffusion_temperature_c";
+    const per = furnace ? null : parameterSlope(model, point, parameter);
+    if (per === 0 || (furnace && !changed.some((c) => c.parameter === parameter))) return [];
+    const change = (step: number): number | null => {
+      const there = nudged({ parameter, by: step });
+      const first = per === null ? null : per * step;
+      if (there === null) return first;
       try {
-        return mismatch(model.index, waves, T, nudged(geometry, { [parameter]: step })) - here;
+        return mismatch(there.model.index, waves, T, there.point.geometry) - here;
       } catch (error) {
-        if (error instanceof RangeError) return per * step; // beyond the table
+        if (error instanceof RangeError) return first; // beyond the table, or no mode left
         throw error;
       }
     };
     const [up, down] = [change(by), change(-by)];
-    const both = [effect(parameter, by, up)];
-    if (Math.abs(up + down) > ASYMMETRY * Math.max(Math.abs(up), Math.abs(down))) {
-      both.push(effect(parameter, -by, down));
+    const both = up === null ? [] : [effect(nudge, up)];
+    if (
+      down !== null && Math.abs((up ?? 0) + down) > ASYMMETRY * Math.max(Math.abs(up ?? 0), Math.abs(down))
+    ) {
+      both.push(effect({ parameter, by: -by }, down));
     }
+    const tenth = both.some(({ centre }) => centre === null) && isGeometry(parameter)
+      ? change(by / 10)
+      : null;
+    if (tenth !== null) both.push(effect({ parameter, by: by / 10 }, tenth));
     return both;
   });
 }
@@ -127,75 +147,14 @@ function centreMove(
   };
 }
 
-const nudged = (geometry: GuideGeometry, by: Readonly<Record<string, number>>): GuideGeometry => {
-  const out: Record<string, number> = { ...geometry as unknown as Record<string, number> };
-  for (const [key, step] of Object.entries(by)) out[key]! += step;
-  return out as unknown as GuideGeometry;
-};
-
-/** ∂Δβ/∂parameter, 1/m per unit of its name; 0 where the index does not depend on it. */
-export function parameterSlope(
-  { index }: PlatformModel,
-  { waves, geometry, temperatureC }: Omit<SensitivityPoint, "process">,
-  parameter: GeometryParameter | ProcessParameter,
-): number {
-  const one = (pol: Polarisation, lambda: number): number => {
-    const per = isGeometry(parameter)
-      ? index.sensitivity(pol, lambda, temperatureC, geometry, parameter)
-      : index.from === "solver"
-      ? (index as SolverIndexModel).processSensitivity(pol, lambda, temperatureC, geometry, parameter)
-      : 0;
-    return 2 * Math.PI / lambda * per;
-  };
-  return one(waves.polP, waves.lambdaP) - one(waves.polS, waves.lambdaS) - one(waves.polI, waves.lambdaI);
-}
-
-/** Widths are looked through in so many steps. */
-const WIDTH_STEPS = 60;
-
-/**
- * Widths (µm) at which Δβ does not change with the width to first order, ascending; within limits, or the index's own
- * for this design. None: width errors count everywhere.
- */
-export function nonCriticalWidths(
-  model: PlatformModel,
-  point: Omit<SensitivityPoint, "process">,
-): { readonly widths_um: number[]; readonly range_um: readonly [number, number] | null } {
-  const { waves, geometry } = point;
-  const limits = [waves.polP, waves.polS, waves.polI].map((pol) => model.index.range(pol, geometry).width_um);
-  if (limits.some((l) => l === undefined)) return { widths_um: [], range_um: null };
-  const low = Math.max(...limits.map((l) => l![0]));
-  const high = Math.min(...limits.map((l) => l![1]));
-  const per = (width_um: number) =>
-    parameterSlope(model, { ...point, geometry: { ...geometry, width_um } }, "width_um");
-  const widths_um: number[] = [];
-  const at = (k: number) => low + (high - low) * k / WIDTH_STEPS;
-  for (let k = 0; k < WIDTH_STEPS; k++) {
-    let [a, b] = [at(k), at(k + 1)];
-    const left = per(a);
-    if (left * per(b) > 0) continue;
-    while (b - a > 1e-6) {
-      const middle = (a + b) / 2;
-      if (left * per(middle) > 0) a = middle;
-      else b = middle;
-    }
-    widths_um.push((a + b) / 2);
-  }
-  return { widths_um, range_um: [low, high] };
-}
-
 /** Period (m at 25 °C) that matches at the point's temperature. @throws RangeError beyond the index's limits */
 export function matchingPeriod(
   model: PlatformModel,
-  { waves, geometry, temperatureC }: Omit<SensitivityPoint, "process">,
+  { waves, geometry, temperatureC }: SlopePoint,
 ): number {
   const scaled = mismatch(model.index, waves, temperatureC, geometry) * model.expansion(temperatureC);
   return 2 * Math.PI / Math.abs(scaled);
 }
-
-const isGeometry = (parameter: GeometryParameter | ProcessParameter): parameter is GeometryParameter =>
-  (GEOMETRY_PARAMETERS as readonly string[]).includes(parameter) &&
-  !(PROCESS_PARAMETERS as readonly string[]).includes(parameter);
 
 /** Δβ(T) less what the grating's own expansion follows: its slope over Δβ's is what an oven tunes with. */
 function netMismatch(
@@ -222,18 +181,13 @@ function slope(
 }
 
 /** What the peak efficiency is proportional to: 1/(n_p n_s n_i A); null where no area is known. */
-function strength(
-  model: PlatformModel,
-  { waves, geometry, temperatureC }: SensitivityPoint,
-  nudge: Readonly<Record<string, number>>,
-): number | null {
-  const there = nudged(geometry, nudge);
+function strength(model: PlatformModel, { waves, geometry, temperatureC }: SlopePoint): number | null {
   try {
-    const n = (pol: Polarisation, lambda: number) => model.index.nEff(pol, lambda, temperatureC, there);
+    const n = (pol: Polarisation, lambda: number) => model.index.nEff(pol, lambda, temperatureC, geometry);
     const indices = n(waves.polP, waves.lambdaP) * n(waves.polS, waves.lambdaS) *
       n(waves.polI, waves.lambdaI);
     const process = processName(waves.polP, waves.polS, waves.polI);
-    return 1 / (indices * model.area.effectiveArea(process, there, waves));
+    return 1 / (indices * model.area.effectiveArea(process, geometry, waves));
   } catch (error) {
     if (error instanceof RangeError) return null;
     throw error;

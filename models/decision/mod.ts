@@ -4,14 +4,17 @@ export { windowStatistics } from "./grating_draws.ts";
 export { mismatchProfile } from "./mismatch_profile.ts";
 export {
   matchingPeriod,
-  nonCriticalWidths,
   type Nudge,
   type NudgeEffect,
   nudgeEffects,
   NUDGES,
-  parameterSlope,
   type SensitivityPoint,
 } from "./design_sensitivity.ts";
+export { type NonCriticalWidth, nonCriticalWidths, parameterSlope } from "./parameter_slope.ts";
+export { type ChangedDesign, changedDesigns, PROCESS_NUDGES, type ProcessNudge } from "./process_changes.ts";
+export * from "./analyse_guide.ts";
+export { type KnownReadingU, type PossibleReading, type ReadingU } from "./possible_readings.ts";
+export { RESTORE_GROUP_NAMES, restoredInputs, type RestoreGroup } from "./restored_inputs.ts";
 export * from "./draws.ts";
 export * from "./figure_basis.ts";
 export * from "./guide_inputs.ts";

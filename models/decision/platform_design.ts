@@ -43,6 +43,7 @@ export function platformDesign(
 /** Remarks on process parameters that are estimates, or beyond what their law was published for. */
 export function processRemarks(index: SolverIndex): string[] {
   if (index.profile !== "titanium-diffused" || index.diffusion === undefined) return [];
+  if (index.diffusion_lateral_um !== undefined) return []; // lengths are given: time and temperature shift them only
   const { hours, temperature_c } = index.diffusion;
   const length = titaniumDiffusionLength(hours, temperature_c) * 1e6;
   return [
@@ -61,11 +62,11 @@ function processOf(index: SolverIndex): SolverProcess {
   }
   const { profile, diffusion, diffusion_lateral_um, diffusion_depth_um } = index;
   const length = diffusion === undefined
-    ? null
+    ? NaN
     : titaniumDiffusionLength(diffusion.hours, diffusion.temperature_c) * 1e6;
   return {
     profile,
-    diffusion_lateral_um: length ?? diffusion_lateral_um!,
-    diffusion_depth_um: length ?? diffusion_depth_um!,
+    diffusion_lateral_um: diffusion_lateral_um ?? length,
+    diffusion_depth_um: diffusion_depth_um ?? length,
   };
 }

@@ -101,12 +101,14 @@ async function lotsPooledWith(ledger: Ledger, chosen: readonly string[]): Promis
 }
 
 /** Says that modes are being solved, and how far it is: seconds per drawn width, and only once per ledger. */
-export function solvingProgress(what: string): (done: number, of: number) => void {
+export function solvingProgress(what: string, kept = true): (done: number, of: number) => void {
   let bar: ReturnType<typeof progressBar> | null = null;
   return (done, of) => {
     if (done === 0) {
       note(
-        `solving the modes of ${what}'s designs (${of} ${of === 1 ? "piece" : "pieces"}; kept in the ledger)`,
+        `solving the modes of ${what}'s designs (${of} ${of === 1 ? "piece" : "pieces"}; ${
+          kept ? "kept in the ledger" : "no ledger keeps them"
+        })`,
       );
       bar = progressBar("solving modes");
     }

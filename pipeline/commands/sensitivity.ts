@@ -6,6 +6,7 @@ import type { Polarisation, Process, ThreeWaves } from "../../shared/vocabulary.
 import {
   askedBy,
   type AskedDesign,
+  changedModels,
   type DesignSensitivity,
   designsFor,
   sensitivityOf,
@@ -56,12 +57,20 @@ export async function sensitivityCommand(subject: string, options: SensitivityCo
       loaded,
       widths,
       [asked.request === null ? { waves: asked.waves } : askedBy(asked.request)],
-      { workers: threadsOf(options), onSolving: solvingProgress(asked.lot ?? asked.platform) },
+      {
+        workers: threadsOf(options),
+        onSolving: solvingProgress(asked.lot ?? asked.platform, ledger !== null),
+      },
     );
+    const changed = await changedModels(ledger, loaded, widths, asked.waves, {
+      workers: threadsOf(options),
+      onSolving: solvingProgress(`the slightly changed ${asked.lot ?? asked.platform}`, ledger !== null),
+    });
     const question: SensitivityQuestion = {
       model: buildModel({ ...loaded, designs }),
       platform: loaded.platform,
       designs,
+      changed,
       waves: asked.waves,
       process: asked.process,
       oven: asked.oven,

@@ -13,6 +13,8 @@ const NAMES: Readonly<Record<string, readonly [name: string, unit: string]>> = {
   titanium_nm: ["titanium", "nm"],
   diffusion_lateral_um: ["diffusion, lateral", "µm"],
   diffusion_depth_um: ["diffusion, depth", "µm"],
+  diffusion_hours: ["diffusion time", "h"],
+  diffusion_temperature_c: ["diffusion temp.", "°C"],
   exchange_depth_um: ["exchange depth", "µm"],
   index_step: ["index step", ""],
   temperature_c: ["temperature", "°C"],
@@ -47,7 +49,9 @@ export function sensitivityText(
         SCANNED[asked.process]
       }: move of the centre at fixed temperature (–: no wavelength near makes up for it); oven: ` +
         `what it has to follow by at fixed wavelength, to first order; efficiency: change of its peak${
-          designs.some((d) => d.purity !== null) ? "; purity: of an ideal grating, the oven following" : ""
+          designs.some((d) => d.purity !== null)
+            ? "; purity: of an ideal grating, the oven following (for a temperature, the period)"
+            : ""
         }.`,
       WIDTH,
     ),
@@ -87,18 +91,7 @@ function designText(
     ...wrap(at, WIDTH),
     table(columns, design.rows.map((r) => rowCells(r, design.purity !== null))),
   ];
-  if (design.widths_searched_um !== null) {
-    const [low, high] = design.widths_searched_um;
-    const found = design.non_critical_widths_um.map((w) => `${w.toFixed(2)} µm`).join(", ");
-    lines.push(...wrap(
-      found === ""
-        ? `No width from ${short(low)} to ${short(high)} µm is non-critical (∂Δβ/∂width = 0).`
-        : `Non-critical width (∂Δβ/∂width = 0): ${found}; looked for from ${short(low)} to ${
-          short(high)
-        } µm.`,
-      WIDTH,
-    ));
-  }
+  lines.push(...nonCriticalLines(design));
   for (const w of design.waves) {
     const modes = w.modes === null
       ? ""
@@ -117,6 +110,7 @@ function designText(
       WIDTH,
     ));
   }
+  for (const remark of design.remarks) lines.push(...wrap(`remark: ${remark}`, WIDTH));
   if (request !== null && design.waves.some((w) => w.coupling_solved !== null)) {
     lines.push(
       ...wrap(
@@ -128,6 +122,24 @@ function designText(
   return lines;
 }
 
+/** Where the width does not count to first order, and what is left of an error there. */
+function nonCriticalLines({ non_critical_widths, widths_searched_um }: DesignSensitivity): string[] {
+  if (widths_searched_um === null) return [];
+  const [low, high] = widths_searched_um.map(short);
+  if (non_critical_widths.length === 0) {
+    return wrap(`No width from ${low} to ${high} µm is non-critical (∂Δβ/∂width = 0).`, WIDTH);
+  }
+  const found = non_critical_widths.map(({ width_um, by, mismatch_per_m, temperature_c }) =>
+    `${width_um.toFixed(2)} µm, where ±${by} µm leaves ${signed(mismatch_per_m)} 1/m to second order${
+      temperature_c === null ? "" : ` (oven ${signed(temperature_c)} °C)`
+    }`
+  );
+  return wrap(
+    `Non-critical width (∂Δβ/∂width = 0): ${found.join("; ")}; looked for from ${low} to ${high} µm.`,
+    WIDTH,
+  );
+}
+
 function rowCells(r: SensitivityRow, withPurity: boolean): Cell[] {
   const [name, unit] = NAMES[r.parameter] ?? [r.parameter, ""];
   return [
@@ -136,14 +148,15 @@ function rowCells(r: SensitivityRow, withPurity: boolean): Cell[] {
     signed(r.mismatch_per_m),
     r.centre_nm === null ? "–" : signed(r.centre_nm),
     r.temperature_c === null ? "" : signed(r.temperature_c),
-    r.efficiency_percent === null ? "" : `${signed(r.efficiency_percent, 2)} %`,
-    ...(withPurity ? [r.purity === null ? "" : signed(r.purity, 2)] : []),
+    r.efficiency_percent === null ? "" : `${signed(r.efficiency_percent, 2, 2)} %`,
+    ...(withPurity ? [r.purity === null ? "" : signed(r.purity, 2, 5)] : []),
   ];
 }
 
-/** With its sign, to so many digits, plainly written. */
-function signed(x: number, digits = 3): string {
-  const rounded = Number(x.toPrecision(digits));
+/** With its sign, to so many digits but no more decimals than told, plainly written; 0 has no sign. */
+function signed(x: number, digits = 3, decimals = 20): string {
+  const rounded = Number(Number(x.toPrecision(digits)).toFixed(decimals));
+  if (rounded === 0) return "0";
   return `${rounded < 0 ? "−" : "+"}${Math.abs(rounded)}`;
 }
 const short = (x: number): string => String(Number(x.toFixed(3)));

@@ -14,11 +14,9 @@ import { InputError } from "../../shared/errors.ts";
 import { nm } from "../../shared/units.ts";
 import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import type { Ledger } from "../ledger/mod.ts";
-import { OutOfDate } from "../out_of_date.ts";
 import type { LoadedPlatform } from "../platforms.ts";
-import { solveTasks } from "./solve.ts";
-import { heldPieces, keepPieces, type SolvedPiece } from "./store.ts";
-import { type DesignTask, taskKey, type TaskResult } from "./tasks.ts";
+import { piecesFor, type SolveSetting } from "./pieces.ts";
+import type { DesignTask, TaskResult } from "./tasks.ts";
 
 /** Wavelengths (m) at which a request needs areas and the number of modes; diameters (m) of its fibres, where known. */
 export interface AskedWaves {
@@ -26,15 +24,6 @@ export interface AskedWaves {
   /** Range of the pump's wavelength, if it may be tuned. */
   readonly tunable?: readonly [number, number] | null;
   readonly fibres?: { readonly signal?: number | undefined; readonly idler?: number | undefined };
-}
-
-export interface SolveSetting {
-  /** Threads to solve on. */
-  readonly workers?: number;
-  /** Pieces solved, of all that were not held; called with (0, n) before the first. */
-  readonly onSolving?: (done: number, of: number) => void;
-  /** Default: {@link TABLE_GRID}. */
-  readonly grid?: TableGrid;
 }
 
 /** Designs with the ledger's runs that hold them; null for a platform whose modes are not solved. */
@@ -59,7 +48,7 @@ export async function designsFor(
   { platform, file }: Pick<LoadedPlatform, "platform" | "file">,
   widths_um: readonly number[],
   asked: readonly AskedWaves[],
-  { workers = 1, onSolving, grid = TABLE_GRID }: SolveSetting = {},
+  setting: SolveSetting = {},
 ): Promise<DesignsFound> {
   const { index } = platform;
   if (index.from !== "solver") return { designs: null, runs: [] };
@@ -67,28 +56,8 @@ export async function designsFor(
   try {
     const designs = widths.map((width) => platformDesign(platform, index, width));
     const tasks = designs.flatMap((design) => tasksOf(design, asked));
-    const keys = tasks.map((task) => taskKey(task, grid));
-    const { results, runs } = ledger === null
-      ? { results: new Map<string, TaskResult>(), runs: [] }
-      : await heldPieces(ledger, new Set(keys));
-    const missing = [...new Map(keys.map((key, k) => [key, tasks[k]!])).entries()].filter(([key]) =>
-      !results.has(key)
-    );
-    if (missing.length > 0) {
-      // Seconds of solving that nothing would keep: whoever asked opens the ledger for writing, and asks again.
-      if (ledger !== null && !ledger.writable) throw new OutOfDate("solved modes");
-      const keeper = new Keeper(ledger, platform.platform, missing.map(([, task]) => task.design));
-      let done = 0;
-      onSolving?.(0, missing.length);
-      await solveTasks(missing.map(([, task]) => task), grid, workers, async (k, result) => {
-        const [key, task] = missing[k]!;
-        results.set(key, result);
-        onSolving?.(++done, missing.length);
-        await keeper.add({ key, task, result });
-      });
-      runs.push(...keeper.runs);
-    }
-    return { designs: assembled(designs, tasks, keys, results, grid), runs };
+    const { results, runs } = await piecesFor(ledger, platform.platform, tasks, setting);
+    return { designs: assembled(designs, tasks, results, setting.grid ?? TABLE_GRID), runs };
   } catch (cause) {
     if (!(cause instanceof RangeError)) throw cause;
     throw new InputError(`Cannot use platform ${file}: ${cause.message}`, { file, column: "index" }, {
@@ -156,61 +125,29 @@ function tunedWaves(waves: ThreeWaves, tunable: readonly [number, number] | null
 function assembled(
   designs: readonly SolverDesign[],
   tasks: readonly DesignTask[],
-  keys: readonly string[],
-  results: ReadonlyMap<string, TaskResult>,
+  results: readonly TaskResult[],
   grid: TableGrid,
 ): SolvedDesigns {
-  const of = (k: number) => results.get(keys[k]!)!;
   const modes = (design: SolverDesign, pol: Polarisation) =>
-    of(tasks.findIndex((t) => t.kind === "modes" && t.design === design && t.pol === pol)) as
+    results[tasks.findIndex((t) => t.kind === "modes" && t.design === design && t.pol === pol)] as
       | PolarisationTable
       | { readonly reason: string };
   return {
     tables: designs.map((design) =>
       designTable(design, grid, { TE: modes(design, "TE"), TM: modes(design, "TM") })
     ),
-    areas: tasks.flatMap((task, k) => task.kind === "areas" ? [of(k) as DesignAreas] : []),
+    areas: tasks.flatMap((task, k) => task.kind === "areas" ? [results[k] as DesignAreas] : []),
     outputs: tasks.flatMap((task, k) =>
       task.kind === "output"
         ? [{
           design: task.design,
           pol: task.pol,
           lambda: task.lambda,
-          result: of(k) as DesignOutput | CutOff,
+          result: results[k] as DesignOutput | CutOff,
         }]
         : []
     ),
   };
-}
-
-/** Commits the pieces of a design as soon as the last of them is solved: what takes seconds is not lost with the rest. */
-class Keeper {
-  readonly runs: string[] = [];
-  readonly #open = new Map<SolverDesign, { left: number; pieces: SolvedPiece[] }>();
-  #last: Promise<void> = Promise.resolve();
-
-  constructor(
-    readonly ledger: Ledger | null,
-    readonly platform: string,
-    designs: readonly SolverDesign[],
-  ) {
-    for (const design of designs) {
-      const held = this.#open.get(design);
-      if (held === undefined) this.#open.set(design, { left: 1, pieces: [] });
-      else held.left++;
-    }
-  }
-
-  async add(piece: SolvedPiece): Promise<void> {
-    const held = this.#open.get(piece.task.design)!;
-    held.pieces.push(piece);
-    if (--held.left > 0 || this.ledger === null) return;
-    const ledger = this.ledger;
-    this.#last = this.#last.then(async () => {
-      this.runs.push(await keepPieces(ledger, this.platform, held.pieces));
-    });
-    await this.#last;
-  }
 }
 
 /** What a request asks of designs. Its fibre diameters stand in µm. */

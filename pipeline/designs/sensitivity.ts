@@ -2,18 +2,19 @@ import {
   type GuideInputs,
   matchingPeriod,
   nonCriticalWidths,
+  type NudgeEffect,
   nudgeEffects,
   operatingPoints,
   type PlatformModel,
   predictGuide,
   validTemperatures,
 } from "../../models/decision/mod.ts";
-import { GEOMETRY_PARAMETERS, type SolvedDesigns, solvedOutputAt } from "../../models/guides/mod.ts";
-import { centredOverlap } from "../../models/metrology/mod.ts";
+import { diffusionRemarks, GEOMETRY_PARAMETERS } from "../../models/guides/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import { mm, toNm, um } from "../../shared/units.ts";
-import type { GuideGeometry, Polarisation, Process, ThreeWaves } from "../../shared/vocabulary.ts";
-import type { LoadedRequest } from "../requests.ts";
+import type { GuideGeometry, Process } from "../../shared/vocabulary.ts";
+import type { ChangedModel } from "./changed_models.ts";
+import { type FactsQuestion, type ModeFacts, waveFacts } from "./mode_facts.ts";
 
 /** What one error does, in the units of output. */
 export interface SensitivityRow {
@@ -26,23 +27,20 @@ export interface SensitivityRow {
   readonly temperature_c: number | null;
   /** Change of the peak efficiency, percent of itself. */
   readonly efficiency_percent: number | null;
-  /** Change of the purity, the oven following; null where it is not a matter of the request, or of the parameter. */
+  /**
+   * Change of the purity, the oven following (for a temperature: the period); null where the request has none, or the
+   * oven can't follow.
+   */
   readonly purity: number | null;
 }
 
-export interface ModeFacts {
-  readonly wave: "pump" | "signal" | "idler";
-  readonly wavelength_nm: number;
-  readonly polarisation: Polarisation;
-  readonly n_eff: number;
-  readonly group_index: number;
-  /** Solved designs only; null where nothing was solved at this wavelength. */
-  readonly modes: number | null;
-  readonly mfd_x_um: number | null;
-  readonly mfd_y_um: number | null;
-  /** Fibre coupling of the solved field, and of elliptic Gaussians of the same mode sizes; null without a fibre. */
-  readonly coupling_solved: number | null;
-  readonly coupling_gaussian: number | null;
+/** A width at which Δβ does not follow the width to first order, and what 0.1 µm off it leaves to second order. */
+export interface NonCritical {
+  readonly width_um: number;
+  /** Either sign of the error. */
+  readonly by: number;
+  readonly mismatch_per_m: number;
+  readonly temperature_c: number | null;
 }
 
 export interface DesignSensitivity {
@@ -53,10 +51,12 @@ export interface DesignSensitivity {
   readonly matched: boolean;
   readonly purity: number | null;
   readonly rows: readonly SensitivityRow[];
-  readonly non_critical_widths_um: readonly number[];
+  readonly non_critical_widths: readonly NonCritical[];
   /** Widths that were looked through; null where the index does not depend on the width. */
   readonly widths_searched_um: readonly [number, number] | null;
   readonly waves: readonly ModeFacts[];
+  /** What lies beyond a published range, is an estimate, or carries more modes than the one computed. */
+  readonly remarks: readonly string[];
   /** Why there are no numbers, as for a guide that carries no mode. */
   readonly reason: string | null;
 }
@@ -68,26 +68,28 @@ export interface AskedDesign {
   readonly poled_length_mm: number;
 }
 
-export interface SensitivityQuestion {
-  readonly model: PlatformModel;
+export interface SensitivityQuestion extends FactsQuestion {
   readonly platform: Platform;
-  readonly designs: SolvedDesigns | null;
-  readonly waves: ThreeWaves;
+  /** The platform with its process off, per drawn width (µm). */
+  readonly changed: ReadonlyMap<number, readonly ChangedModel[]>;
   readonly process: Process;
   /** Oven of the request (°C), or one temperature twice. */
   readonly oven: readonly [number, number];
-  readonly request: LoadedRequest | null;
 }
 
 /** Sensitivities of one design at its operating point. */
 export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign): DesignSensitivity {
-  const { model, platform, waves, process, oven, request } = question;
+  const { model, platform, waves, process, oven } = question;
   const geometry = nominalGeometry(platform, design.width_um);
-  const none = { width_um: design.width_um, non_critical_widths_um: [], widths_searched_um: null, waves: [] };
+  const none = {
+    width_um: design.width_um,
+    non_critical_widths: [],
+    widths_searched_um: null,
+    waves: [],
+    remarks: [],
+  };
   const valid = validTemperatures(model, waves, geometry);
-  const [low, high] = "reason" in valid
-    ? oven
-    : [Math.max(oven[0], valid.range[0]), Math.min(oven[1], valid.range[1])];
+  const [low, high] = validRange(valid, oven);
   if ("reason" in valid || low > high) {
     const reason = "reason" in valid ? valid.reason : `no index within ${oven[0]} to ${oven[1]} °C`;
     return {
@@ -103,20 +105,32 @@ export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign
   const found = operatingPoint(question, design, geometry, [low, high]);
   const point = { waves, process, geometry, temperatureC: found.temperatureC };
   const period_um = found.period_um ?? matchingPeriod(model, point) * 1e6;
-  const purityAt = purityOf(question, design, period_um);
-  const purity = purityAt(geometry);
-  const { widths_um, range_um } = nonCriticalWidths(model, point);
+  const purityAt = purityOf(question, design);
+  const purity = purityAt(model, geometry, period_um);
+  const changed = changedOf(question, design);
+  const effects = nudgeEffects(model, point, changed);
+  const purityOff = ({ parameter, by }: NudgeEffect): number | null => {
+    if (purity === null) return null;
+    if (parameter === "temperature_c") {
+      const there = { ...point, temperatureC: found.temperatureC + by };
+      if (there.temperatureC > high) return null;
+      return purityAt(model, geometry, matchingPeriod(model, there) * 1e6);
+    }
+    const drawn = (geometry as unknown as Record<string, number | undefined>)[parameter];
+    if (drawn !== undefined) return purityAt(model, { ...geometry, [parameter]: drawn + by }, period_um);
+    const other = changed.find((c) => c.parameter === parameter && c.by === by);
+    return other === undefined ? null : purityAt(other.model, geometry, period_um);
+  };
+  const { widths, range_um } = nonCriticalWidths(model, point);
+  const perKelvin = effects.find((e) => e.parameter === "temperature_c")?.deltaBeta ?? 0;
   return {
     width_um: design.width_um,
     period_um,
     temperature_c: found.temperatureC,
     matched: found.matched,
     purity,
-    rows: nudgeEffects(model, point).map((e): SensitivityRow => {
-      const of = (geometry as unknown as Record<string, number | undefined>)[e.parameter];
-      const nudged = of === undefined || purity === null
-        ? null
-        : purityAt({ ...geometry, [e.parameter]: of + e.by });
+    rows: effects.map((e): SensitivityRow => {
+      const nudged = purityOff(e);
       return {
         parameter: e.parameter,
         by: e.by,
@@ -127,11 +141,48 @@ export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign
         purity: nudged === null ? null : nudged - purity!,
       };
     }),
-    non_critical_widths_um: widths_um,
+    non_critical_widths: widths.map(({ width_um, curvature }) => {
+      const left = curvature / 2 * OFF_UM ** 2;
+      return {
+        width_um,
+        by: OFF_UM,
+        mismatch_per_m: left,
+        temperature_c: perKelvin === 0 ? null : -left / perKelvin,
+      };
+    }),
     widths_searched_um: range_um,
-    waves: waveFacts(question, geometry, found.temperatureC, request),
+    waves: waveFacts(question, geometry, found.temperatureC),
+    remarks: remarksOf(question, geometry, found.temperatureC),
     reason: null,
   };
+}
+
+/** Temperatures of the oven at which every index is known; the oven's where none is. */
+const validRange = (
+  valid: ReturnType<typeof validTemperatures>,
+  oven: readonly [number, number],
+): readonly [number, number] =>
+  "reason" in valid ? oven : [Math.max(oven[0], valid.range[0]), Math.min(oven[1], valid.range[1])];
+
+/** How far off a non-critical width what is left is told. */
+const OFF_UM = 0.1;
+
+const changedOf = ({ changed }: SensitivityQuestion, { width_um }: AskedDesign): readonly ChangedModel[] =>
+  width_um === null ? [] : changed.get(width_um) ?? [];
+
+/** Each remark on the three waves once, and those on the process. */
+function remarksOf(
+  { model, platform: { index }, waves }: SensitivityQuestion,
+  geometry: GuideGeometry,
+  temperatureC: number,
+): string[] {
+  const all =
+    ([[waves.polP, waves.lambdaP], [waves.polS, waves.lambdaS], [waves.polI, waves.lambdaI]] as const)
+      .flatMap(([pol, lambda]) => model.index.remark(pol, lambda, temperatureC, geometry)?.split("\n") ?? []);
+  if (index.from === "solver" && index.profile === "titanium-diffused" && index.diffusion !== undefined) {
+    all.push(...diffusionRemarks(index.diffusion.temperature_c));
+  }
+  return [...new Set(all)];
 }
 
 /** Everything that the index may be asked with, as drawn and as the platform's file has it. */
@@ -171,9 +222,9 @@ function operatingPoint(
   return { temperatureC: middle, matched: false, period_um: design.periods_um[0]! };
 }
 
-/** Purity of an ideal, lossless grating in a guide of some geometry; null where the request has none. */
-function purityOf({ model, request }: SensitivityQuestion, design: AskedDesign, period_um: number) {
-  return (geometry: GuideGeometry): number | null => {
+/** Purity of an ideal, lossless grating in a guide of some platform and geometry; null where the request has none. */
+function purityOf({ request }: SensitivityQuestion, design: AskedDesign) {
+  return (model: PlatformModel, geometry: GuideGeometry, period_um: number): number | null => {
     if (request === null || request.request.process !== "pair-generation" || !request.pulsed) return null;
     const exact = (value: number, key: string) => ({ value, u: 0, basis: "platform" as const, key });
     const arm = {
@@ -203,37 +254,4 @@ function purityOf({ model, request }: SensitivityQuestion, design: AskedDesign, 
     const { figures } = predictGuide(model, request, inputs, { recorded: request.spectrum });
     return figures.find((f) => f.figure === "purity")?.mean ?? null;
   };
-}
-
-function waveFacts(
-  { model, designs, waves }: SensitivityQuestion,
-  geometry: GuideGeometry,
-  temperatureC: number,
-  request: LoadedRequest | null,
-): ModeFacts[] {
-  const arms = [
-    ["pump", waves.lambdaP, waves.polP, undefined],
-    ["signal", waves.lambdaS, waves.polS, request?.request.signal.fibre_mfd_um],
-    ["idler", waves.lambdaI, waves.polI, request?.request.idler?.fibre_mfd_um],
-  ] as const;
-  return arms.map(([wave, lambda, pol, fibre_um]): ModeFacts => {
-    const solved = designs === null ? null : solvedOutputAt(designs.outputs, geometry, pol, lambda);
-    const output = solved === null || solved.result.cutOff ? null : solved.result;
-    const fibre = fibre_um === undefined ? undefined : fibre_um * 1e-6;
-    const coupled = output?.fibres.find((f) => fibre !== undefined && Math.abs(f.mfd / fibre - 1) < 1e-9);
-    return {
-      wave,
-      wavelength_nm: toNm(lambda),
-      polarisation: pol,
-      n_eff: model.index.nEff(pol, lambda, temperatureC, geometry),
-      group_index: model.index.groupIndex(pol, lambda, temperatureC, geometry),
-      modes: output === null ? null : output.modes.even + output.modes.odd,
-      mfd_x_um: output === null ? null : output.shape.mfdX * 1e6,
-      mfd_y_um: output === null ? null : output.shape.mfdY * 1e6,
-      coupling_solved: coupled?.value ?? null,
-      coupling_gaussian: output === null || fibre === undefined
-        ? null
-        : centredOverlap([output.shape.mfdX, output.shape.mfdY], [fibre, fibre]),
-    };
-  });
 }

@@ -41,7 +41,10 @@ const solved = {
   provenance: z.string().min(1).optional(),
 };
 
-/** Titanium diffused into the crystal: lengths as measured, or estimated from time and temperature. */
+/**
+ * Titanium diffused into the crystal: lengths as measured, or estimated from time and temperature. Beside lengths, time
+ * and temperature say at what these were found: what a change of either does is told by the sensitivities.
+ */
 const titaniumDiffused = z.strictObject({
   ...solved,
   profile: z.literal("titanium-diffused"),
@@ -53,10 +56,8 @@ const titaniumDiffused = z.strictObject({
   /** How far from a drawn width and the nominal strip the tables go. */
   span: z.strictObject({ width_um: z.number().positive(), titanium_nm: z.number().positive() }),
 }).refine(
-  (p) =>
-    (p.diffusion === undefined)
-      ? p.diffusion_lateral_um !== undefined && p.diffusion_depth_um !== undefined
-      : p.diffusion_lateral_um === undefined && p.diffusion_depth_um === undefined,
+  ({ diffusion_lateral_um: lateral, diffusion_depth_um: depth, diffusion }) =>
+    (lateral === undefined) === (depth === undefined) && (lateral !== undefined || diffusion !== undefined),
   "need diffusion_lateral_um and diffusion_depth_um, or diffusion in their place",
 );
 

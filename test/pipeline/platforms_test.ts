@@ -1,7 +1,9 @@
 import { deepEqual, equal, match, notEqual, ok, rejects, throws } from "node:assert/strict";
 import { join } from "node:path";
+import { processRemarks } from "../../models/decision/mod.ts";
 import { buildModel, loadPlatform, platformIds } from "../../pipeline/platforms.ts";
 import { InputError } from "../../shared/errors.ts";
+import type { SolverIndex } from "../../shared/schemas/platform.ts";
 import { designsFor } from "../../pipeline/designs/mod.ts";
 import { withFolder } from "./ledger/a_ledger.ts";
 
@@ -126,11 +128,14 @@ Deno.test("a diffusion given by time and temperature says of every answer that i
     const remark = buildModel({ ...loaded, designs }).index.remark("TM", 1550e-9, 50, { width_um: 7 })!;
     match(remark, /^estimated_diffusion: lengths of \d\.\d\d µm from 8\.5 h at 1120 °C/);
     match(remark, /beyond_published_range: diffusion at 1120 °C/);
-    // Neither of the two, and both, are refused.
-    for (const diffusion of [{}, { diffusion_depth_um: 4, diffusion: { hours: 8, temperature_c: 1050 } }]) {
-      await write(folder, "mine.json", { ...built, platform: "mine", index: { ...index, ...diffusion } });
+    // Neither of the two, and half of the lengths, are refused; lengths with time and temperature are no estimate.
+    const { diffusion, ...bare } = index;
+    for (const half of [{}, { diffusion_depth_um: 4, diffusion }]) {
+      await write(folder, "mine.json", { ...built, platform: "mine", index: { ...bare, ...half } });
       await rejects(loadPlatform("mine", folder), refusal(/or diffusion in their place/));
     }
+    equal(built.index.diffusion_depth_um, 4.5);
+    deepEqual(processRemarks((await loadPlatform("ti-ln-zcut")).platform.index as SolverIndex), []);
   }));
 
 Deno.test("a platform whose modes are solved takes no constant area, and a film table is held against its substrate", () =>

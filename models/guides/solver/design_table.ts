@@ -68,16 +68,17 @@ export function designKey(design: SolverDesign, grid: TableGrid = TABLE_GRID): s
   return JSON.stringify([SOLVER_VERSION, GEOMETRY_NODES, sorted(grid), sorted(design)]);
 }
 
-/** Nodes of each geometry parameter over its span, middle and both ends among them. */
+/** Nodes of each geometry parameter over its span, middle and both ends among them; a span of 0 has the middle alone. */
 export function geometryNodes({ process, geometry, span }: SolverDesign): number[][] {
   return geometryParameters(process).map((parameter) => {
     const middle = geometry[parameter];
     const half = span[parameter];
-    if (!(middle !== undefined && half !== undefined && half > 0 && middle - half > 0)) {
+    if (!(middle !== undefined && half !== undefined && half >= 0 && middle - half > 0)) {
       throw new RangeError(
-        `Cannot solve a design: found ${parameter} ${middle} ± ${half}, need a span > 0 that stays above 0`,
+        `Cannot solve a design: found ${parameter} ${middle} ± ${half}, need a span from 0 that stays above 0`,
       );
     }
+    if (half === 0) return [middle];
     return Array.from(chebyshevNodes(middle - half, middle + half, GEOMETRY_NODES[process.profile]));
   });
 }

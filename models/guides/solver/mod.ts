@@ -14,6 +14,7 @@ export {
   type ProcessParameter,
   type SolverDesign,
   type SolverProcess,
+  withProcess,
 } from "./design.ts";
 export { type DesignAreas, solveAreas, solverAreaModel } from "./design_area.ts";
 export { type DesignOutput, solveOutput } from "./design_output.ts";

@@ -80,15 +80,20 @@ Deno.test("where the width is non-critical to first order, Δβ has a turning po
     geometry: { width_um: 3 },
     temperatureC: 50,
   };
-  const { widths_um, range_um } = nonCriticalWidths(rubidium, point);
-  equal(widths_um.length, 1);
-  ok(range_um![0] <= widths_um[0]! && widths_um[0]! <= range_um![1]);
+  const { widths, range_um } = nonCriticalWidths(rubidium, point);
+  equal(widths.length, 1);
+  const { width_um, curvature } = widths[0]!;
+  ok(range_um![0] <= width_um && width_um <= range_um![1]);
   const at = (width_um: number) => mismatch(rubidium.index, TYPE_TWO, 50, { width_um });
-  const turn = at(widths_um[0]!);
-  for (const off of [-0.2, -0.1, 0.1, 0.2]) ok(at(widths_um[0]! + off) < turn - 10 * off ** 2, `${off} µm`);
-  const widths = nudgeEffects(rubidium, point).filter((e) => e.parameter === "width_um");
-  equal(widths.map((e) => e.by).join(), "0.1,-0.1");
-  assertClose(widths[1]!.deltaBeta, at(2.9) - at(3), { rel: 1e-9 });
+  const turn = at(width_um);
+  for (const off of [-0.2, -0.1, 0.1, 0.2]) ok(at(width_um + off) < turn - 10 * off ** 2, `${off} µm`);
+  // What is left there is half of the curvature times the square of the error.
+  for (const off of [-0.05, 0.05]) {
+    assertClose(at(width_um + off) - turn, curvature / 2 * off ** 2, { rel: 0.1 }, `${off} µm`);
+  }
+  const effects = nudgeEffects(rubidium, point).filter((e) => e.parameter === "width_um");
+  equal(effects.map((e) => e.by).join(), "0.1,-0.1");
+  assertClose(effects[1]!.deltaBeta, at(2.9) - at(3), { rel: 1e-9 });
 });
 
 Deno.test("bulk has a temperature sensitivity alone; near degenerate type II the centre follows Δβ's curvature", () => {

@@ -20,6 +20,9 @@ Deno.test("sensitivities of a platform read well at 80 columns, and as JSON they
     for (const name of ["width", "film thickness", "etch depth", "temperature"]) {
       match(call.stdout, new RegExp(`^${name} +\\+[\\d.]+ (µm|nm|°C) `, "m"));
     }
+    // 0.1 µm moves a ridge's centre out of reach: a tenth of it is told beside it.
+    match(call.stdout, /^width +\+0\.1 µm .* – /m);
+    match(call.stdout, /^width +\+0\.01 µm +−\d+ +−\d/m);
     match(call.stdout, /No width from 0\.8 to 2 µm is non-critical/);
     const json = JSON.parse(
       (await wavelot(["sensitivity", "tfln-xcut", ...PROCESS, "--width", "1.4", "--format", "json", ...none]))
@@ -32,6 +35,41 @@ Deno.test("sensitivities of a platform read well at 80 columns, and as JSON they
     const warm = design.rows.find((r: { parameter: string }) => r.parameter === "temperature_c");
     assertClose(film.temperature_c * warm.mismatch_per_m, -film.mismatch_per_m, { rel: 1e-6 });
     ok(Math.abs(film.temperature_c) > 10);
+  }));
+
+Deno.test("a process error is told with its efficiency, solved once and kept; several modes are remarked on", () =>
+  withFolder(async (folder) => {
+    const ledger = join(folder, "ledger");
+    await writeFiles(join(folder, "run"), runFiles(() => 0.072));
+    {
+      await using held = await openLedger(ledger, { write: true });
+      await ingestFolder(join(folder, "run"), held);
+    }
+    const ask = [
+      "sensitivity",
+      "rb-ktp-zcut",
+      "--process",
+      "TE>TE+TM",
+      "--wavelength",
+      "1582",
+      "--width",
+      "3",
+    ];
+    const first = await wavelot([...ask, "--ledger", ledger]);
+    equal(first.code, 0, first.stderr);
+    match(first.stderr, /solving the modes of the slightly changed rb-ktp-zcut's designs \(12 pieces; kept/);
+    for (const line of first.stdout.split("\n")) ok(line.length <= 80, line);
+    match(first.stdout, /^exchange depth +\+0\.1 µm .* %$/m);
+    match(first.stdout, /^exchange depth +−0\.1 µm .* %$/m);
+    match(first.stdout, /where ±0\.1 µm leaves −1\d(\.\d)? 1\/m to\s+second order/);
+    match(first.stdout, /remark: several_modes: a guide drawn 3 µm wide carries 4 TE modes at 791 nm/);
+    match(first.stdout, /remark: beyond_published_range: KTP y at 791 nm/);
+    const again = await wavelot([...ask, "--ledger", ledger, "--format", "json"]);
+    equal(again.stderr.includes("solving"), false, again.stderr);
+    const [design] = JSON.parse(again.stdout).designs;
+    for (const row of design.rows) ok(Number.isFinite(row.efficiency_percent), row.parameter);
+    equal(design.waves[0].modes, 4);
+    ok(design.remarks.length >= 2);
   }));
 
 Deno.test("with a lot, a request is asked about the designs of its guides", () =>
