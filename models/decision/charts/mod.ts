@@ -16,3 +16,4 @@ export * from "./individuals.ts";
 export * from "./run_rules.ts";
 export * from "./grouped_yield.ts";
 export * from "./spread_growth.ts";
+export * from "./nested_limits.ts";

@@ -2,6 +2,7 @@ import { compareIds } from "../../../shared/ids.ts";
 import type { LotFacts, LotSummary } from "./facts.ts";
 import { earlierLots } from "./earlier_lots.ts";
 import { lotChart } from "./lot_chart.ts";
+import { waferChartFlags } from "./wafer_chart.ts";
 import {
   coverageThin,
   figureLimit,
@@ -13,7 +14,7 @@ import { coatingOffTarget, coatingUnknown } from "./coating_rules.ts";
 import { quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
 import { periodOff } from "./period_rule.ts";
 import { repeatedReadings, scanResidual } from "./residual_rules.ts";
-import type { Rule } from "./rules.ts";
+import type { Rule, RuleOf } from "./rules.ts";
 import { seriesOf, summaryOf } from "./series.ts";
 import { spreadGrowth } from "./spread_rules.ts";
 import { traitLimit, waferContrast } from "./trait_rules.ts";
@@ -68,27 +69,53 @@ function flagsOfRule(facts: LotFacts, rule: Rule, own: LotSummary, all: readonly
     case "quarantine":
       return quarantined(facts, rule);
     case "lot_chart":
-      return lotChart(
-        own,
-        all,
-        rule,
-        facts.platform.platform,
-        (key) =>
-          seriesOf(facts.traits, rule.traits, facts.platform).filter((s) => s.key === key)
-            .flatMap((s) => s.dies.flatMap((d) => d.refs)),
-      );
+      return chartFlags(facts, rule, own, all);
     case "spread_growth":
       return spreadGrowth(facts, rule, earlierLots(own, all));
   }
 }
 
-/** A wafer that is beyond a limit need not be told to differ from its twin in the same trait as well. */
+function chartFlags(
+  facts: LotFacts,
+  rule: RuleOf<"lot_chart">,
+  own: LotSummary,
+  all: readonly LotSummary[],
+): Flag[] {
+  const refs = (key: string, wafer?: string) =>
+    seriesOf(facts.traits, rule.traits, facts.platform).filter((s) => s.key === key)
+      .flatMap((s) => s.dies.filter((d) => wafer === undefined || d.wafer === wafer))
+      .flatMap((d) => d.refs);
+  const lots = lotChart(own, all, rule, facts.platform.platform, refs);
+  if (rule.wafers === undefined) return lots;
+  const wafers = waferChartFlags(own, all, rule, rule.wafers, refs);
+  // A lot whose wafers are all out is told as a lot.
+  const told = new Set(lots.map((f) => f.evidence.numbers.series).filter((s) => s !== undefined));
+  const out = Map.groupBy(wafers, (f) => f.evidence.numbers.series);
+  const whole = (key: unknown) =>
+    told.has(key as string) &&
+    out.get(key as string)!.length === own.series.get(key as string)!.wafers.length;
+  return [...lots, ...wafers.filter((f) => !whole(f.evidence.numbers.series))];
+}
+
+/** A wafer that is beyond a limit need not be told to differ from its twins, or from earlier wafers, in the same trait as well. */
 function withoutEchoes(flags: readonly Flag[]): Flag[] {
   const key = (f: Flag) => `${f.scope}|${f.id}|${f.evidence.numbers.trait}`;
-  const contrasts = (f: Flag) =>
-    f.evidence.numbers.z !== undefined && f.evidence.numbers.others !== undefined;
-  const beyond = new Set(flags.filter((f) => f.evidence.numbers.limit !== undefined).map(key));
-  return flags.filter((f) => !(contrasts(f) && beyond.has(key(f))));
+  const rank = ({ evidence: { numbers } }: Flag): number =>
+    numbers.limit !== undefined
+      ? 0
+      : numbers.z !== undefined && numbers.others !== undefined
+      ? 1
+      : numbers.z !== undefined && numbers.centre !== undefined
+      ? 2
+      : -1;
+  const first = new Map<string, number>();
+  for (const f of flags) {
+    const r = rank(f);
+    if (r >= 0 && f.evidence.numbers.trait !== undefined) {
+      first.set(key(f), Math.min(r, first.get(key(f)) ?? r));
+    }
+  }
+  return flags.filter((f) => rank(f) <= (first.get(key(f)) ?? Infinity));
 }
 
 /** A lot as the others are summed up. */

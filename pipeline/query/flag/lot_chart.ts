@@ -7,7 +7,7 @@ import {
   runSignals,
   type Signal,
 } from "../../../models/decision/charts/mod.ts";
-import { tTwoSided } from "../../../models/decision/tails.ts";
+import { normalTwoSided, tTwoSided } from "../../../models/decision/tails.ts";
 import type { ReadingRef } from "../../traits/trait_row.ts";
 import { earlierLots, leftOut, leftOutSentences } from "./earlier_lots.ts";
 import type { LotSummary } from "./facts.ts";
@@ -82,6 +82,18 @@ function chartOf(
   };
 }
 
+/** A series by its key, as people say it, with its unit. */
+export function wordsOfKey(key: string): { words: string; unit: string } {
+  const [trait, nm, pol, process] = key.split("|") as [string, string, string, string];
+  const words = seriesWords({
+    trait: trait as never,
+    wavelength_nm: nm === "" ? null : Number(nm),
+    polarisation: pol === "" ? null : pol as "TE" | "TM",
+    process: process === "" ? null : process,
+  });
+  return { words, unit: unitOf(trait) };
+}
+
 /** Charts of everything that a rule names, for which enough earlier lots were read. */
 export function lotCharts(
   lot: LotSummary,
@@ -92,16 +104,10 @@ export function lotCharts(
   const rules = Object.keys(rule.run_rules) as RunRule[];
   const charts: (LotChart | null)[] = [];
   for (const key of lot.series.keys()) {
-    const [trait, nm, pol, process] = key.split("|") as [string, string, string, string];
-    if (!(rule.traits as string[]).includes(trait)) continue;
-    const words = seriesWords({
-      trait: trait as never,
-      wavelength_nm: nm === "" ? null : Number(nm),
-      polarisation: pol === "" ? null : pol as "TE" | "TM",
-      process: process === "" ? null : process,
-    });
+    if (!(rule.traits as string[]).includes(key.split("|")[0]!)) continue;
+    const { words, unit } = wordsOfKey(key);
     const value = (l: LotSummary) => l.series.get(key)?.mean ?? null;
-    charts.push(chartOf(key, words, unitOf(trait), lots, value, rules, rule.least_earlier_lots));
+    charts.push(chartOf(key, words, unit, lots, value, rules, rule.least_earlier_lots));
   }
   for (const request of rule.yields ? lot.yields.keys() : []) {
     const value = (l: LotSummary) => {
@@ -152,7 +158,10 @@ export function lotChart(
     }];
   }
   return charts.filter((c) => c.signals.length > 0).map((c) => {
-    const severities = c.signals.map((s) => rule.run_rules[s.rule]!);
+    // Every chart is one more chance to be out: what has to be decided must be so improbable that none of them is by chance.
+    const p = normalTwoSided(c.z.at(-1)!) * charts.length;
+    const severities = c.signals.map((s) => rule.run_rules[s.rule]!)
+      .map((s) => s === "act" && p >= rule.act_alpha ? "watch" : s);
     const severity = severities.reduce((a: Severity, b) => SEVERITY_ORDER[b] < SEVERITY_ORDER[a] ? b : a);
     const shown = (x: number) => c.key.startsWith("yield|") ? percent(x) : `${num(x)}${c.unit}`;
     return {
@@ -167,6 +176,7 @@ export function lotChart(
       evidence: {
         numbers: {
           quantity: c.words,
+          series: c.key,
           value: c.values.at(-1)!,
           centre: c.centre,
           lower: c.lower,

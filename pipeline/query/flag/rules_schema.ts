@@ -92,6 +92,10 @@ const KINDS = [
     traits,
     yields: z.boolean(),
     least_earlier_lots: z.int().min(2),
+    /** Severity of a wafer beyond what wafers of the lots before keep; left out: not flagged. */
+    wafers: severity.optional(),
+    /** A run rule acts only on a point that is as improbable as this among all charts of the lot; else it is watched. */
+    act_alpha: z.number().gt(0).max(1).default(0.0005),
     run_rules: z.partialRecord(
       z.enum(Object.keys(RUN_RULES) as [keyof typeof RUN_RULES, ...(keyof typeof RUN_RULES)[]]),
       severity,

@@ -3,6 +3,7 @@ import { runSignals, WESTERN_ELECTRIC } from "../../../../models/decision/charts
 import { flagsOf, summaryOfFacts } from "../../../../pipeline/query/flag/evaluate.ts";
 import type { LotSummary } from "../../../../pipeline/query/flag/facts.ts";
 import { correctedZ, lotCharts } from "../../../../pipeline/query/flag/lot_chart.ts";
+import { waferCharts } from "../../../../pipeline/query/flag/wafer_chart.ts";
 import { loadRules, type RuleOf } from "../../../../pipeline/query/flag/rules.ts";
 import { individualsCharts } from "../../../../models/decision/charts/mod.ts";
 import { randomFrom } from "../../../../shared/random.ts";
@@ -17,7 +18,7 @@ const chart = rules.find((r) => r.kind === "lot_chart") as RuleOf<"lot_chart">;
 
 Deno.test("fault-free lots raise no more alarms than the rules promise", () => {
   const summaries: LotSummary[] = [];
-  let [act, watch, charts, signals] = [0, 0, 0, 0];
+  let [act, watch, charts, signals, wafers, wafersOut] = [0, 0, 0, 0, 0, 0];
   const byRule = new Map<string, number>();
   for (let n = 1; n <= BEFORE + LOTS; n++) {
     const facts = simulatedLot(n);
@@ -30,6 +31,11 @@ Deno.test("fault-free lots raise no more alarms than the rules promise", () => {
     const own = lotCharts(summaries.at(-1)!, summaries, chart);
     charts += own.length;
     signals += own.filter((c) => c.signals.length > 0).length;
+    for (const { z } of waferCharts(summaries.at(-1)!, summaries, chart).flatMap((c) => c.points)) {
+      if (z === null) continue;
+      wafers++;
+      if (Math.abs(z) > 3) wafersOut++;
+    }
   }
   // What the four run rules promise: the share of points of a long series in control, judged by its true centre and
   // spread, at which some rule signals (one signal in 91.75 points begins a run of them).
@@ -42,9 +48,14 @@ Deno.test("fault-free lots raise no more alarms than the rules promise", () => {
   const shares = `act ${act}, watch ${watch} of ${LOTS} lots; charts ${signals} of ${charts} points, ${
     (100 * found).toFixed(2)
   } %, promised ${(100 * promised).toFixed(2)} %; by rule ${JSON.stringify([...byRule])}`;
-  // Found: no lot to be decided, 14 of 240 to be looked at; 1.56 % of chart points where 1.66 % are promised.
+  // Found: no lot to be decided, 15 of 240 to be looked at; 1.56 % of chart points where 1.66 % are promised.
   ok(charts === 4 * LOTS, shares);
   ok(found > 0 && found < most, shares);
+  // 0.27 % of wafers; those of a lot go together, so the count scatters as half as many: 5.2 ± 3.2 of 1920.
+  equal(wafers, 2 * 4 * LOTS);
+  ok(wafersOut <= 0.0027 * wafers + 3 * Math.sqrt(2 * 0.0027 * wafers), `${wafersOut} of ${wafers} wafers`);
+  // At most what the charts of 4 traits and 2 wafers each and the spread rule promise together.
+  ok(watch / LOTS <= 4 * promised + 8 * 0.0027 + 0.01, shares);
   // Limits of traits lie 2 or 3 u of the platform out, which is over 3 standard deviations of a lot: 0.3 % per trait and
   // side at most, and only beyond the confidence of the wafer's mean.
   const limits = ["loss-high", "duty-off", "duty-uneven", "titanium-off"].reduce(

@@ -129,6 +129,18 @@ Deno.test("a lot that steps out of line with its forerunners is flagged; too few
     duty.statement,
     /the 12 lots before have 0\.\d+ on average, limits .*: one point beyond 3 standard deviations/,
   );
+  // Both wafers are out as the lot is: told once.
+  deepEqual(flags.filter((f) => f.scope === "wafer"), []);
+  const one = simulatedLot(41, {
+    fault: (trait, g) => trait === "duty" && g.wafer.endsWith("-2") ? 0.14 : 0,
+  });
+  const wafer = flagsOf(one, only("lot-chart"), [...summaries.slice(0, -1), summaryOfFacts(one)])
+    .find((f) => f.scope === "wafer")!;
+  deepEqual([wafer.id, wafer.severity], ["L041-2", "watch"]);
+  match(
+    wafer.statement,
+    /^Wafer L041-2: duty cycle is 0\.6\d+ on average of 10 dies; wafers of the 12 lots before have 0\.\d+, limits .*: one wafer beyond 3/,
+  );
   const [few, ...none] = flagsOf(shifted, only("lot-chart"), summaries.slice(-4));
   deepEqual(none, []);
   equal(few!.severity, "note");
