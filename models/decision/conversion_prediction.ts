@@ -9,11 +9,11 @@ import {
   photonCoupling,
 } from "../conversion/mod.ts";
 import { absent, given, type Outcome } from "../pairs/mod.ts";
-import type { Grating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import { toNm, toPercentPerW, toPercentPerWCm2 } from "../../shared/units.ts";
 import type { DrawnTraits } from "./drawn_traits.ts";
 import type { FigureDraws } from "./figure_draws.ts";
+import type { MadeGrating } from "./mismatch_draws.ts";
 import {
   acceptanceScan,
   conversionOf,
@@ -35,7 +35,7 @@ export interface ConversionQuestion {
   readonly checked: CheckedRequest;
   readonly drawn: DrawnTraits;
   /** Gratings of the spectral draws; one, if all draws have the same. */
-  readonly gratings: readonly Grating[];
+  readonly made: readonly MadeGrating[];
   readonly exists: Uint8Array;
   readonly unmatched: string;
 }
@@ -46,14 +46,16 @@ export interface ConversionQuestion {
  * uniform lossy grating (exact for a uniform one).
  */
 export function predictConversion(question: ConversionQuestion, out: FigureDraws<ConversionFigure>): void {
-  const { site, checked, drawn, gratings } = question;
+  const { site, checked, drawn, made } = question;
   const { process } = checked.request;
   const count = drawn.size.draws;
   const conversion = conversionOf(process, site);
   const alphas = (k: number) => ({ p: drawn.lossP[k]!, s: drawn.lossS[k]!, i: drawn.lossI[k]! });
   const weights = Array.from({ length: count }, (_, k) => conversion.weight(alphas(k)));
   const respond = responder(site, acceptanceScan(process, site.waves));
-  const responses: Response[] = gratings.map((grating, j) => respond(grating, weights[j]!.decay));
+  const responses: Response[] = made.map(({ grating, profile }, j) =>
+    respond(grating, profile, weights[j]!.decay)
+  );
   const power = inputPower(checked);
   for (let k = 0; k < count; k++) {
     if (question.exists[k] !== 1) {

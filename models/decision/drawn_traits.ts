@@ -21,6 +21,9 @@ export interface DrawnTraits {
   readonly merged: Float64Array;
   /** Offset of Δβ, 1/m. */
   readonly offset: Float64Array;
+  /** Standard deviation of δβ along the guide, 1/m, and the length that a scan found, mm; null where none is known. */
+  readonly mismatchSd: Float64Array | null;
+  readonly effectiveLength: Float64Array | null;
   /** The same draws trait by trait, for whoever asks which trait a figure follows. */
   readonly columns: readonly TraitColumn[];
 }
@@ -50,6 +53,8 @@ const NOT_NEGATIVE: Bounds = { low: 0 };
 const SHARE: Bounds = { low: 0, high: 1 };
 /** A mode can't be smaller than a fraction of a wavelength; 0.1 µm keeps a wide prior off zero. */
 const SIZE: Bounds = { low: 0.1 };
+/** A grating of a few periods: keeps a wide error off zero. */
+const LENGTH: Bounds = { low: 0.1 };
 /** Outside this range a grating is no grating; a drawn duty stays inside. */
 const DUTY: Bounds = { low: 0.02, high: 0.98 };
 
@@ -100,7 +105,8 @@ export function drawTraits(
       : draw(`${name}_facet`, "reflectivity", facet.reflectivity, SHARE),
   });
   const none = () => new Float64Array(draws);
-  const { poling } = guide;
+  const { poling, mismatchSpread: spread = null } = guide;
+  const scanned = spread?.scanned ?? null;
   const drawn = {
     size,
     lossP: loss("pump_loss", guide.pumpLoss),
@@ -112,6 +118,10 @@ export function drawTraits(
     dutySd: poling.from === "duty" ? draw("poling", "duty_sd", poling.dutySd, NOT_NEGATIVE) : none(),
     merged: poling.from === "duty" ? draw("poling", "merged", poling.merged, SHARE) : none(),
     offset: drawOffset(),
+    mismatchSd: spread === null ? null : draw("poling", "mismatch_sd_per_m", spread.sd, NOT_NEGATIVE),
+    effectiveLength: scanned === null
+      ? null
+      : draw("poling", "effective_length_mm", scanned.effectiveLength, LENGTH),
   };
   return { ...drawn, columns: [...columns.values()] };
 

@@ -78,7 +78,9 @@ export function basisOfRole(role: Role, guide: GuideInputs): Basis {
     case "idler_facet":
       return facetBasis(guide.idler);
     case "poling":
-      return polingBasis(guide.poling);
+      return guide.mismatchSpread
+        ? weakestBasis([polingBasis(guide.poling), guide.mismatchSpread.sd.basis])
+        : polingBasis(guide.poling);
     case "phase_matching":
       // A scan of the guide itself measures the centre, whatever its geometry. Else it is calculated: from the platform's
       // index, the geometry, and what scans nearby say of both.

@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { GeometryParameter } from "../guides/mod.ts";
-import type { Basis, GuideGeometry, Uncertain } from "../../shared/vocabulary.ts";
+import type { Basis, GuideGeometry, ThreeWaves, Uncertain } from "../../shared/vocabulary.ts";
 
 /** A trait as a guide's prediction uses it. */
 export interface UsedTrait extends Uncertain {
@@ -56,6 +56,16 @@ export interface AlongGuide {
   readonly deviation: readonly number[];
 }
 
+/** How far Δβ is spread along a guide, where only statistics are known. */
+export interface SpreadTraits {
+  /** Standard deviation of δβ(z), 1/m, of the process in `scanned`, else of the one asked. */
+  readonly sd: UsedTrait;
+  /** At which the correlation of δβ has fallen to 1/e, m. */
+  readonly correlationLength: number;
+  /** The scan of this very guide that told it, and how long a uniform grating as wide is (mm); null: scans nearby, or the platform. */
+  readonly scanned: { readonly waves: ThreeWaves; readonly effectiveLength: UsedTrait } | null;
+}
+
 /** Everything that a prediction of one guide rests on; lengths in m at 25 °C. */
 export interface GuideInputs {
   readonly id: string;
@@ -78,4 +88,6 @@ export interface GuideInputs {
    * that scans nearby or the platform suggest; null when the calculated Δβ is taken as it is.
    */
   readonly offset: UsedTrait | null;
+  /** Spread of Δβ along the guide beside what `along` says; null or left out where nothing speaks of one. */
+  readonly mismatchSpread?: SpreadTraits | null;
 }

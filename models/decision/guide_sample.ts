@@ -5,7 +5,7 @@ import type { Grating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import { type Figure, figureAbsence, FIGURES } from "../../shared/schemas/figures.ts";
 import { nm, toDbPerCm, toNm } from "../../shared/units.ts";
-import type { Polarisation } from "../../shared/vocabulary.ts";
+import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import { type ConversionFigure, predictConversion } from "./conversion_prediction.ts";
 import type { SampleSize } from "./draws.ts";
 import { type DrawnTraits, drawTraits, type MismatchSensitivity } from "./drawn_traits.ts";
@@ -13,6 +13,7 @@ import { FigureDraws } from "./figure_draws.ts";
 import { drawGrating, gratingForPeak, inspectedGrating } from "./grating_draws.ts";
 import type { GuideInputs } from "./guide_inputs.ts";
 import { drawOperatingPoints, type OperatingDraws } from "./operating_draws.ts";
+import { spreadFactor, withSpread } from "./mismatch_draws.ts";
 import { mismatchProfile } from "./mismatch_profile.ts";
 import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
 import { type PairNotes, type PairQuestion, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
@@ -50,7 +51,8 @@ export function sampleGuide(
   options: SampleOptions,
   size: SampleSize,
 ): GuideSample {
-  const sensitivity = mismatchSensitivity(model, checked, guide);
+  const sensitivityOf = (waves: ThreeWaves) => mismatchSensitivity(model, waves, checked, guide);
+  const sensitivity = sensitivityOf(checked.waves);
   const drawn = drawTraits(guide, sensitivity, size);
   const profile = mismatchProfile(guide.along ?? [], sensitivity);
   const out: Draws = new FigureDraws(size.draws);
@@ -77,8 +79,14 @@ export function sampleGuide(
   );
   const site = siteAt(model, guide, checked.processKey, point.waves, point.temperatureC, offset, profile);
   if ("reason" in site) return nowhere(checked, drawn, out, site.reason);
-  const pairs = predictSite(site, checked, guide, drawn, walls, exists, out, options);
-  const remarks = [...pairs?.remarks ?? [], ...indexRemarks(model, site)];
+  const spread = guide.mismatchSpread ?? null;
+  const factor = spread === null ? null : spreadFactor(checked.waves, spread, guide, sensitivityOf);
+  const pairs = predictSite(site, checked, drawn, walls, factor?.factor ?? null, exists, out, options);
+  const remarks = [
+    ...pairs?.remarks ?? [],
+    ...indexRemarks(model, site),
+    ...spread === null ? [] : spreadRemarks(factor),
+  ];
   return { drawn, figures: out, exists, point, pairs, remarks };
 }
 
@@ -102,7 +110,8 @@ function nowhere(
  */
 function mismatchSensitivity(
   model: PlatformModel,
-  { waves, request }: CheckedRequest,
+  waves: ThreeWaves,
+  { request }: CheckedRequest,
   guide: GuideInputs,
 ): MismatchSensitivity {
   const valid = validTemperatures(model, waves, guide.geometry);
@@ -168,21 +177,25 @@ function drawPoints(
 function predictSite(
   site: Site,
   checked: CheckedRequest,
-  guide: GuideInputs,
   drawn: DrawnTraits,
   walls: Grating | null,
+  factor: number | null,
   exists: Uint8Array,
   out: Draws,
   options: SampleOptions,
 ): PairNotes | null {
+  const { guide } = site;
   const unmatched = unmatchedReason(checked);
   const anywhere = exists.some((x) => x === 1);
   const gratings = walls !== null
     ? [walls]
     : Array.from({ length: anywhere ? drawn.size.spectral : 1 }, (_, k) =>
       drawGrating(guide, { duty: drawn.duty[k]!, dutySd: drawn.dutySd[k]!, merged: drawn.merged[k]! }, k));
+  const made = anywhere && factor !== null
+    ? withSpread(site, gratings, drawn, factor)
+    : gratings.map((grating) => ({ grating, profile: site.profile }));
   predictConversion(
-    { site, checked, drawn, gratings, exists, unmatched },
+    { site, checked, drawn, made, exists, unmatched },
     out as FigureDraws<ConversionFigure>,
   );
   if (checked.request.process !== "pair-generation") return null;
@@ -194,7 +207,7 @@ function predictSite(
     checked,
     recorded: options.recorded,
     drawn,
-    grating: (k) => gratings[k % gratings.length]!,
+    made,
     walls,
     exists,
     unmatched,
@@ -208,6 +221,20 @@ function predictSite(
     for (const name of PAIR_FIGURES) out.fill(name, absent(error.message));
     return null;
   }
+}
+
+/** Where a spread was told of another process: how it was carried over, or that it was not. */
+function spreadRemarks(carried: ReturnType<typeof spreadFactor>): string[] {
+  if (carried === null) {
+    return [
+      "mismatch_spread: the scan's spread belongs to another process, and no error of the cross-section explains both: not used",
+    ];
+  }
+  return carried.by === null ? [] : [
+    `mismatch_spread: the scan's spread is of another process; used is ${
+      carried.factor.toPrecision(3)
+    } times it, by the sensitivities to ${carried.by}`,
+  ];
 }
 
 function indexRemarks(model: PlatformModel, { guide: { geometry }, waves, temperatureC }: Site): string[] {

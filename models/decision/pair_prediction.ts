@@ -30,6 +30,7 @@ import type { DrawnArm, DrawnTraits } from "./drawn_traits.ts";
 import type { FigureDraws } from "./figure_draws.ts";
 import type { ArmTraits } from "./guide_inputs.ts";
 import { convertingStretches } from "./grating_draws.ts";
+import type { MadeGrating } from "./mismatch_draws.ts";
 import { type Site, siteLength } from "./site.ts";
 
 /** A pump spectrum as recorded: vacuum wavelength (m) and intensity per wavelength on a free scale. */
@@ -74,8 +75,8 @@ const filterOf = (filter: FilterRequest, lambda: number): Filter => ({
 
 /** φ of a grating at a site, with pump loss (1/m). */
 function gratingAt(
-  { guide, scale, offset, profile }: Site,
-  grating: Grating,
+  { guide, scale, offset }: Site,
+  { grating, profile }: MadeGrating,
   lossP: number,
 ): PairSource["spectrum"] {
   const { decay } = pairWeight(lossP);
@@ -175,9 +176,9 @@ export interface PairQuestion {
   readonly checked: CheckedRequest;
   readonly recorded: RecordedSpectrum | null;
   readonly drawn: DrawnTraits;
-  /** The grating of a spectral draw. */
-  grating(k: number): Grating;
-  /** The inspected grating, when there is one: every spectral draw then has the same. */
+  /** Gratings of the spectral draws; one, if all draws have the same. */
+  readonly made: readonly MadeGrating[];
+  /** The inspected grating, when there is one. */
   readonly walls: Grating | null;
   /** Per draw, whether it has an operating point. */
   readonly exists: Uint8Array;
@@ -203,7 +204,7 @@ export function predictPairs(
   const signal = armOptics(site, "signal", guide.signal, drawn.signal, request.signal);
   const idler = armOptics(site, "idler", guide.idler, drawn.idler, request.idler);
   // Windows may say that a stretch has no domains: any of the gratings that follow them shows it.
-  const shown = walls ?? (guide.poling.from === "windows" ? question.grating(0) : null);
+  const shown = walls ?? (guide.poling.from === "windows" ? question.made[0]!.grating : null);
   const poled = convertingStretches(guide, shown).map((s) => ({ from: s.from * scale, to: s.to * scale }));
   let notes: PairNotes | null = null;
   const remarks = new Set<string>();
@@ -241,8 +242,9 @@ const sameRemark = (a: string, b: string) => a.split(":", 1)[0] === b.split(":",
  * others are computed on half as many points and carry the first one's accuracy with them.
  */
 function pairSpectra(question: PairQuestion, pump: PairPump, scratch: PairScratch): PairSpectrum[] {
-  const { site, checked, drawn, exists, walls } = question;
-  const spectrumOf = (k: number) => gratingAt(site, question.grating(k), drawn.lossP[k]!);
+  const { site, checked, drawn, exists } = question;
+  const spectrumOf = (k: number) =>
+    gratingAt(site, question.made[k % question.made.length]!, drawn.lossP[k]!);
   const { refined: first, base, draw } = pairSpectrumDraws(
     pairSource(site, checked, pump, spectrumOf(0)),
     scratch,
@@ -250,8 +252,10 @@ function pairSpectra(question: PairQuestion, pump: PairPump, scratch: PairScratc
   // Without any operating point only the filter's share is asked for: one spectrum is enough.
   if (!exists.some((x) => x === 1)) return [first];
   const draws = Array.from({ length: drawn.size.spectral }, (_, k) => k);
-  if (walls === null) return draws.map((k) => k === 0 ? first : carried(first, base, draw(spectrumOf(k))));
-  // An inspected grating leaves pump loss alone to vary, and that weakly: linear between its extremes.
+  if (question.made.length > 1) {
+    return draws.map((k) => k === 0 ? first : carried(first, base, draw(spectrumOf(k))));
+  }
+  // One grating for all leaves pump loss alone to vary, and that weakly: linear between its extremes.
   const byLoss = [...draws].sort((a, b) => drawn.lossP[a]! - drawn.lossP[b]!);
   const [least, most] = [byLoss[0]!, byLoss.at(-1)!];
   const span = drawn.lossP[most]! - drawn.lossP[least]!;

@@ -185,9 +185,11 @@ export interface Response {
 const SCAN_NODES = 65;
 
 /** |φ|² at the operating point and the acceptance around it, of gratings at one site: what they share is done once. */
-export function responder(site: Site, scan: Scan): (grating: Grating, decay: number) => Response {
-  const { guide, scale, waves, profile } = site;
-  const varying = profile === undefined ? {} : { profile };
+export function responder(
+  site: Site,
+  scan: Scan,
+): (grating: Grating, profile: MismatchProfile | undefined, decay: number) => Response {
+  const { guide, scale, waves } = site;
   const width = 2 * Math.PI / siteLength(site);
   const here = siteMismatch(site, waves);
   const window = scanWindow(site, scan, here, width);
@@ -197,13 +199,13 @@ export function responder(site: Site, scan: Scan): (grating: Grating, decay: num
   const mismatch = window === null
     ? null
     : tabulate((l) => siteMismatch(site, scan.waves(l)), window.from, window.to, SCAN_NODES);
-  return (grating, decay) => {
+  return (grating, profile, decay) => {
     const band = bandCovering(low, high, (grating.end - grating.start) * scale);
     const spectrum = gratingSpectrum(grating, band, {
       decay,
       scale,
       poledLength: guide.poledLength,
-      ...varying,
+      ...(profile === undefined ? {} : { profile }),
     });
     return { power: spectrumPower(spectrum, here), acceptance: acceptanceOf(spectrum, mismatch) };
   };

@@ -9,7 +9,7 @@ export interface PeakShape {
   readonly structure: number;
 }
 
-const ROUNDS = 30;
+const ROUNDS = 15;
 
 /**
  * The fit of `fitTuningScan`, offset + scale·sinc², for the many simulated curves of a spread: equal weights, no u, and a
@@ -60,7 +60,7 @@ export function peakShape(x: Float64Array, y: Float64Array, startWidth: number):
         break;
       }
     }
-    if (moved < 1e-5) break;
+    if (moved < 1e-4) break;
   }
   const reach = x[n - 1]! - x[0]!;
   if (!(width > 0 && width < reach && scale > 0)) return null;

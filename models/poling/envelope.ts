@@ -72,8 +72,8 @@ export interface EnvelopeCurve {
   power(x: number): number;
 }
 
-/** Points of the transform per stretch: the phase of the ends turns by π/16 from one to the next. */
-const FINER = 16;
+/** Points of the transform per stretch: the phase of the ends turns by π/8 from one to the next. */
+const FINER = 8;
 
 /** Curves of one envelope with slow phases θ (rad, one per stretch) added. */
 export function envelopeCurves(envelope: GratingEnvelope): (theta?: Float64Array) => EnvelopeCurve {

@@ -14,6 +14,7 @@ import type { InformationShares } from "../../models/pooling/mod.ts";
 import type { GuideRecord, PolingRecord } from "../records.ts";
 import type { AlongByGuide, AlongReadings } from "./along_guide.ts";
 import { resolveGeometry } from "./geometry.ts";
+import { resolveSpread } from "./mismatch_spread.ts";
 import type { ResolvedTrait, TraitPools } from "./pools.ts";
 import type { ReadingRef } from "./trait_row.ts";
 import { refsOf } from "./trait_row.ts";
@@ -118,6 +119,8 @@ export function resolveGuide(
   const poling = resolvePoling(pools, windows, guide, walls, roles);
   const offset = pools.offset(guide, processName(polP, polS, polI), wavelengthNm(2 * lambdaP));
   if (offset !== null) roles.push(roleOf("phase_matching", offset));
+  const spread = resolveSpread(pools, guide, checked.waves);
+  if (spread !== null) roles.push(...spread.told.map((t) => roleOf("poling", t)));
   const { geometry, errors } = resolveGeometry(pools, guide);
   for (const { resolved } of errors) roles.push(roleOf("phase_matching", resolved));
   const varying = along.get(guide.guide_id) ?? [];
@@ -140,6 +143,7 @@ export function resolveGuide(
     idler,
     poling,
     offset: offset === null ? null : used(offset),
+    mismatchSpread: spread?.traits ?? null,
   };
   return { inputs, roles };
 }
@@ -149,7 +153,7 @@ export const wavelengthNm = (lambda: number): number => Number(toNm(lambda).toFi
 
 const used = ({ value, u, basis, key }: ResolvedTrait): UsedTrait => ({ value, u, basis, key });
 
-const roleOf = (role: Role, t: ResolvedTrait): RoleTrait => ({
+const roleOf = (role: Role, t: ResolvedTrait & { readonly note?: string }): RoleTrait => ({
   role,
   trait: t.trait,
   wavelength_nm: t.wavelength_nm,
@@ -161,7 +165,7 @@ const roleOf = (role: Role, t: ResolvedTrait): RoleTrait => ({
   distance: t.distance,
   used: t.used,
   refs: [],
-  note: t.otherWidth ? "from guides of another design width" : null,
+  note: t.note ?? (t.otherWidth ? "from guides of another design width" : null),
   shares: t.shares,
 });
 

@@ -91,6 +91,7 @@ export type DefaultTrait = typeof DEFAULT_TRAITS[number];
 const processKey = z.string().regex(
   /^(TE|TM)>(TE|TM)\+(TE|TM)$/,
   'need pump>signal+idler with TE or TM, such as "TE>TE+TM"',
+  "mismatch_sd_per_m",
 );
 
 /** `<id>.json`: a fabrication platform (formats: "Platforms"). */
@@ -147,6 +148,8 @@ export const platformSchema = z.strictObject({
     u_mfd_um: z.number().min(0).optional(),
     u_value: z.record(z.string(), z.number().min(0)).optional(),
   }).default({}),
+    /** Standard deviation of Δβ along a guide at a correlation length of 1 mm, 1/m; with it, scans speak for the guides near them, too. */
+    mismatch_sd_per_m: uncertain.optional(),
   priors: z.partialRecord(z.enum(DEFAULT_TRAITS), spread).default({}),
   notes: z.object({
     pump_limit_mw: z.number().positive().optional(),
