@@ -10,6 +10,7 @@ import {
   outcomeResidual,
   yieldFloor,
 } from "./prediction_rules.ts";
+import { capabilityLow } from "./capability.ts";
 import { coatingOffTarget, coatingUnknown } from "./coating_rules.ts";
 import { quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
 import { periodOff } from "./period_rule.ts";
@@ -29,14 +30,20 @@ export function flagsOf(facts: LotFacts, rules: readonly Rule[], summaries: read
   const own = summaries.find((s) => s.lot === facts.lot) ?? summaryOfFacts(facts);
   const order = new Map(rules.map((r, k) => [r.rule, k]));
   const flags = rules.filter((r) => r.platform === undefined || r.platform === facts.platform.platform)
-    .flatMap((rule) => flagsOfRule(facts, rule, own, summaries));
+    .flatMap((rule) => flagsOfRule(facts, rule, rules, own, summaries));
   return withoutEchoes(flags).sort((a, b) =>
     SEVERITY_ORDER[a.severity] - SEVERITY_ORDER[b.severity] || order.get(a.rule)! - order.get(b.rule)! ||
     compareIds(a.id, b.id)
   );
 }
 
-function flagsOfRule(facts: LotFacts, rule: Rule, own: LotSummary, all: readonly LotSummary[]): Flag[] {
+function flagsOfRule(
+  facts: LotFacts,
+  rule: Rule,
+  rules: readonly Rule[],
+  own: LotSummary,
+  all: readonly LotSummary[],
+): Flag[] {
   switch (rule.kind) {
     case "trait_limit":
       return traitLimit(facts, rule);
@@ -70,6 +77,8 @@ function flagsOfRule(facts: LotFacts, rule: Rule, own: LotSummary, all: readonly
       return quarantined(facts, rule);
     case "lot_chart":
       return chartFlags(facts, rule, own, all);
+    case "capability":
+      return capabilityLow(facts, rule, rules);
     case "spread_growth":
       return spreadGrowth(facts, rule, earlierLots(own, all));
   }
@@ -97,7 +106,7 @@ function chartFlags(
   return [...lots, ...wafers.filter((f) => !whole(f.evidence.numbers.series))];
 }
 
-/** A wafer that is beyond a limit need not be told to differ from its twins, or from earlier wafers, in the same trait as well. */
+/** A wafer that is beyond a limit need not be told to differ from others, or to be incapable, in the same trait as well. */
 function withoutEchoes(flags: readonly Flag[]): Flag[] {
   const key = (f: Flag) => `${f.scope}|${f.id}|${f.evidence.numbers.trait}`;
   const rank = ({ evidence: { numbers } }: Flag): number =>
@@ -107,6 +116,8 @@ function withoutEchoes(flags: readonly Flag[]): Flag[] {
       ? 1
       : numbers.z !== undefined && numbers.centre !== undefined
       ? 2
+      : numbers.cpk !== undefined
+      ? 3
       : -1;
   const first = new Map<string, number>();
   for (const f of flags) {

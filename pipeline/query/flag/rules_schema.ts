@@ -101,6 +101,13 @@ const KINDS = [
       severity,
     ),
   }),
+  kind("capability", {
+    /** Flagged when the whole 95 % interval of cpk lies below. */
+    cpk_at_least: z.number().positive().max(10),
+    severity,
+    /** Watched when it lies below this. */
+    watch_below: z.number().min(0).max(10),
+  }),
   kind("spread_growth", { traits, alpha: share, least_ratio: z.number().min(1), severity }),
 ] as const;
 

@@ -15,13 +15,18 @@ import {
 import { suspectsOfDies } from "./suspects_of.ts";
 import { type Flag, mergeRefs, num, plural } from "./types.ts";
 
-interface Limit {
+export interface Limit {
   readonly side: "above" | "below";
   readonly at: number;
   readonly words: string;
 }
 
-function limitsOf(rule: RuleOf<"trait_limit">, { trait, polarisation }: Series, facts: LotFacts): Limit[] {
+/** The limits that a rule sets for a series; those around the platform's default only where it has one. */
+export function limitsOf(
+  rule: RuleOf<"trait_limit">,
+  { trait, polarisation }: Series,
+  facts: LotFacts,
+): Limit[] {
   const out: Limit[] = [];
   const unit = unitOf(trait);
   if (rule.at_most !== undefined) {
