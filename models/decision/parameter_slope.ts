@@ -6,6 +6,8 @@ import {
   PROCESS_PARAMETERS,
   type ProcessParameter,
   type SolverIndexModel,
+  type WidthScan,
+  widthSlopes,
 } from "../guides/mod.ts";
 import type { GuideGeometry, Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import type { PlatformModel } from "./platform_model.ts";
@@ -51,35 +53,61 @@ export interface NonCriticalWidth {
   readonly curvature: number;
 }
 
-/**
- * Non-critical widths, ascending; within the index's limits for this design. None: width errors count everywhere.
- */
+/** Non-critical widths, ascending, and the widths that were looked through. None: width errors count everywhere. */
+export interface NonCriticalWidths {
+  readonly widths: NonCriticalWidth[];
+  /** µm; null where the index does not depend on the width. */
+  readonly range_um: readonly [number, number] | null;
+  /** Why no narrower widths were looked through, or null. */
+  readonly cutOff: string | null;
+}
+
+/** Non-critical widths within the index's limits for this design or, with a scan of a solved one, as far as it goes. */
 export function nonCriticalWidths(
   model: PlatformModel,
   point: SlopePoint,
-): { readonly widths: NonCriticalWidth[]; readonly range_um: readonly [number, number] | null } {
+  scan?: WidthScan,
+): NonCriticalWidths {
+  if (scan !== undefined && scan.guided.length > 0) {
+    const { slope, curvature } = widthSlopes(scan);
+    const widths = turningPoints(slope, scan.widths_um).map((w) => ({
+      width_um: w,
+      curvature: curvature(w),
+    }));
+    return { widths, range_um: scan.widths_um, cutOff: scan.cutOff };
+  }
   const { waves, geometry } = point;
   const limits = [waves.polP, waves.polS, waves.polI].map((pol) => model.index.range(pol, geometry).width_um);
-  if (limits.some((l) => l === undefined)) return { widths: [], range_um: null };
+  if (limits.some((l) => l === undefined)) return { widths: [], range_um: null, cutOff: null };
   const low = Math.max(...limits.map((l) => l![0]));
   const high = Math.min(...limits.map((l) => l![1]));
   const per = (width_um: number) =>
     parameterSlope(model, { ...point, geometry: { ...geometry, width_um } }, "width_um");
-  const at = (k: number) => low + (high - low) * k / WIDTH_STEPS;
-  const widths: NonCriticalWidth[] = [];
-  for (let k = 0; k < WIDTH_STEPS; k++) {
-    let [a, b] = [at(k), at(k + 1)];
-    const left = per(a);
-    if (left * per(b) > 0) continue;
-    while (b - a > 1e-6) {
-      const middle = (a + b) / 2;
-      if (left * per(middle) > 0) a = middle;
-      else b = middle;
-    }
-    const width_um = (a + b) / 2;
+  const widths = turningPoints(per, [low, high]).map((width_um) => {
     const from = Math.max(low, width_um - CURVED_OVER);
     const to = Math.min(high, width_um + CURVED_OVER);
-    widths.push({ width_um, curvature: (per(to) - per(from)) / (to - from) });
+    return { width_um, curvature: (per(to) - per(from)) / (to - from) };
+  });
+  return { widths, range_um: [low, high], cutOff: null };
+}
+
+/** Zeros of a slope, each between two of the steps that its range is looked through in. */
+function turningPoints(
+  slope: (width_um: number) => number,
+  [low, high]: readonly [number, number],
+): number[] {
+  const at = (k: number) => low + (high - low) * k / WIDTH_STEPS;
+  const found: number[] = [];
+  for (let k = 0; k < WIDTH_STEPS; k++) {
+    let [a, b] = [at(k), at(k + 1)];
+    const left = slope(a);
+    if (left * slope(b) > 0) continue;
+    while (b - a > 1e-6) {
+      const middle = (a + b) / 2;
+      if (left * slope(middle) > 0) a = middle;
+      else b = middle;
+    }
+    found.push((a + b) / 2);
   }
-  return { widths, range_um: [low, high] };
+  return found;
 }

@@ -1,4 +1,4 @@
-import { csvText, textTable } from "../console/mod.ts";
+import { textTable } from "../console/mod.ts";
 import { canonicalProcess } from "../../models/guides/mod.ts";
 import { InputError } from "../../shared/errors.ts";
 import { nm } from "../../shared/units.ts";
@@ -7,10 +7,10 @@ import {
   askedBy,
   type AskedDesign,
   changedModels,
-  type DesignSensitivity,
   designsFor,
   sensitivityOf,
   type SensitivityQuestion,
+  widthScans,
 } from "../designs/mod.ts";
 import { type Ledger, openLedger } from "../ledger/mod.ts";
 import { OutOfDate } from "../out_of_date.ts";
@@ -20,6 +20,7 @@ import { loadDesign, lotsOf } from "../records.ts";
 import { findRequest, type LoadedRequest } from "../requests.ts";
 import { type CommonOptions, print, printJson, threadsOf } from "./common.ts";
 import { solvingProgress } from "./predictions.ts";
+import { csvDesigns } from "./sensitivity_csv.ts";
 import { sensitivityText } from "./sensitivity_text.ts";
 
 export interface SensitivityCommandOptions extends CommonOptions {
@@ -52,6 +53,8 @@ export async function sensitivityCommand(subject: string, options: SensitivityCo
     const loaded = await loadPlatform(asked.platform, options.platforms);
     if (asked.request !== null) checkRange(asked.request, loaded);
     const widths = asked.designs.flatMap((d) => d.width_um ?? []);
+    const of = asked.lot ?? asked.platform;
+    const solving = (what: string) => solvingProgress(what, ledger !== null);
     const { designs } = await designsFor(
       ledger,
       loaded,
@@ -62,15 +65,18 @@ export async function sensitivityCommand(subject: string, options: SensitivityCo
         onSolving: solvingProgress(asked.lot ?? asked.platform, ledger !== null),
       },
     );
-    const changed = await changedModels(ledger, loaded, widths, asked.waves, {
-      workers: threadsOf(options),
-      onSolving: solvingProgress(`the slightly changed ${asked.lot ?? asked.platform}`, ledger !== null),
+    const setting = { workers: threadsOf(options), onSolving: solving(`the slightly changed ${of}`) };
+    const changed = await changedModels(ledger, loaded, widths, asked.waves, setting);
+    const scans = await widthScans(ledger, loaded, widths, asked.waves, {
+      ...setting,
+      onSolving: solving(`the wider and narrower ${of}`),
     });
     const question: SensitivityQuestion = {
       model: buildModel({ ...loaded, designs }),
       platform: loaded.platform,
       designs,
       changed,
+      widths: scans,
       waves: asked.waves,
       process: asked.process,
       oven: asked.oven,
@@ -223,36 +229,3 @@ function wavesOf({ process, wavelength }: SensitivityCommandOptions): ThreeWaves
 }
 
 const processText = ({ polP, polS, polI }: ThreeWaves): string => `${polP}>${polS}+${polI}`;
-
-function csvDesigns(designs: readonly DesignSensitivity[]): string {
-  const titles = [
-    "width_um",
-    "period_um",
-    "operating_temperature_c",
-    "matched",
-    "parameter",
-    "by",
-    "mismatch_per_m",
-    "centre_nm",
-    "temperature_c",
-    "efficiency_percent",
-    "purity",
-    "reason",
-  ];
-  const rows = designs.flatMap((d) => {
-    const common = [d.width_um, d.period_um, d.temperature_c, d.matched];
-    if (d.reason !== null) return [[...common, ...new Array(7).fill(null), d.reason]];
-    return d.rows.map((r) => [
-      ...common,
-      r.parameter,
-      r.by,
-      r.mismatch_per_m,
-      r.centre_nm,
-      r.temperature_c,
-      r.efficiency_percent,
-      r.purity,
-      null,
-    ]);
-  });
-  return csvText(titles, rows);
-}

@@ -123,11 +123,14 @@ function designText(
 }
 
 /** Where the width does not count to first order, and what is left of an error there. */
-function nonCriticalLines({ non_critical_widths, widths_searched_um }: DesignSensitivity): string[] {
+function nonCriticalLines(
+  { non_critical_widths, widths_searched_um, widths_cut_off }: DesignSensitivity,
+): string[] {
   if (widths_searched_um === null) return [];
-  const [low, high] = widths_searched_um.map(short);
+  const [low, high] = widths_searched_um.map((w) => short(Number(w.toFixed(2))));
+  const narrower = widths_cut_off === null ? "" : ` ${widths_cut_off}.`;
   if (non_critical_widths.length === 0) {
-    return wrap(`No width from ${low} to ${high} µm is non-critical (∂Δβ/∂width = 0).`, WIDTH);
+    return wrap(`No width from ${low} to ${high} µm is non-critical (∂Δβ/∂width = 0).${narrower}`, WIDTH);
   }
   const found = non_critical_widths.map(({ width_um, by, mismatch_per_m, temperature_c }) =>
     `${width_um.toFixed(2)} µm, where ±${by} µm leaves ${signed(mismatch_per_m)} 1/m to second order${
@@ -135,7 +138,9 @@ function nonCriticalLines({ non_critical_widths, widths_searched_um }: DesignSen
     }`
   );
   return wrap(
-    `Non-critical width (∂Δβ/∂width = 0): ${found.join("; ")}; looked for from ${low} to ${high} µm.`,
+    `Non-critical width (∂Δβ/∂width = 0): ${
+      found.join("; ")
+    }; looked for from ${low} to ${high} µm.${narrower}`,
     WIDTH,
   );
 }

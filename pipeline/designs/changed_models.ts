@@ -11,6 +11,7 @@ import {
   type PolarisationTable,
   type SolverDesign,
   TABLE_GRID,
+  type WidthScan,
 } from "../../models/guides/mod.ts";
 import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import type { Ledger } from "../ledger/mod.ts";
@@ -67,4 +68,28 @@ export async function changedModels(
       changed.map(({ parameter, by, design }) => ({ parameter, by, model: modelOf(design) })),
     ]),
   );
+}
+
+/** Widths are looked through from and to these multiples of the drawn one. */
+const WIDTHS_FROM = 0.5;
+const WIDTHS_TO = 2;
+
+/** How Δβ follows the width far beyond a design's table, per drawn width (µm). Otherwise as {@link changedModels}. */
+export async function widthScans(
+  ledger: Ledger | null,
+  { platform }: LoadedPlatform,
+  widths_um: readonly number[],
+  waves: ThreeWaves,
+  setting: SolveSetting = {},
+): Promise<ReadonlyMap<number, WidthScan>> {
+  const { index } = platform;
+  if (index.from !== "solver") return new Map();
+  const tasks = widths_um.map((width): DesignTask => ({
+    kind: "widths",
+    design: platformDesign(platform, index, width),
+    waves,
+    range_um: [WIDTHS_FROM * width, WIDTHS_TO * width],
+  }));
+  const { results } = await piecesFor(ledger, platform.platform, tasks, setting);
+  return new Map(widths_um.map((width, k) => [width, results[k] as WidthScan]));
 }

@@ -1,19 +1,17 @@
 import {
-  type GuideInputs,
   matchingPeriod,
   nonCriticalWidths,
   type NudgeEffect,
   nudgeEffects,
   operatingPoints,
-  type PlatformModel,
-  predictGuide,
   validTemperatures,
 } from "../../models/decision/mod.ts";
-import { diffusionRemarks, GEOMETRY_PARAMETERS } from "../../models/guides/mod.ts";
+import { diffusionRemarks, GEOMETRY_PARAMETERS, type WidthScan } from "../../models/guides/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import { mm, toNm, um } from "../../shared/units.ts";
 import type { GuideGeometry, Process } from "../../shared/vocabulary.ts";
 import type { ChangedModel } from "./changed_models.ts";
+import { idealPurity } from "./ideal_purity.ts";
 import { type FactsQuestion, type ModeFacts, waveFacts } from "./mode_facts.ts";
 
 /** What one error does, in the units of output. */
@@ -54,6 +52,8 @@ export interface DesignSensitivity {
   readonly non_critical_widths: readonly NonCritical[];
   /** Widths that were looked through; null where the index does not depend on the width. */
   readonly widths_searched_um: readonly [number, number] | null;
+  /** Why narrower widths were not looked through, or null. */
+  readonly widths_cut_off: string | null;
   readonly waves: readonly ModeFacts[];
   /** What lies beyond a published range, is an estimate, or carries more modes than the one computed. */
   readonly remarks: readonly string[];
@@ -72,6 +72,8 @@ export interface SensitivityQuestion extends FactsQuestion {
   readonly platform: Platform;
   /** The platform with its process off, per drawn width (µm). */
   readonly changed: ReadonlyMap<number, readonly ChangedModel[]>;
+  /** How Δβ follows the width, per drawn width (µm). */
+  readonly widths: ReadonlyMap<number, WidthScan>;
   readonly process: Process;
   /** Oven of the request (°C), or one temperature twice. */
   readonly oven: readonly [number, number];
@@ -85,6 +87,7 @@ export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign
     width_um: design.width_um,
     non_critical_widths: [],
     widths_searched_um: null,
+    widths_cut_off: null,
     waves: [],
     remarks: [],
   };
@@ -105,7 +108,7 @@ export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign
   const found = operatingPoint(question, design, geometry, [low, high]);
   const point = { waves, process, geometry, temperatureC: found.temperatureC };
   const period_um = found.period_um ?? matchingPeriod(model, point) * 1e6;
-  const purityAt = purityOf(question, design);
+  const purityAt = idealPurity(question.request, design.poled_length_mm);
   const purity = purityAt(model, geometry, period_um);
   const changed = changedOf(question, design);
   const effects = nudgeEffects(model, point, changed);
@@ -121,7 +124,8 @@ export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign
     const other = changed.find((c) => c.parameter === parameter && c.by === by);
     return other === undefined ? null : purityAt(other.model, geometry, period_um);
   };
-  const { widths, range_um } = nonCriticalWidths(model, point);
+  const scan = design.width_um === null ? undefined : question.widths.get(design.width_um);
+  const { widths, range_um, cutOff } = nonCriticalWidths(model, point, scan);
   const perKelvin = effects.find((e) => e.parameter === "temperature_c")?.deltaBeta ?? 0;
   return {
     width_um: design.width_um,
@@ -151,6 +155,7 @@ export function sensitivityOf(question: SensitivityQuestion, design: AskedDesign
       };
     }),
     widths_searched_um: range_um,
+    widths_cut_off: cutOff,
     waves: waveFacts(question, geometry, found.temperatureC),
     remarks: remarksOf(question, geometry, found.temperatureC),
     reason: null,
@@ -220,38 +225,4 @@ function operatingPoint(
     if (matched) return { temperatureC, matched, period_um };
   }
   return { temperatureC: middle, matched: false, period_um: design.periods_um[0]! };
-}
-
-/** Purity of an ideal, lossless grating in a guide of some platform and geometry; null where the request has none. */
-function purityOf({ request }: SensitivityQuestion, design: AskedDesign) {
-  return (model: PlatformModel, geometry: GuideGeometry, period_um: number): number | null => {
-    if (request === null || request.request.process !== "pair-generation" || !request.pulsed) return null;
-    const exact = (value: number, key: string) => ({ value, u: 0, basis: "platform" as const, key });
-    const arm = {
-      loss: exact(0, "loss"),
-      mode: { reason: "not asked" },
-      facet: { state: "bare" as const, basis: "platform" as const },
-    };
-    const inputs: GuideInputs = {
-      id: "design",
-      geometry,
-      geometryErrors: [],
-      length: mm(design.poled_length_mm),
-      period: um(period_um),
-      poledFrom: 0,
-      poledLength: mm(design.poled_length_mm),
-      pumpLoss: exact(0, "loss"),
-      signal: arm,
-      idler: arm,
-      poling: {
-        from: "duty",
-        duty: exact(0.5, "duty"),
-        dutySd: exact(0, "duty_sd"),
-        merged: exact(0, "merged"),
-      },
-      offset: null,
-    };
-    const { figures } = predictGuide(model, request, inputs, { recorded: request.spectrum });
-    return figures.find((f) => f.figure === "purity")?.mean ?? null;
-  };
 }

@@ -39,7 +39,7 @@ export async function solveTasks(
 
 /** A thread takes half a second to start: so many light pieces are worth one. */
 const LIGHT_PER_THREAD = 8;
-const weight = (task: DesignTask): number => task.kind === "modes" ? 2 : task.kind === "areas" ? 1 : 0;
+const weight = ({ kind }: DesignTask): number => kind === "modes" ? 2 : kind === "output" ? 0 : 1;
 
 function ask(worker: Worker, question: ToSolver): Promise<TaskResult> {
   return new Promise((resolve, reject) => {

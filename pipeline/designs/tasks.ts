@@ -9,7 +9,9 @@ import {
   solveOutput,
   solvePolarisation,
   type SolverDesign,
+  solveWidths,
   type TableGrid,
+  type WidthScan,
 } from "../../models/guides/mod.ts";
 import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
 import { sha256 } from "../json_file.ts";
@@ -20,6 +22,7 @@ export type DesignTask =
   & (
     | { readonly kind: "modes"; readonly pol: Polarisation }
     | { readonly kind: "areas"; readonly waves: ThreeWaves }
+    | { readonly kind: "widths"; readonly waves: ThreeWaves; readonly range_um: readonly [number, number] }
     | {
       readonly kind: "output";
       readonly pol: Polarisation;
@@ -33,23 +36,29 @@ export type TaskResult =
   | PolarisationTable
   | { readonly reason: string }
   | DesignAreas
+  | WidthScan
   | DesignOutput
   | CutOff;
 
 /** Hash of everything that a piece's result depends on, the solver's version among it. */
 export function taskKey(task: DesignTask, grid: TableGrid): string {
-  const own = task.kind === "modes" ? [task.pol] : task.kind === "areas"
-    ? [
-      task.waves.lambdaP,
-      task.waves.lambdaS,
-      task.waves.lambdaI,
-      task.waves.polP,
-      task.waves.polS,
-      task.waves.polI,
-    ]
-    : [task.pol, task.lambda, task.temperatureC, task.fibres];
-  return sha256(JSON.stringify([task.kind, designKey(task.design, grid), own]));
+  return sha256(JSON.stringify([task.kind, designKey(task.design, grid), ownKey(task)]));
 }
+
+function ownKey(task: DesignTask): unknown[] {
+  switch (task.kind) {
+    case "modes":
+      return [task.pol];
+    case "areas":
+      return wavesKey(task.waves);
+    case "widths":
+      return [...wavesKey(task.waves), ...task.range_um];
+    case "output":
+      return [task.pol, task.lambda, task.temperatureC, task.fibres];
+  }
+}
+
+const wavesKey = (w: ThreeWaves) => [w.lambdaP, w.lambdaS, w.lambdaI, w.polP, w.polS, w.polI];
 
 /** Solves one piece. @throws RangeError for impossible parameters, or where the crystal has no index */
 export function runTask(task: DesignTask, grid: TableGrid): TaskResult {
@@ -58,6 +67,8 @@ export function runTask(task: DesignTask, grid: TableGrid): TaskResult {
       return solvePolarisation(task.design, task.pol, grid);
     case "areas":
       return solveAreas(task.design, task.waves, grid);
+    case "widths":
+      return solveWidths(task.design, task.waves, task.range_um, grid);
     case "output":
       return solveOutput(task.design, task.pol, task.lambda, task.temperatureC, task.fibres, grid);
   }

@@ -191,7 +191,7 @@ export function solvePolarisation(
 }
 
 /** Nearer to the substrate than this the index bends too sharply over wavelength for a table. */
-const SAFE_EXCESS = 1e-4;
+export const SAFE_EXCESS = 1e-4;
 const confined = (mode: SolvedMode | CutOff): boolean => !mode.cutOff && mode.excess >= SAFE_EXCESS;
 
 /** ∂(n_eff − n_bulk)/∂n_bulk of a solved mode. */

@@ -52,3 +52,4 @@ export {
   titaniumRemarks,
   titaniumSection,
 } from "./titanium_section.ts";
+export { solveWidths, type WidthScan, widthSlopes } from "./width_scan.ts";
