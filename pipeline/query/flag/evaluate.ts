@@ -12,7 +12,7 @@ import {
 } from "./prediction_rules.ts";
 import { capabilityLow } from "./capability.ts";
 import { coatingOffTarget, coatingUnknown } from "./coating_rules.ts";
-import { quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
+import { contradicted, quarantined, readingRemarks, unlistedCut } from "./reading_rules.ts";
 import { periodOff } from "./period_rule.ts";
 import { repeatedReadings, scanResidual } from "./residual_rules.ts";
 import type { Rule, RuleOf } from "./rules.ts";
@@ -65,6 +65,8 @@ function flagsOfRule(
       return scanResidual(facts, rule);
     case "reading_remarks":
       return readingRemarks(facts, rule);
+    case "contradiction":
+      return contradicted(facts, rule);
     case "repeated_readings":
       return repeatedReadings(facts, rule);
     case "outcome_residual":

@@ -1,9 +1,10 @@
+import type { Analyses } from "./analyses.ts";
 import type { FoundPeriod } from "./period.ts";
 import type { Platform } from "../../../shared/schemas/platform.ts";
 import type { CheckedRequest } from "../../../shared/schemas/request.ts";
-import type { Basis } from "../../../shared/vocabulary.ts";
+import type { Basis, Polarisation } from "../../../shared/vocabulary.ts";
 import type { CoatingRecord, GuideRecord, LotDesign, Source } from "../../records.ts";
-import type { ReduceRemark, TraitName, TraitRow } from "../../traits/trait_row.ts";
+import type { ReadingRef, ReduceRemark, TraitName, TraitRow } from "../../traits/trait_row.ts";
 
 /** Traits that rules may name. */
 export const TRAIT_NAMES = [
@@ -78,6 +79,47 @@ export interface FigureFact {
   readonly reason: string | null;
 }
 
+/** A reading that the others of its trait contradict. */
+export interface ContradictionFact {
+  readonly trait: string;
+  readonly wavelength_nm: number | null;
+  readonly polarisation: Polarisation | null;
+  readonly process: string | null;
+  /** Full id of the guide, die or wafer that was read. */
+  readonly unit: string;
+  readonly value: number;
+  readonly expected: number;
+  readonly u_expected: number;
+  readonly standardised: number;
+  readonly p: number;
+  readonly readings: readonly ReadingRef[];
+}
+
+/** A guide that stands for a die and is not accepted, with one group of traits at target; `all` is every group. */
+export interface RestoredFact {
+  readonly wafer: string;
+  readonly die_id: string;
+  readonly guide_id: string;
+  readonly trait_group: string;
+  readonly probability_as_made: number;
+  readonly probability_restored: number;
+  readonly decision_as_made: string;
+  readonly decision_restored: string;
+}
+
+/** A reading that could be taken on a guide, and what it would decide; place 1 is worth most. */
+export interface NextReadingFact {
+  readonly die_id: string;
+  readonly guide_id: string;
+  readonly place: number;
+  readonly kind: string;
+  readonly trait: string;
+  readonly wavelength_nm: number | null;
+  readonly polarisation: Polarisation | null;
+  readonly reduction: number;
+  readonly p_hold: number;
+}
+
 /** What was predicted of a lot for one request. */
 export interface PredictionFacts {
   /** True when the user named this request. */
@@ -86,6 +128,7 @@ export interface PredictionFacts {
   readonly decisions: readonly DecisionFact[];
   /** Guide → figure → prediction, for the figures that rules look at. */
   readonly figures: ReadonlyMap<string, ReadonlyMap<string, FigureFact>>;
+  readonly analyses: Analyses;
 }
 
 /** Everything that the rules look at, of one lot. */

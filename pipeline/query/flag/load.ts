@@ -20,6 +20,7 @@ import type {
   WaferFact,
   YieldSummary,
 } from "./facts.ts";
+import { loadAnalyses } from "./analyses.ts";
 import { foundPeriods } from "./period.ts";
 import { dieVerdicts } from "./verdicts.ts";
 import { seriesOf, summaryOf } from "./series.ts";
@@ -88,7 +89,8 @@ async function loadPredictions(
   if (runs.length === 0) return [];
   using engine = await engineWith(ledger, ["decisions", "figures"], { lots: [lot] });
   const decisions = decisionsOf(engine);
-  return runs.map((run) => {
+  const analyses = await Promise.all(runs.map((run) => loadAnalyses(ledger, run)));
+  return runs.map((run, k) => {
     const checked = definitionOf(run);
     const { request } = checked.request;
     const wanted = new Set<string>([
@@ -101,6 +103,7 @@ async function loadPredictions(
       named: requests?.includes(request) ?? false,
       decisions: decisions.get(request) ?? [],
       figures: figuresOf(engine, request, [...wanted]),
+      analyses: analyses[k]!,
     };
   });
 }

@@ -1,8 +1,10 @@
 import { waferOf } from "../../../shared/ids.ts";
-import type { ReadingRef } from "../../traits/trait_row.ts";
-import type { LotFacts } from "./facts.ts";
+import type { ReadingRef, TraitName } from "../../traits/trait_row.ts";
+import type { ContradictionFact, LotFacts } from "./facts.ts";
 import type { RuleOf, Severity } from "./rules.ts";
-import { type Flag, mergeRefs, plural } from "./types.ts";
+import { seriesWords, unitOf } from "./series.ts";
+import { type Flag, mergeRefs, num, plural, pText, refText } from "./types.ts";
+import { inPlay } from "./verdicts.ts";
 
 /** Findings of the reduction: readings that contradict others or what is possible; one flag per unit and kind. */
 export function readingRemarks(facts: LotFacts, rule: RuleOf<"reading_remarks">): Flag[] {
@@ -93,6 +95,50 @@ export function unlistedCut(facts: LotFacts, rule: RuleOf<"unlisted_cut">): Flag
     },
     suspects: [],
   }));
+}
+
+/** Readings that the other readings of their trait contradict; each is told once, whatever rests on it. */
+export function contradicted(facts: LotFacts, rule: RuleOf<"contradiction">): Flag[] {
+  const found = new Map<string, ContradictionFact>();
+  for (const c of inPlay(facts).flatMap((p) => p.analyses.contradictions)) {
+    const wave = c.wavelength_nm === null ? "" : Math.round(c.wavelength_nm);
+    const key = [c.trait, c.unit, wave, c.polarisation, c.process].join("|");
+    const held = found.get(key);
+    if (held === undefined || c.p < held.p) found.set(key, c);
+  }
+  return [...found.values()].map((c) => {
+    const unit = unitOf(c.trait);
+    const words = seriesWords({ ...c, trait: c.trait as TraitName });
+    const lines = c.readings.map((r) => refText(r, 3));
+    return {
+      ...scopeOf(c.unit),
+      lot: facts.lot,
+      rule: rule.rule,
+      severity: rule.severity,
+      brief: `${c.unit}: its ${words} contradicts the other readings`,
+      statement: `${c.unit}: its ${words} was read as ${num(c.value)}${unit} (${
+        lines.slice(0, 3).join("; ")
+      }${
+        lines.length > 3 ? ` and ${lines.length - 3} more files` : ""
+      }); the other readings lead one to expect ${num(c.expected)} ± ${num(c.u_expected, 2)}${unit}, ${
+        num(Math.abs(c.standardised), 2)
+      } times that u away (${pText(c.p)}); it stays in use until it is read again or taken out`,
+      evidence: {
+        numbers: {
+          trait: c.trait,
+          wavelength_nm: c.wavelength_nm,
+          value: c.value,
+          expected: c.expected,
+          u_expected: c.u_expected,
+          standardised: c.standardised,
+          p_value: c.p,
+        },
+        readings: mergeRefs(c.readings),
+        ...(c.unit.split("/").length === 3 ? { guides: [c.unit] } : {}),
+      },
+      suspects: [],
+    };
+  });
 }
 
 /** Rows that were kept aside. */

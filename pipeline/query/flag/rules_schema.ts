@@ -83,6 +83,7 @@ const KINDS = [
     severity_beyond_platform: severity,
   }),
   kind("reading_remarks", { codes: z.record(z.string(), severity) }),
+  kind("contradiction", { severity }),
   kind("repeated_readings", { traits, k: multiple, severity }),
   kind("outcome_residual", { k: multiple, severity }),
   kind("unlisted_cut", { severity }),

@@ -21,6 +21,8 @@ const REQUEST = checkRequest(requestSchema.parse({
   require: [{ figure: "efficiency_percent_per_w", at_least: 80 }],
 })) as CheckedRequest;
 
+const NO_ANALYSES = { contradictions: [], restored: [], nextReadings: [] };
+
 /** Predictions of a lot, guide by guide. */
 function predicted(
   facts: LotFacts,
@@ -51,7 +53,10 @@ function predicted(
   const figures = new Map(
     facts.design.guides.map((g) => [g.guide_id, new Map([["efficiency_percent_per_w", value]])]),
   );
-  return { ...facts, predictions: [{ checked: REQUEST, named: false, decisions, figures }] };
+  return {
+    ...facts,
+    predictions: [{ checked: REQUEST, named: false, decisions, figures, analyses: NO_ANALYSES }],
+  };
 }
 
 Deno.test("a lossy wafer is flagged with its numbers and lines, and the one step that differs is suspected", () => {
@@ -369,6 +374,41 @@ Deno.test("readings, outcomes and records that contradict each other are flagged
   );
   match(flags.get("rows-aside")!.statement, /1 of 1000 rows/);
   match(flags.get("period-off")!.statement, /has 16\.5 µm .* drawn 17 µm/);
+});
+
+Deno.test("a reading that the others contradict is named by file and line, once, with the numbers", () => {
+  const facts = predicted(simulatedLot(12), () => ({}));
+  const contradiction = {
+    trait: "loss_db_cm",
+    wavelength_nm: 1550.2,
+    polarisation: "TM" as const,
+    process: null,
+    unit: "L012-1/03/g1",
+    value: 0.94,
+    expected: 0.213,
+    u_expected: 0.041,
+    standardised: 17.7,
+    p: 1e-9,
+    readings: [{
+      table: "cutback",
+      file_name: "readings/cutback.csv",
+      source_file: SOURCE.source_file,
+      lines: [[31, 33], [40, 40]] as const,
+    }],
+  };
+  const [of] = facts.predictions;
+  const other = { ...contradiction, wavelength_nm: 1549.9, p: 1e-8 };
+  const twice = { ...of!, analyses: { ...NO_ANALYSES, contradictions: [contradiction, other] } };
+  const [flag, ...none] = flagsOf({ ...facts, predictions: [twice] }, only("contradiction"), []);
+  deepEqual(none, [], "told once for both requests' wavelengths");
+  deepEqual([flag!.scope, flag!.id, flag!.severity], ["wafer", "L012-1", "watch"]);
+  equal(
+    flag!.statement,
+    "L012-1/03/g1: its loss at 1550 nm TM was read as 0.94 dB/cm (readings/cutback.csv:31–33, 40); the other readings " +
+      "lead one to expect 0.213 ± 0.041 dB/cm, 18 times that u away (p < 0.0001); it stays in use until it is read again or taken out",
+  );
+  deepEqual(flag!.evidence.readings[0]!.lines, [[31, 33], [40, 40]]);
+  deepEqual(flagsOf(facts, only("contradiction"), []), []);
 });
 
 Deno.test("scans that all lie on one side speak about the platform file", () => {
