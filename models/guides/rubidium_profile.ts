@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 // Rubidium-exchanged KTP: a box sideways, a complementary error function in depth (J. D. Bierlein, A. Ferretti,
-// L. H. Brixner & W. Y. Hsu, Appl. Phys. Lett. 50, 1216 (1987); from memory). Index steps of 0.01 to 0.02 are usual.
+// L. H. Brixner & W. Y. Hsu, Appl. Phys. Lett. 50, 1216 (1987); from memory).
 import cdf from "@stdlib/stats-base-dists-normal-cdf";
 import { gradedIndex, type GradedMode, gradedMode, type GradedProfile } from "./graded_mode.ts";
 import type { SeparableMode } from "./effective_index.ts";

@@ -7,7 +7,7 @@ import { propagationAxis } from "../propagation_axis.ts";
 import { countModes, type ModeCount } from "./count_modes.ts";
 import type { GuideSection } from "./cross_section.ts";
 import type { FieldKind } from "./mode_matrix.ts";
-import { rubidiumSection } from "./rubidium_section.ts";
+import { rubidiumRemarks, rubidiumSection } from "./rubidium_section.ts";
 import { type CutOff, type SolvedMode, solveGuide, type SolveOptions } from "./solve_guide.ts";
 import { titaniumRemarks, titaniumSection } from "./titanium_section.ts";
 
@@ -163,8 +163,13 @@ export function designModeCount(
   return countModes(section, lambda, { field: designField(design, pol, lambda, temperatureC) });
 }
 
-/** Sentences about a wavelength (m) at which the profile's law was not published; none inside its range. */
-export function designRemarks(design: SolverDesign, lambda: number): string[] {
-  const { process, geometry } = design;
-  return process.profile === "titanium-diffused" ? titaniumRemarks(stripeOf(process, geometry), lambda) : [];
+/** Sentences about a wavelength (m) or a process that the profile's law was not published for; none inside its range. */
+export function designRemarks(
+  { process, geometry }: SolverDesign,
+  pol: Polarisation,
+  lambda: number,
+): string[] {
+  return process.profile === "titanium-diffused"
+    ? titaniumRemarks(stripeOf(process, geometry), lambda)
+    : rubidiumRemarks(process.index_step[pol], pol);
 }

@@ -42,7 +42,7 @@ export type { ModeField } from "./mode_field.ts";
 export type { FieldKind } from "./mode_matrix.ts";
 export { type ModeShape, modeShape } from "./mode_shape.ts";
 export { ModesCutOff } from "./modes_cut_off.ts";
-export { rubidiumSection } from "./rubidium_section.ts";
+export { rubidiumRemarks, rubidiumSection } from "./rubidium_section.ts";
 export { type CutOff, DEFAULT_CELLS, type SolvedMode, solveGuide, type SolveOptions } from "./solve_guide.ts";
 export { type SolverIndexModel, solverIndexModel } from "./solver_index.ts";
 export { threeWaveArea } from "./three_wave_area.ts";

@@ -1,6 +1,8 @@
 // Pure: no I/O, no clock, no hidden randomness.
 // Rubidium-exchanged guide → cross-section for the solver: a box sideways, a complementary error function in depth.
+import { USUAL_STEP } from "../rubidium_constants.ts";
 import { erfc, type ExchangedGuide } from "../rubidium_profile.ts";
+import type { Polarisation } from "../../../shared/vocabulary.ts";
 import { coveredContrast, type GuideSection } from "./cross_section.ts";
 
 /**
@@ -29,4 +31,12 @@ export function rubidiumSection(guide: ExchangedGuide): GuideSection {
     scaleX: half,
     scaleY: depth / 2,
   };
+}
+
+/** A sentence for an index step of a polarisation that is not a usual one; none otherwise. */
+export function rubidiumRemarks(step: number, pol: Polarisation): string[] {
+  const [from, to] = USUAL_STEP;
+  return step >= from && step <= to ? [] : [
+    `beyond_published_range: index step ${step} for ${pol} (${from} to ${to} are usual of rubidium-exchanged KTP, from memory)`,
+  ];
 }

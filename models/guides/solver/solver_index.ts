@@ -174,7 +174,7 @@ export function solverIndexModel(stored: DesignTable): SolverIndexModel {
     },
     remark(pol, lambda, temperatureC) {
       const bulkRemark = publishedRangeRemark(material, axes[pol], lambda, temperatureC);
-      const all = [...bulkRemark === null ? [] : [bulkRemark], ...designRemarks(design, lambda)];
+      const all = [...bulkRemark === null ? [] : [bulkRemark], ...designRemarks(design, pol, lambda)];
       return all.length === 0 ? null : all.join("\n");
     },
     cutOff(pol) {

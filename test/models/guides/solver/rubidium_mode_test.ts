@@ -1,5 +1,6 @@
 import assert from "node:assert/strict";
 import {
+  rubidiumRemarks,
   rubidiumSection,
   type SolvedMode,
   solveGuide,
@@ -34,6 +35,16 @@ Deno.test("an impossible exchange is refused with what was found", () => {
     assert.throws(
       () => rubidiumSection({ ...guide, ...part }),
       /Cannot exchange a guide: found (step|width|depth)/,
+    );
+  }
+});
+
+Deno.test("an unusual index step is said with the usual ones", () => {
+  assert.deepEqual(rubidiumRemarks(0.015, "TE"), []);
+  for (const step of [0.009, 0.03]) {
+    assert.match(
+      rubidiumRemarks(step, "TM")[0]!,
+      /beyond_published_range: index step 0\.0[0-9]+ for TM \(0\.01 to 0\.02/,
     );
   }
 });
