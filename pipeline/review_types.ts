@@ -108,6 +108,43 @@ export interface LimitRow {
   readonly wafers: readonly string[];
 }
 
+/** What the yield would be with traits at their targets. */
+export interface GainReview {
+  readonly scope: "lot" | "wafer";
+  readonly id: string;
+  /** Dies that can be shipped. */
+  readonly dies: number;
+  readonly as_made: number;
+  readonly all_at_target: number;
+  /** One group of traits at its target, the others as made; largest rise first. */
+  readonly groups: readonly {
+    readonly group: string;
+    readonly words: string;
+    /** Dies more than as made. */
+    readonly dies: number;
+    readonly yield: number;
+    readonly rise: number;
+    /** Of the whole rise; null where that is 0. Shares and the interaction's sum to 1. */
+    readonly share: number | null;
+    /** Rise of the expected number of good dies, from the probabilities. */
+    readonly expected: number;
+  }[];
+  /** What the single rises leave of the whole: above 0 several have to be put right together, below 0 either of several would do. */
+  readonly interaction: number;
+  readonly interaction_share: number | null;
+  readonly expected_all: number;
+}
+
+/** What dies on hold lack. */
+export interface MissingReading {
+  readonly request: string;
+  readonly kind: string;
+  readonly words: string;
+  readonly dies: readonly string[];
+  /** How many of them it is expected to decide. */
+  readonly decided: number;
+}
+
 export interface RequestReview {
   readonly request: string;
   readonly process: string;
@@ -125,6 +162,10 @@ export interface RequestReview {
   /** By mask group: dies with an accepted guide of the group, of those that have guides of it. */
   readonly groups: readonly (ShareOf & { readonly group: string; readonly matched: boolean })[];
   readonly limits: readonly LimitRow[];
+  readonly limits_by_wafer: readonly { readonly wafer: string; readonly limits: readonly LimitRow[] }[];
+  /** The lot first, then its wafers; empty where the prediction holds no such analysis. */
+  readonly gains: readonly GainReview[];
+  readonly missing_readings: readonly MissingReading[];
   readonly ranked: readonly RankedDie[];
   readonly budgets: readonly Budget[];
   readonly rests_on: readonly {
@@ -185,6 +226,63 @@ export interface ChartReview {
   readonly signals: readonly string[];
 }
 
+/** Means and spreads of wafers over lots; those of the reviewed lot last. */
+export interface WaferChartReview {
+  readonly key: string;
+  readonly words: string;
+  readonly unit: string;
+  readonly centre: number;
+  /** What wafers of good lots keep, from the lots before; null where those are too few. */
+  readonly limits: { readonly lower: number; readonly upper: number } | null;
+  readonly lots_before: number;
+  readonly within_sd: number;
+  readonly between_sd: number | null;
+  readonly points: readonly {
+    readonly lot: string;
+    readonly wafer: string;
+    readonly dies: number;
+    readonly mean: number;
+    /** Limits from the scatter of the dies alone (X-bar). */
+    readonly within_lower: number;
+    readonly within_upper: number;
+    readonly z: number | null;
+    /** Null for a single die. */
+    readonly s: number | null;
+    readonly s_centre: number | null;
+    readonly s_lower: number | null;
+    readonly s_upper: number | null;
+  }[];
+  readonly sentence: string;
+}
+
+export interface CapabilityReview {
+  readonly key: string;
+  readonly words: string;
+  readonly unit: string;
+  readonly rule: string;
+  readonly limits: string;
+  readonly lower: number | null;
+  readonly upper: number | null;
+  /** Null: the whole lot. */
+  readonly wafer: string | null;
+  readonly dies: number;
+  readonly effective_dies: number;
+  readonly mean: number | null;
+  readonly sd: number | null;
+  readonly cp: CapabilityIndex | null;
+  readonly cpk: CapabilityIndex | null;
+  readonly cpk_at_least: number | null;
+  /** Share of normal dies beyond the limits. */
+  readonly outside: number | null;
+  /** Why there is none. */
+  readonly refused: string | null;
+}
+export interface CapabilityIndex {
+  readonly value: number;
+  readonly lo: number;
+  readonly hi: number;
+}
+
 export interface LotYieldRow {
   readonly lot: string;
   readonly started: string | null;
@@ -241,6 +339,8 @@ export interface ReviewData {
   readonly dies: readonly DieReview[];
   readonly traits: readonly TraitReview[];
   readonly charts: readonly ChartReview[];
+  readonly wafer_charts: readonly WaferChartReview[];
+  readonly capabilities: readonly CapabilityReview[];
   readonly lots: readonly LotYieldRow[];
   /** Earlier lots that are not compared, and why, in words. */
   readonly left_out: readonly string[];

@@ -2,9 +2,11 @@ import type { ReviewData, ReviewFlag } from "../review_types.ts";
 import { budgetSection, diesSection } from "./dies_section.ts";
 import { flagsSection } from "./flags_section.ts";
 import { page } from "./frame.ts";
+import { gainsSection } from "./gains_section.ts";
 import { type Html, html } from "./html.ts";
 import { mapsSection } from "./maps_section.ts";
 import { coverageSection, methodSection, recordsSection } from "./records_section.ts";
+import { capabilitySection } from "./wafer_charts.ts";
 import { chartsSection, yieldsSection } from "./yields_section.ts";
 
 /** The review of a lot as one page that needs nothing else: no network, no script. */
@@ -13,7 +15,9 @@ export function reviewPage(data: ReviewData): string {
     ["flags", "What is out of line", flagsSection(data)],
     ["maps", "Where on the wafer", mapsSection(data)],
     ["yields", "Yields", yieldsSection(data)],
+    ["gains", "What would pay off", gainsSection(data)],
     ["charts", "Over the lots", chartsSection(data)],
+    ["capability", "Capability", capabilitySection(data.capabilities)],
     ["dies", "Which dies go where", diesSection(data)],
     ["budget", "Heralding budget", budgetSection(data)],
     ["coverage", "What was read, and what is inferred", coverageSection(data)],

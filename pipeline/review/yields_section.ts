@@ -4,6 +4,7 @@ import { type Html, html } from "./html.ts";
 import { percentText, shown } from "./numbers.ts";
 import { figure } from "./plot.ts";
 import { foldedTable, type PageTable } from "./table.ts";
+import { waferChartsPart } from "./wafer_charts.ts";
 import { requestYieldRows, YIELD_COLUMNS } from "./yield_rows.ts";
 
 export function yieldsSection(data: ReviewData): Html {
@@ -143,12 +144,13 @@ export function chartsSection(data: ReviewData): Html {
   const few = data.flags.filter((f) => f.rule === "lot-chart" && data.charts.length === 0).map((f) =>
     html`<p>${f.statement}.</p>`
   );
+  const aside = data.left_out.map((t) => html`<p class="soft">${t}.</p>`);
   if (charts.length > 0) {
     return html`
       <p
         class="soft">Individuals charts: centre and limits are those of the lots before (mean, and mean moving range over 1.128). z of the newest lot allows for limits that rest on few lots; a diamond marks a point that signals.</p>${yields}<div
-        class="pair">${charts}</div>
+        class="pair">${charts}</div>${waferChartsPart(data.wafer_charts, data.lot)}${aside}
     `;
   }
-  return html`${few}${yields}`;
+  return html`${few}${yields}${waferChartsPart(data.wafer_charts, data.lot)}${aside}`;
 }

@@ -1,5 +1,5 @@
 import { compareIds } from "../../../shared/ids.ts";
-import type { Answers, ChartReview, RequestReview, ReviewFlag } from "../../review_types.ts";
+import type { Answers, ChartReview, GainReview, RequestReview, ReviewFlag } from "../../review_types.ts";
 import { num, percent, plural } from "../flag/types.ts";
 
 /** Lots of the platform before this one. */
@@ -115,8 +115,9 @@ function behind(flags: readonly ReviewFlag[]): string[] {
   return lines;
 }
 
-/** Where most dies are lost, and what would decide those on hold. Counts of dies, not a computed repair. */
+/** What traits at target would bring, where most dies are lost, and what would decide those on hold. */
 function payOff(requests: readonly RequestReview[], flags: readonly ReviewFlag[]): string[] {
+  const rises = requests.flatMap((r) => r.gains.slice(0, 1).map((g) => `${r.request}: ${gainWords(g)}`));
   const lines = requests.flatMap((r): string[] => {
     const lost = r.ranked.filter((d) => d.unavailable === null && d.decision === "reject").map((d) => d.die);
     if (lost.length === 0) return [];
@@ -136,11 +137,47 @@ function payOff(requests: readonly RequestReview[], flags: readonly ReviewFlag[]
       }${limit}`,
     ];
   });
-  const holds = flags.filter((f) => f.rule === "coverage-thin").map((f) =>
-    `To decide what is on hold: ${f.brief}; read them`
+  const lacking = requests.filter((r) => r.missing_readings.length > 0).map((r) =>
+    `${r.request}, dies on hold for lack of: ${
+      r.missing_readings.slice(0, 3).map((m) =>
+        `${m.words} on ${plural(m.dies.length, "die")}, expected to decide ${num(m.decided, 2)}`
+      ).join("; ")
+    }`
   );
-  const all = [...lines, ...holds];
+  // Where the prediction holds no worth of readings, at least what the dies on hold rest on.
+  const told = new Set(requests.filter((r) => r.missing_readings.length > 0).map((r) => r.request));
+  const holds = flags.filter((f) =>
+    f.rule === "coverage-thin" && ![...told].some((r) => f.brief.endsWith(` ${r}`))
+  )
+    .map((f) => `To decide what is on hold: ${f.brief}; read them`);
+  const all = [...rises, ...lines, ...lacking, ...holds];
   return all.length === 0 ? ["No die that can be shipped is lost"] : all;
+}
+
+/** The largest rise of a lot's yield with traits at target, in words. */
+export function gainWords(g: GainReview): string {
+  const whole = g.all_at_target - g.as_made;
+  const [first, ...more] = g.groups;
+  if (g.as_made === g.dies) return "every die that can be shipped is accepted as made";
+  if (whole === 0 && (first === undefined || first.dies <= 0)) {
+    return "no trait at its target would bring a die more";
+  }
+  const all = `all traits at target bring ${whole} (${g.all_at_target} of ${g.dies})`;
+  if (first === undefined || first.dies <= 0) {
+    return `no single trait at its target would bring a die more, ${all}: several have to be put right together`;
+  }
+  const alike = more.filter((m) => m.dies === first.dies).map((m) => m.words);
+  const count = g.interaction * g.dies;
+  const together = Math.abs(count) < 0.5
+    ? ""
+    : count > 0
+    ? `; ${plural(Math.round(count), "die")} of these only with several put right together`
+    : `; the single rises overlap by ${plural(Math.round(-count), "die")}`;
+  return `${first.words} at target would bring ${plural(first.dies, "die")} more (${g.as_made} to ${
+    g.as_made + first.dies
+  } of ${g.dies}), ${
+    alike.length > 0 ? `as many as ${alike.join(", ")}` : "the largest single rise"
+  }; ${all}${together}`;
 }
 
 interface Cause {

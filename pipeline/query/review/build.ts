@@ -1,17 +1,9 @@
 import { exactInterval, scoreInterval } from "../../../models/decision/yields.ts";
 import type { Ledger } from "../../ledger/mod.ts";
 import { requestOf } from "../../ledger/mod.ts";
-import {
-  type ChartReview,
-  CONFIDENCE,
-  type LotYieldRow,
-  type ReviewData,
-  type ReviewFlag,
-} from "../../review_types.ts";
-import { RUN_RULES } from "../../../models/decision/charts/mod.ts";
+import { CONFIDENCE, type LotYieldRow, type ReviewData, type ReviewFlag } from "../../review_types.ts";
 import type { LotFacts, LotSummary } from "../flag/facts.ts";
 import { earlierLots, leftOut, leftOutSentences, lotsBefore } from "../flag/earlier_lots.ts";
-import { lotCharts } from "../flag/lot_chart.ts";
 import { predictionsInForce } from "../flag/load.ts";
 import { inPlay } from "../flag/verdicts.ts";
 import type { Rule } from "../flag/rules.ts";
@@ -20,6 +12,7 @@ import type { Flag } from "../flag/types.ts";
 import { RANKED_FROM } from "../rank.ts";
 import { engineWith } from "../sql.ts";
 import { answersOf } from "./answers.ts";
+import { capabilitiesOf, chartsOf, waferChartsOf } from "./chart_review.ts";
 import { requestReview } from "./request_review.ts";
 import { traitReviews } from "./trait_review.ts";
 
@@ -91,6 +84,8 @@ export async function reviewOf(
     })),
     traits: traitReviews(facts),
     charts,
+    wafer_charts: waferChartsOf(own, summaries, rules),
+    capabilities: capabilitiesOf(facts, rules),
     lots: yieldsOverLots([...earlier, own], requests.map((r) => r.request)),
     coverage: coverageOf(facts),
     quarantine: facts.quarantine.map((q) => ({
@@ -123,19 +118,6 @@ const flagOf = (f: Flag): ReviewFlag => ({
     verdict: s.verdict,
   })),
 });
-
-function chartsOf(own: LotSummary, all: readonly LotSummary[], rules: readonly Rule[]): ChartReview[] {
-  return rules.flatMap((rule) => rule.kind === "lot_chart" ? lotCharts(own, all, rule) : []).map((c) => ({
-    key: c.key,
-    words: c.words,
-    unit: c.unit.trim(),
-    centre: c.centre,
-    lower: c.lower,
-    upper: c.upper,
-    points: c.lots.map((lot, k) => ({ lot, value: c.values[k]!, z: c.z[k]! })),
-    signals: c.signals.map((s) => RUN_RULES[s.rule]),
-  }));
-}
 
 function yieldsOverLots(lots: readonly LotSummary[], requests: readonly string[]): LotYieldRow[] {
   return requests.flatMap((request) =>

@@ -4,8 +4,9 @@ import { BASES, type Basis } from "../../../shared/vocabulary.ts";
 import type { Budget, BudgetRow, LimitRow, RankedDie, RequestReview } from "../../review_types.ts";
 import type { Engine } from "../engine.ts";
 import type { LotFacts, PredictionFacts } from "../flag/facts.ts";
-import { type DieVerdict, dieVerdicts } from "../flag/verdicts.ts";
+import { byWafer, type DieVerdict, dieVerdicts } from "../flag/verdicts.ts";
 import { type RankedEntry, rankIn } from "../rank.ts";
+import { gainsOf, missingReadings } from "./gains.ts";
 import { groupShares, shareOf, waferShares } from "./yields.ts";
 
 const FACTORS = ["survival", "facet", "coupling", "filter", "detector", "heralding"] as const;
@@ -37,6 +38,9 @@ export async function requestReview(
     wafers: waferShares(dies),
     groups: groupShares(decisions, (guide) => facts.design.guideById.get(guide)?.group ?? null),
     limits: limitsOf(prediction, dies),
+    limits_by_wafer: [...byWafer(dies)].map(([wafer, own]) => ({ wafer, limits: limitsOf(prediction, own) })),
+    gains: gainsOf(prediction, dies, facts.lot),
+    missing_readings: missingReadings(prediction, dies),
     // Within a decision in the order of the request; what can't be shipped is rejected and comes last as it is.
     ranked: ORDER.flatMap((decision) => ranking.dies.filter((e) => e.decision === decision))
       .map((e) => rankedDie(e, checked, matched.get(e.guide) ?? false)),
