@@ -21,9 +21,10 @@ export interface DrawnTraits {
   readonly merged: Float64Array;
   /** Offset of Δβ, 1/m. */
   readonly offset: Float64Array;
-  /** Standard deviation of δβ along the guide, 1/m, and the length that a scan found, mm; null where none is known. */
+  /** Standard deviation of δβ along the guide, 1/m; null where none is known. */
   readonly mismatchSd: Float64Array | null;
-  readonly effectiveLength: Float64Array | null;
+  /** The length (mm) and the share of the peak that a scan found; null without one. */
+  readonly scanShape: { readonly effectiveLength: Float64Array; readonly peakKept: Float64Array } | null;
   /** The same draws trait by trait, for whoever asks which trait a figure follows. */
   readonly columns: readonly TraitColumn[];
 }
@@ -66,6 +67,7 @@ export function drawTraits(
   guide: GuideInputs,
   sensitivity: MismatchSensitivity = () => 0,
   size: SampleSize = DEFAULT_SAMPLE,
+  bend: MismatchBend = () => 0,
 ): DrawnTraits {
   const { draws, spectral } = size;
   const held = new Map<string, Float64Array>();
@@ -119,27 +121,46 @@ export function drawTraits(
     merged: poling.from === "duty" ? draw("poling", "merged", poling.merged, SHARE) : none(),
     offset: drawOffset(),
     mismatchSd: spread === null ? null : draw("poling", "mismatch_sd_per_m", spread.sd, NOT_NEGATIVE),
-    effectiveLength: scanned === null
-      ? null
-      : draw("poling", "effective_length_mm", scanned.effectiveLength, LENGTH),
+    scanShape: scanned === null ? null : {
+      effectiveLength: draw("poling", "effective_length_mm", scanned.effectiveLength, LENGTH),
+      peakKept: draw("poling", "peak_kept", scanned.peakKept, SHARE),
+    },
   };
   return { ...drawn, columns: [...columns.values()] };
 
-  /** Offset of Δβ: the scan's, and what the errors of the geometry make of it. */
+  /** Offset of Δβ: the scan's, and what the errors of the geometry make of it, to second order. */
   function drawOffset(): Float64Array {
     const role = "phase_matching";
     const offset = guide.offset === null
       ? none()
       : Float64Array.from(draw(role, "mismatch_offset_per_m", guide.offset, {}));
+    const errors: { parameter: GeometryParameter; u: number; off: Float64Array }[] = [];
     for (const { parameter, trait } of guide.geometryErrors) {
       const slope = trait.u === 0 ? 0 : sensitivity(parameter);
       const name = parameter === "width_um" ? "width_error_um" : parameter;
       if (slope === 0) noted(role, name, trait, new Float64Array(draws).fill(trait.value));
-      else draw(role, name, trait, {}).forEach((x, k) => offset[k]! += slope * (x - trait.value));
+      else {
+        const off = draw(role, name, trait, {}).map((x) => x - trait.value);
+        errors.push({ parameter, u: trait.u, off });
+        off.forEach((d, k) => offset[k]! += slope * d);
+      }
     }
+    errors.forEach((a, m) =>
+      errors.slice(m).forEach((b) => {
+        const half = bend(a, b) / (a === b ? 2 : 1);
+        if (half !== 0) a.off.forEach((d, k) => offset[k]! += half * d * b.off[k]!);
+      })
+    );
     return offset;
   }
 }
 
 /** ∂Δβ/∂parameter, 1/m per unit of the parameter's own name. */
 export type MismatchSensitivity = (parameter: GeometryParameter) => number;
+
+/** ∂²Δβ/∂a∂b, 1/m per product of the units of two parameters' names; found over their standard uncertainties. */
+export type MismatchBend = (a: UncertainParameter, b: UncertainParameter) => number;
+export interface UncertainParameter {
+  readonly parameter: GeometryParameter;
+  readonly u: number;
+}

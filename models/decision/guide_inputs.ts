@@ -62,8 +62,15 @@ export interface SpreadTraits {
   readonly sd: UsedTrait;
   /** At which the correlation of δβ has fallen to 1/e, m. */
   readonly correlationLength: number;
-  /** The scan of this very guide that told it, and how long a uniform grating as wide is (mm); null: scans nearby, or the platform. */
-  readonly scanned: { readonly waves: ThreeWaves; readonly effectiveLength: UsedTrait } | null;
+  /**
+   * The scan of this very guide that told it, what length of a uniform grating is as wide (mm), and what share of its peak the
+   * guide keeps; null: scans nearby, or the platform.
+   */
+  readonly scanned: {
+    readonly waves: ThreeWaves;
+    readonly effectiveLength: UsedTrait;
+    readonly peakKept: UsedTrait;
+  } | null;
 }
 
 /** Everything that a prediction of one guide rests on; lengths in m at 25 °C. */

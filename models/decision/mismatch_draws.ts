@@ -1,6 +1,7 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import {
   addProfiles,
+  type EnvelopeCurve,
   envelopeCurves,
   type Grating,
   gratingEnvelope,
@@ -55,16 +56,16 @@ export function spreadFactor(
   return factor <= LARGEST_FACTOR ? { factor, by } : null;
 }
 
-/** Realisations tried for one draw whose width was measured: one in fifty to a hundred is as wide as a broadened curve. */
+/** Realisations tried for one draw of a scanned guide: one in fifty to a hundred is like a broadened curve. */
 const TRIES = 128;
-/** A realisation is as wide as the scan if it is so within this share, or within the scan's own uncertainty. */
-const AS_WIDE = 0.01;
+/** A realisation is like a draw within so much in width (relative) and in the peak kept, or within half their uncertainty. */
+const ALIKE = 0.01;
 
 /**
  * The gratings of the spectral draws, each with a realisation of the spread on it. A guide whose own scan told the spread has
- * its curve's width, too: of many pairs of a drawn σ and a realisation such a draw takes the first that is as wide as it should
- * be (J. K. Pritchard et al., Mol. Biol. Evol. 16, 1791 (1999), for such sampling), so that every process on the guide feels
- * the length that the scan found, and a σ that hardly makes such curves hardly counts.
+ * its curve's width and the height that its shape tells: of many pairs of a drawn σ and a realisation such a draw takes the first
+ * that is as wide and as high as drawn (J. K. Pritchard et al., Mol. Biol. Evol. 16, 1791 (1999), for such sampling), so that
+ * every process on the guide feels the length that the scan found, and a σ that hardly makes such curves hardly counts.
  *
  * Every draw re-tunes the oven to its peak, and a scan's centre is that of its peak: each realisation is shifted by a constant so
  * that the main peak of |φ|² stays where it was without it. Taking the mean of δβ off would leave the peak off the operating
@@ -74,7 +75,7 @@ const AS_WIDE = 0.01;
 export function withSpread(
   site: Site,
   gratings: readonly Grating[],
-  { mismatchSd, effectiveLength, size }: DrawnTraits,
+  { mismatchSd, scanShape, size }: DrawnTraits,
   factor: number,
 ): MadeGrating[] {
   const { guide, scale, profile: known } = site;
@@ -94,21 +95,20 @@ export function withSpread(
       });
       curvesOf.set(grating, curves = envelopeCurves(envelope));
     }
-    const width = effectiveLength === null ? null : SINC_SQUARED_WIDTH / (effectiveLength[k]! * 1e-3);
-    const near = scanned === null
-      ? 0
-      : Math.max(AS_WIDE, scanned.effectiveLength.u / scanned.effectiveLength.value);
+    const off = scanShape === null || scanned === null ? null : distance({
+      width: SINC_SQUARED_WIDTH / (scanShape.effectiveLength[k]! * 1e-3),
+      nearWidth: Math.max(ALIKE, scanned.effectiveLength.u / scanned.effectiveLength.value / 2),
+      power: scanShape.peakKept[k]! * curves().peak.power,
+      nearPower: Math.max(ALIKE, scanned.peakKept.u / 2) * curves().peak.power,
+    });
     let best: { profile: MismatchProfile; off: number } | null = null;
-    for (let n = 0; n < (width === null ? 1 : TRIES); n++) {
+    for (let n = 0; n < (off === null ? 1 : TRIES); n++) {
       const random = randomFrom(`${guide.id}|${spread.sd.key}|${k}|${n}`);
-      const profile = realiseMismatch(
-        { ...at, sd: mismatchSd[(k + n * size.spectral) % size.draws]! },
-        random,
-      );
-      const own = width === null ? null : curves(stepPhases(profile)).width;
-      const off = width === null ? 0 : own === null ? Infinity : Math.abs(own / width - 1);
-      if (best === null || off < best.off) best = { profile, off };
-      if (off <= near) break;
+      const sd = mismatchSd[(k + n * size.spectral) % size.draws]!;
+      const profile = realiseMismatch({ ...at, sd }, random);
+      const far = off === null ? 0 : off(curves(stepPhases(profile)));
+      if (best === null || far < best.off) best = { profile, off: far };
+      if (far <= 1) break;
     }
     const { z, delta } = best!.profile;
     const made = { z, delta: delta.map((d) => factor * d) };
@@ -116,4 +116,20 @@ export function withSpread(
     // δβ acts along z as it is, while the envelope counts z at 25 °C: the shift there is scale times that of Δβ.
     return { grating, profile: addProfiles(made, known, shift / scale) };
   });
+}
+
+/** How far a curve is from what it should be like; 1 is near enough. */
+function distance(
+  want: {
+    readonly width: number;
+    readonly nearWidth: number;
+    readonly power: number;
+    readonly nearPower: number;
+  },
+): (curve: EnvelopeCurve) => number {
+  return ({ width, peak }) =>
+    width === null ? Infinity : Math.hypot(
+      (width / want.width - 1) / want.nearWidth,
+      (peak.power - want.power) / want.nearPower,
+    );
 }

@@ -20,8 +20,11 @@ export interface MismatchSpread {
   readonly broadening: Uncertain;
   /** Root of what neighbouring points differ alike from the fitted sinc², as a share of the peak; noise is not in it. */
   readonly structure: number;
-  /** Share of the peak efficiency without a spread that such guides keep, mean over them. */
-  readonly peakKept: number;
+  /**
+   * Share of the peak efficiency without a spread that is kept. The area under |φ|² is conserved, so the shape tells the height,
+   * and better than it tells σ: it depends on this guide's δβ, not on what others of the same σ have.
+   */
+  readonly peakKept: Uncertain;
 }
 
 /** Why no spread is told; `below`: where a single guide's curve leaves an upper limit, its σ lies below with P = 0.683, 1/m. */
@@ -112,9 +115,8 @@ export function mismatchSpread(
     (Math.sqrt(length / (2 * correlationLength)) + Math.sqrt(2 * correlationLength / length)) /
     length;
   const bySd = new Float64Array(STEPS + 1);
-  const kept = new Float64Array(STEPS + 1);
   bySd[0] = likelihood(own.shape);
-  kept[0] = bySd[0];
+  let [kept, keptSquared] = [bySd[0], bySd[0]];
   for (let guide = 0; guide < GUIDES; guide++) {
     const unit = stepPhases(realiseMismatch(
       { start: envelope.start, length, sd: 1, correlationLength },
@@ -124,7 +126,8 @@ export function mismatchSpread(
       const { shape, height: there } = sampled(unit.map((t) => t * largest * k / STEPS));
       const weight = likelihood(shape) / GUIDES;
       bySd[k]! += weight;
-      kept[k]! += weight * there / height;
+      kept += weight * there / height;
+      keptSquared += weight * (there / height) ** 2;
     }
   }
   const total = sum(bySd);
@@ -154,7 +157,9 @@ export function mismatchSpread(
   const variance = bySd.reduce((s, w, k) => s + w * (sdAt(k) - mean) ** 2, 0) / total;
   // A step of the list more or less is not told apart.
   const u = Math.hypot(Math.sqrt(variance), sdAt(1) / Math.sqrt(12));
-  return { sd: { value: mean, u }, broadening, structure, peakKept: sum(kept) / total };
+  const share = kept / total;
+  const peakKept = { value: share, u: Math.sqrt(Math.max(0, keptSquared / total - share * share)) };
+  return { sd: { value: mean, u }, broadening, structure, peakKept };
 }
 
 const sum = (values: Float64Array): number => values.reduce((a, b) => a + b, 0);

@@ -72,7 +72,13 @@ export function shapeTraits(
       readings,
       detail: `${at}: ${spread.broadening.value.toFixed(3)} times as wide, with ${
         (100 * spread.structure).toFixed(1)
-      } % of structure; such guides keep ${(100 * spread.peakKept).toFixed(0)} % of the peak`,
+      } % of structure`,
+    }, {
+      ...common,
+      trait: "peak_kept",
+      ...spread.peakKept,
+      readings,
+      detail: `of the peak beside ${from}, by the shape of the curve`,
     });
   } else if (spread.below !== null) {
     // 0 with a limit for u: nothing that this guide would be given, but its neighbours' pool has to know of it.

@@ -57,18 +57,28 @@ export function resolveSpread(
   if (sd.value === 0) {
     return { traits: null, told: [{ ...sd, note: `the guide's own scan tells no spread${of}` }] };
   }
-  const lengths = pools.positions("effective_length_mm", guide.guide_id).filter((k) => {
-    const { process, wavelength_nm } = pools.rows[k]!;
-    return process === row.process && used.some((n) => pools.rows[n]!.wavelength_nm === wavelength_nm);
-  });
-  const length = weighed(pools, "effective_length_mm", lengths, distance(first));
+  const beside = (trait: TraitName) =>
+    weighed(
+      pools,
+      trait,
+      pools.positions(trait, guide.guide_id).filter((k) => {
+        const { process, wavelength_nm } = pools.rows[k]!;
+        return process === row.process && used.some((n) => pools.rows[n]!.wavelength_nm === wavelength_nm);
+      }),
+      distance(first),
+    );
+  const [length, kept] = [beside("effective_length_mm"), beside("peak_kept")];
   return {
     traits: {
       sd: usedOf(sd),
       correlationLength: CORRELATION_LENGTH,
-      scanned: { waves, effectiveLength: usedOf(length) },
+      scanned: { waves, effectiveLength: usedOf(length), peakKept: usedOf(kept) },
     },
-    told: [{ ...sd, note: `${AT}${of}` }, { ...length, note: `of a uniform grating as wide${of}` }],
+    told: [
+      { ...sd, note: `${AT}${of}` },
+      { ...length, note: `of a uniform grating as wide${of}` },
+      { ...kept, note: `of the peak without the spread${of}` },
+    ],
   };
 }
 

@@ -19,7 +19,8 @@ export type TraitName =
   | "mismatch_offset_per_m"
   | "effective_length_mm"
   | "asymmetry"
-  | "mismatch_sd_per_m";
+  | "mismatch_sd_per_m"
+  | "peak_kept";
 
 /** Lines of one file that a trait rests on, as stretches [first, last]. */
 export interface ReadingRef {

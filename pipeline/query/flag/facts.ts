@@ -23,6 +23,7 @@ export const TRAIT_NAMES = [
   "effective_length_mm",
   "asymmetry",
   "mismatch_sd_per_m",
+  "peak_kept",
 ] as const satisfies readonly TraitName[];
 
 export interface WaferFact extends Source {

@@ -166,12 +166,19 @@ Deno.test("a guide that was scanned is as wide in every draw as its scan, whatev
     ...spread(700, 150),
     mismatchSpread: {
       ...spread(700, 150).mismatchSpread,
-      scanned: { waves, effectiveLength: trait(length, 0.01 * length, "length") },
+      scanned: {
+        waves,
+        effectiveLength: trait(length, 0.01 * length, "length"),
+        peakKept: trait(0.6, 0.02, "kept"),
+      },
     },
   };
   const without = predicted(plain).figure("acceptance_nm");
   const free = predicted(spread(700, 150), doubling, many).figure("acceptance_nm");
-  const found = predicted(scanned, doubling, many).figure("acceptance_nm");
+  const asScanned = predicted(scanned, doubling, many);
+  const found = asScanned.figure("acceptance_nm");
+  const efficiency = (p: typeof asScanned) => p.figure("efficiency_percent_per_w").mean!;
+  assertClose(efficiency(asScanned), 0.6 * efficiency(predicted(plain)), { rel: 0.05 });
   assertClose(found.mean!, measured * without.mean!, { rel: 0.02 });
   assert.ok(found.u! < 0.04 * found.mean! && free.u! > 1.5 * found.u!, `${found.u}, free ${free.u}`);
   assert.ok(free.mean! < found.mean!);
@@ -182,7 +189,7 @@ Deno.test("a spread goes to other processes by the parameter that would explain 
     { parameter: "width_um" as const, trait: trait(0, u, "w") },
     { parameter: "titanium_nm" as const, trait: trait(100, 1, "t") },
   ];
-  const scanned = { waves, effectiveLength: trait(15, 0.1, "l") };
+  const scanned = { waves, effectiveLength: trait(15, 0.1, "l"), peakKept: trait(0.8, 0.1, "k") };
   const told = { sd: trait(100, 10, "sd"), correlationLength: 1e-3, scanned };
   // Slopes of the asked process are twice (width) and half (titanium) those of the scanned one.
   const slopes = (w: ThreeWaves) => (p: string) =>

@@ -31,7 +31,11 @@ function scanned(seed: string, sd: number, known?: MismatchProfile) {
   });
   const fit = fitTuningScan(points);
   if (isRefused(fit)) return null;
-  return { fit, offsets: Float64Array.from(points, (p) => p.x - fit.centre.value) };
+  return {
+    fit,
+    offsets: Float64Array.from(points, (p) => p.x - fit.centre.value),
+    kept: curve.peak.power / envelopeCurves(envelope)().peak.power,
+  };
 }
 
 Deno.test("the quick fit of simulated curves finds what the scan's own fit finds", () => {
@@ -56,6 +60,7 @@ Deno.test("the quick fit of simulated curves finds what the scan's own fit finds
 
 Deno.test("spreads of simulated guides are told within their u, and guides without one are refused with a limit", () => {
   const pulls: number[] = [];
+  const heights: number[] = [];
   let refused = 0;
   for (let n = 0; n < 24; n++) {
     // As they are weighed a priori: evenly.
@@ -67,13 +72,16 @@ Deno.test("spreads of simulated guides are told within their u, and guides witho
       refused++;
       continue;
     }
-    ok(found.peakKept > 0 && found.peakKept < 1);
+    ok(found.peakKept.value > 0 && found.peakKept.value < 1);
+    heights.push((found.peakKept.value - scan.kept) / Math.hypot(found.peakKept.u, 0.005));
     pulls.push((found.sd.value - sd) / found.sd.u);
   }
   ok(pulls.length >= 18 && refused <= 4, `${pulls.length} told, ${refused} refused`);
-  const rms = Math.sqrt(pulls.reduce((sum, p) => sum + p * p, 0) / pulls.length);
   // Twenty pulls of spread 1 have a root mean square of 0.6 … 1.4 with a probability of over 0.98 (χ² of 20).
-  ok(rms > 0.5 && rms < 1.4, `${rms}`);
+  for (const all of [pulls, heights]) {
+    const rms = Math.sqrt(all.reduce((sum, p) => sum + p * p, 0) / all.length);
+    ok(rms > 0.5 && rms < 1.4, `${rms}: ${all.map((p) => p.toFixed(1))}`);
+  }
   for (let n = 0; n < 6; n++) {
     const { fit, offsets } = scanned(`none ${n}`, 0)!;
     const found = mismatchSpread(offsets, fit, plain, ell);

@@ -17,12 +17,13 @@ const SPEAKS = platformSchema.parse({
   ...PLATFORM,
   defaults: { ...PLATFORM.defaults, mismatch_sd_per_m: { value: 90, u: 40 } },
 });
-/** A scan's two rows: what it told of the spread, and its effective length. */
+/** A scan's rows: what it told of the spread, its effective length, and the share of the peak that is left. */
 const scan = (process: string, sd: number, u: number, over: Partial<TraitRow> = {}): TraitRow[] => {
   const at = { process, wavelength_nm: 1582, ...over };
   return [
     traitRow("mismatch_sd_per_m", HERE.guide_id, sd, { ...at, u }),
     traitRow("effective_length_mm", HERE.guide_id, 6, { ...at, u: 0.1 }),
+    traitRow("peak_kept", HERE.guide_id, 0.8, { ...at, u: 0.05 }),
   ];
 };
 function spreadOf(rows: readonly TraitRow[], guide = HERE, platform = PLATFORM) {
@@ -35,7 +36,7 @@ function spreadOf(rows: readonly TraitRow[], guide = HERE, platform = PLATFORM) 
   );
   return {
     spread: inputs.mismatchSpread ?? null,
-    told: roles.filter((r) => r.role === "poling" && /mismatch_sd|effective_length/.test(r.trait)),
+    told: roles.filter((r) => r.role === "poling" && /mismatch_sd|effective_length|peak_kept/.test(r.trait)),
   };
 }
 
@@ -46,8 +47,9 @@ Deno.test("a guide's own scan of the process gives its spread and its length, wi
   deepEqual([spread!.scanned!.waves.polP, spread!.scanned!.waves.polI], ["TE", "TM"]);
   equal(spread!.scanned!.effectiveLength.value, 6);
   deepEqual(told.map((t) => [t.trait, t.used, t.from]), [
-    ["mismatch_sd_per_m", [2], HERE.guide_id],
-    ["effective_length_mm", [3], HERE.guide_id],
+    ["mismatch_sd_per_m", [3], HERE.guide_id],
+    ["effective_length_mm", [4], HERE.guide_id],
+    ["peak_kept", [5], HERE.guide_id],
   ]);
 });
 
@@ -81,5 +83,5 @@ Deno.test("a platform's default speaks for guides without a scan, pooled with th
   const pooled = spreadOf(scan("TE>TE+TM", 200, 5), SAME_DIE, SPEAKS).spread!;
   ok(pooled.sd.value > 100 && pooled.sd.value < 200 && pooled.sd.basis === "die", JSON.stringify(pooled.sd));
   // A scan whose shape told nothing at all is no reason to give the guide what others have.
-  equal(spreadOf(scan("TE>TE+TM", 0, 60).slice(1), HERE, SPEAKS).spread, null);
+  equal(spreadOf(scan("TE>TE+TM", 0, 60).slice(1, 2), HERE, SPEAKS).spread, null);
 });
