@@ -1,15 +1,15 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { absent, given, PAIR_FIGURES, type PairFigure, type PairScratch } from "../pairs/mod.ts";
-import type { GeometryParameter } from "../guides/mod.ts";
 import type { Grating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import { type Figure, figureAbsence, FIGURES } from "../../shared/schemas/figures.ts";
 import { nm, toDbPerCm, toNm } from "../../shared/units.ts";
-import type { Polarisation, ThreeWaves } from "../../shared/vocabulary.ts";
+import type { ThreeWaves } from "../../shared/vocabulary.ts";
 import { type ConversionFigure, predictConversion } from "./conversion_prediction.ts";
 import type { SampleSize } from "./draws.ts";
-import { type DrawnTraits, drawTraits, type MismatchSensitivity } from "./drawn_traits.ts";
+import { type DrawnTraits, drawTraits } from "./drawn_traits.ts";
 import { FigureDraws } from "./figure_draws.ts";
+import { mismatchBend, mismatchSensitivity } from "./geometry_errors.ts";
 import { drawGrating, gratingForPeak, inspectedGrating } from "./grating_draws.ts";
 import type { GuideInputs } from "./guide_inputs.ts";
 import { drawOperatingPoints, type OperatingDraws } from "./operating_draws.ts";
@@ -17,7 +17,7 @@ import { spreadFactor, withSpread } from "./mismatch_draws.ts";
 import { mismatchProfile } from "./mismatch_profile.ts";
 import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
 import { type PairNotes, type PairQuestion, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
-import { type PlatformModel, validTemperatures } from "./platform_model.ts";
+import type { PlatformModel } from "./platform_model.ts";
 import { type Site, siteAt } from "./site.ts";
 
 /** What a sample of a guide needs beside the guide. */
@@ -53,7 +53,7 @@ export function sampleGuide(
 ): GuideSample {
   const sensitivityOf = (waves: ThreeWaves) => mismatchSensitivity(model, waves, checked, guide);
   const sensitivity = sensitivityOf(checked.waves);
-  const drawn = drawTraits(guide, sensitivity, size);
+  const drawn = drawTraits(guide, sensitivity, size, mismatchBend(model, checked, guide));
   const profile = mismatchProfile(guide.along ?? [], sensitivity);
   const out: Draws = new FigureDraws(size.draws);
   const loss = (name: Figure, alpha: Float64Array) =>
@@ -102,29 +102,6 @@ function nowhere(
     if (figureAbsence(figure, request.process, pulsed) === null) out.fill(figure, absent(reason));
   }
   return { drawn, figures: out, exists: new Uint8Array(out.count), point: null, pairs: null, remarks: [] };
-}
-
-/**
- * ∂Δβ/∂parameter in the middle of the oven's range: over it the slope changes by a few per cent, which is little beside
- * the uncertainty that it carries. 0 where the index does not depend on the parameter, or is not known.
- */
-function mismatchSensitivity(
-  model: PlatformModel,
-  waves: ThreeWaves,
-  { request }: CheckedRequest,
-  guide: GuideInputs,
-): MismatchSensitivity {
-  const valid = validTemperatures(model, waves, guide.geometry);
-  if ("reason" in valid) return () => 0;
-  const [low, high] = [0, 1].map((k) =>
-    Math.min(valid.range[1], Math.max(valid.range[0], request.oven_c[k]!))
-  );
-  const at = (low! + high!) / 2;
-  const one = (pol: Polarisation, lambda: number, parameter: GeometryParameter) =>
-    2 * Math.PI / lambda * model.index.sensitivity(pol, lambda, at, guide.geometry, parameter);
-  return (parameter) =>
-    one(waves.polP, waves.lambdaP, parameter) - one(waves.polS, waves.lambdaS, parameter) -
-    one(waves.polI, waves.lambdaI, parameter);
 }
 
 function question(checked: CheckedRequest, guide: GuideInputs, walls: Grating | null) {
