@@ -11,6 +11,7 @@ import {
   designsAreaModel,
   designsIndexModel,
   type IndexModel,
+  solvedCoupling,
   type SolvedDesigns,
   SOLVER_VERSION,
   type SolverIndexModel,
@@ -140,7 +141,13 @@ export function buildModel(data: PlatformData): PlatformModel {
   const { platform, file } = data;
   try {
     const { index, area } = guideModels(data);
-    return platformModel(platform, index, area);
+    const outputs = data.designs?.outputs ?? [];
+    return platformModel(
+      platform,
+      index,
+      area,
+      (geometry, pol, lambda, fibreMfd) => solvedCoupling(outputs, geometry, pol, lambda, fibreMfd),
+    );
   } catch (cause) {
     if (!(cause instanceof RangeError)) throw cause;
     throw new InputError(`Cannot use platform ${file}: ${cause.message}`, { file }, { cause });

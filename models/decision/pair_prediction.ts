@@ -1,6 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { lossyUniform, pairWeight } from "../conversion/mod.ts";
-import { bareReflectivity, centredOverlap } from "../metrology/mod.ts";
+import { bareReflectivity } from "../metrology/mod.ts";
 import {
   absent,
   type ArmOptics,
@@ -23,13 +23,14 @@ import {
 } from "../pairs/mod.ts";
 import { type Grating, gratingSpectrum } from "../poling/mod.ts";
 import type { ArmRequest, CheckedRequest, FilterRequest } from "../../shared/schemas/request.ts";
-import { lambdaOf, nm, omegaOf, um } from "../../shared/units.ts";
+import { lambdaOf, nm, omegaOf } from "../../shared/units.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
 import { between, carried } from "./blend_spectra.ts";
 import type { DrawnArm, DrawnTraits } from "./drawn_traits.ts";
 import type { FigureDraws } from "./figure_draws.ts";
 import type { ArmTraits } from "./guide_inputs.ts";
 import { convertingStretches } from "./grating_draws.ts";
+import { armCoupling, couplingRemarks } from "./fibre_coupling.ts";
 import type { MadeGrating } from "./mismatch_draws.ts";
 import { type Site, siteLength } from "./site.ts";
 
@@ -144,17 +145,10 @@ function armOptics(
   const detector: Outcome = request?.detector === undefined
     ? absent(`the request gives no detector for the ${arm}`)
     : given(request.detector.efficiency);
-  const fibre = request?.fibre_mfd_um;
-  const unknown = fibre === undefined
-    ? `the request gives no fibre_mfd_um for the ${arm}`
-    : "reason" in traits.mode
-    ? traits.mode.reason
-    : null;
+  const coupling = armCoupling(site, arm, traits, drawn, request);
   return (k) => ({
     facet: given(1 - (drawn.reflectivity === null ? bare : drawn.reflectivity[k]!)),
-    coupling: unknown !== null
-      ? absent(unknown)
-      : given(centredOverlap([um(drawn.modeX![k]!), um(drawn.modeY![k]!)], [um(fibre!), um(fibre!)])),
+    coupling: coupling(k),
     detector,
     dark: request?.detector?.dark_hz ?? 0,
   });
@@ -207,7 +201,7 @@ export function predictPairs(
   const shown = walls ?? (guide.poling.from === "windows" ? question.made[0]!.grating : null);
   const poled = convertingStretches(guide, shown).map((s) => ({ from: s.from * scale, to: s.to * scale }));
   let notes: PairNotes | null = null;
-  const remarks = new Set<string>();
+  const remarks = new Set<string>(couplingRemarks(site, checked));
   for (let k = 0; k < drawn.size.draws; k++) {
     const j = k % spectra.length;
     const spectrum = scaledCounts(spectra[j]!, madeRatio(question, k, j));

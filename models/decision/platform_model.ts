@@ -20,10 +20,24 @@ export interface PlatformModel {
   nonlinear(waves: ThreeWaves): number | { readonly reason: string };
   /** n_o outside the facets. */
   readonly outsideIndex: number;
+  /** Share that a fibre (mode-field diameter in m) takes of a guide's solved field, in the middle of it; null where none was solved. */
+  readonly solvedCoupling: SolvedCoupling;
 }
 
+export type SolvedCoupling = (
+  geometry: GuideGeometry,
+  pol: Polarisation,
+  lambda: number,
+  fibreMfd: number,
+) => number | null;
+
 /** Joins a platform file with its index and area models. @throws RangeError for axes that the material does not have */
-export function platformModel(platform: Platform, index: IndexModel, area: AreaModel): PlatformModel {
+export function platformModel(
+  platform: Platform,
+  index: IndexModel,
+  area: AreaModel,
+  solvedCoupling: SolvedCoupling = () => null,
+): PlatformModel {
   const { material, axes } = platform;
   const along = propagationAxis(material, axes);
   expansionFactor(material, along, 25); // refuses a direction without published expansion before anything is computed
@@ -59,6 +73,7 @@ export function platformModel(platform: Platform, index: IndexModel, area: AreaM
       return millerScaled(material, held.d, held.at, polAxes, waves);
     },
     outsideIndex: platform.outside_index ?? 1,
+    solvedCoupling,
   };
 }
 

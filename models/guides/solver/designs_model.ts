@@ -115,6 +115,22 @@ export function solvedOutputAt(
     .reduce((a, b) => Math.abs(b.lambda - lambda) < Math.abs(a.lambda - lambda) ? b : a);
 }
 
+/**
+ * Share of power that a fibre takes of the solved field of a guide's design, or null where the mode or this fibre (mode-field
+ * diameter, m) was not solved for.
+ */
+export function solvedCoupling(
+  outputs: readonly SolvedOutput[],
+  geometry: GuideGeometry,
+  pol: Polarisation,
+  lambda: number,
+  fibreMfd: number,
+): number | null {
+  const solved = solvedOutputAt(outputs, geometry, pol, lambda);
+  if (solved === null || solved.result.cutOff) return null;
+  return solved.result.fibres.find(({ mfd }) => Math.abs(mfd / fibreMfd - 1) < 1e-9)?.value ?? null;
+}
+
 /** The design whose middle is nearest to the guide's width; its own limits say whether it holds it. */
 function nearestDesign<D extends { readonly design: SolverDesign }>(
   designs: readonly D[],

@@ -32,6 +32,7 @@ export {
 export {
   designsAreaModel,
   designsIndexModel,
+  solvedCoupling,
   type SolvedDesigns,
   type SolvedOutput,
   solvedOutputAt,
