@@ -1,7 +1,6 @@
-import { type SolvedDesigns, solvedOutputAt } from "../../models/guides/mod.ts";
 import type { GuidePrediction } from "../../models/decision/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
-import type { CheckedRequest, Request } from "../../shared/schemas/request.ts";
+import type { Request } from "../../shared/schemas/request.ts";
 
 /**
  * Remarks on power above what the platform's notes allow: stated by the request, or suggested by a figure. The limit is an
@@ -28,32 +27,12 @@ export function powerCautions(
   );
 }
 
-/**
- * Where the design's field was solved: what a request's fibres take of it, beside the Gaussian estimate that the figures
- * rest on. The two differ by the field's tail into the crystal, which a Gaussian of the same size does not have.
- */
-export function couplingRemarks(
-  designs: SolvedDesigns | null,
-  width_um: number,
-  { request, waves }: Pick<CheckedRequest, "request" | "waves">,
-  figures: GuidePrediction["figures"],
-): string[] {
-  if (designs === null) return [];
-  const arms = [
-    ["signal", request.signal.fibre_mfd_um, waves.polS, waves.lambdaS],
-    ["idler", request.idler?.fibre_mfd_um, waves.polI, waves.lambdaI],
-  ] as const;
-  return arms.flatMap(([arm, fibre_um, pol, lambda]) => {
-    const used = figures.find((f) => f.figure === `coupling_${arm}`)?.mean ?? null;
-    if (fibre_um === undefined || used === null) return [];
-    const solved = solvedOutputAt(designs.outputs, { width_um }, pol, lambda);
-    if (solved === null || solved.result.cutOff) return [];
-    const own = solved.result.fibres.find(({ mfd }) => Math.abs(mfd / (fibre_um * 1e-6) - 1) < 1e-9);
-    return own === undefined ? [] : [
-      `solved_coupling: the ${arm}'s fibre takes ${
-        own.value.toFixed(3)
-      } of the design's solved field; used is the ` +
-      `Gaussian estimate of its mode size, ${used.toFixed(3)}`,
-    ];
-  });
+/** Says of a decision that more draws might change it, where no more were taken. */
+export function samplingRemarks({ settled, probability, draws }: GuidePrediction): string[] {
+  return settled ? [] : [
+    `at_threshold: probability ${
+      Number(probability.toFixed(4))
+    } of ${draws} draws is too near a threshold to decide for ` +
+    "sure: more draws might decide otherwise",
+  ];
 }

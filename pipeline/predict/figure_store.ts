@@ -1,5 +1,5 @@
-import type { GuidePrediction } from "../../models/decision/mod.ts";
-import { FIGURES } from "../../shared/schemas/figures.ts";
+import type { Decision, GuidePrediction } from "../../models/decision/mod.ts";
+import { type Figure, FIGURES } from "../../shared/schemas/figures.ts";
 import { BASES } from "../../shared/vocabulary.ts";
 import { type TableShape, type TableStream, tableStream } from "../ledger/mod.ts";
 import type { GuideRecord, LotDesign } from "../records.ts";
@@ -75,6 +75,24 @@ export class FigureStore {
       if (f.reason === null) this.#reasons.delete(cell);
       else this.#reasons.set(cell, f.reason);
     }
+  }
+
+  probability(guide: number): number {
+    return this.#predictions[guide]!.probability;
+  }
+
+  decision(guide: number): Decision {
+    return this.#predictions[guide]!.decision;
+  }
+
+  settled(guide: number): boolean {
+    return this.#predictions[guide]!.settled;
+  }
+
+  /** Mean of a figure, null where it does not exist. */
+  mean(guide: number, figure: Figure): number | null {
+    const value = this.#numbers[NUMBERS * (guide * FIGURES.length + FIGURES.indexOf(figure))]!;
+    return Number.isNaN(value) ? null : value;
   }
 
   figureTable(): TableStream {

@@ -1,24 +1,17 @@
 import { DEFAULT_SAMPLE } from "../../models/decision/mod.ts";
 import { InputError } from "../../shared/errors.ts";
-import { askedBy, designsFor, type SolveSetting } from "../designs/mod.ts";
+import type { SolveSetting } from "../designs/mod.ts";
 import { sha256 } from "../json_file.ts";
-import { type Ledger, type Manifest, type TableShape, tableStream } from "../ledger/mod.ts";
+import { type Ledger, type TableShape, tableStream } from "../ledger/mod.ts";
 import { MODEL_VERSION } from "../model_version.ts";
 import { OutOfDate } from "../out_of_date.ts";
-import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
-import { type GuideRecord, loadDesign, type LotDesign, recordsOf } from "../records.ts";
+import { loadPlatform } from "../platforms.ts";
+import { loadDesign } from "../records.ts";
 import type { LoadedRequest } from "../requests.ts";
-import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
-import { alongGuides } from "../traits/along_guide.ts";
-import { completeWalls, streamWalls } from "../traits/guide_walls.ts";
-import { loadTraits } from "../traits/load_traits.ts";
-import { loadOtherLots, pooledRuns } from "../traits/pooled_lots.ts";
-import { TraitPools } from "../traits/pools.ts";
-import { couplingRemarks, powerCautions } from "./cautions.ts";
+import { pooledRuns } from "../traits/pooled_lots.ts";
+import { type ComputedLot, computeLot } from "./compute_lot.ts";
 import { contradictionsOf, contradictionTable, contradictionText } from "./contradictions.ts";
-import { FigureStore, unavailableDies } from "./figure_store.ts";
-import type { Job, WorkerSetup } from "./jobs.ts";
-import { type JobPool, openPool } from "./pool.ts";
+import { MOST_DRAWS } from "./larger_samples.ts";
 import { checkRange } from "./request_range.ts";
 
 export interface PredictLotOptions {
@@ -92,6 +85,7 @@ export async function predictLot(
       MODEL_VERSION,
       DEFAULT_SAMPLE.draws,
       DEFAULT_SAMPLE.spectral,
+      MOST_DRAWS,
       reduced.fingerprint,
       others.map((run) => [run.lot, run.fingerprint]),
       loaded.fingerprint,
@@ -103,7 +97,7 @@ export async function predictLot(
   }
   if (stale.length === 0) return done;
   if (!ledger.writable) throw new OutOfDate(`predictions of lot ${lot}`);
-  const computed = await compute(
+  const computed = await computeLot(
     ledger,
     design,
     loaded,
@@ -125,6 +119,7 @@ export async function predictLot(
         platform_sha256: loaded.fingerprint,
         draws: DEFAULT_SAMPLE.draws,
         spectral_draws: DEFAULT_SAMPLE.spectral,
+        most_draws: MOST_DRAWS,
         definition: request.request,
       },
       modelVersion: MODEL_VERSION,
@@ -133,6 +128,8 @@ export async function predictLot(
         figures: computed.stores[k]!.figureTable(),
         decisions: computed.stores[k]!.decisionTable(computed.unavailable),
         used_traits: roleTable(lot, request.name, computed.roles[k]!),
+        next_readings: computed.analyses[k]!.readingTable(),
+        restored: computed.analyses[k]!.restoredTable(),
         contradictions: contradictionTable(lot, request.name, contradictions, computed.pools),
       },
     });
@@ -147,108 +144,7 @@ export async function predictLot(
   return done.sort((a, b) => order.get(a.request)! - order.get(b.request)!);
 }
 
-interface Computed {
-  readonly stores: FigureStore[];
-  readonly roles: { guide: GuideRecord; roles: readonly RoleTrait[] }[][];
-  readonly unavailable: Map<string, string>;
-  readonly designRuns: readonly string[];
-  readonly pools: TraitPools;
-}
-
-const BATCH = 4;
-
-async function compute(
-  ledger: Ledger,
-  design: LotDesign,
-  loaded: LoadedPlatform,
-  [reduced, ...others]: readonly [Manifest, ...Manifest[]],
-  requests: readonly LoadedRequest[],
-  options: PredictLotOptions,
-): Promise<Computed> {
-  const { lot } = design.lot;
-  const { designs, runs: designRuns } = await designsFor(
-    ledger,
-    loaded,
-    design.guides.map((g) => g.width_um),
-    requests.map(askedBy),
-    {
-      workers: options.workers,
-      ...(options.onSolving === undefined ? {} : { onSolving: options.onSolving }),
-      ...(options.grid === undefined ? {} : { grid: options.grid }),
-    },
-  );
-  const traits = await loadTraits(ledger, reduced);
-  const pools = new TraitPools(loaded.platform, design, traits, await loadOtherLots(ledger, others));
-  const windows = windowsByUnit(await recordsOf(ledger, "poling", lot));
-  const along = alongGuides(await recordsOf(ledger, "geometry", lot), loaded.platform);
-  const unavailable = unavailableDies(design, await recordsOf(ledger, "cutback", lot));
-  const stores = requests.map((r) => new FigureStore(lot, r.name, design.guides));
-  const roles: Computed["roles"] = requests.map(() => []);
-  const setup: WorkerSetup = {
-    platform: { ...loaded, designs },
-    requests: requests.map((
-      { request, waves, processKey, pulsed, requirements, orderBy, descending, spectrum },
-    ) => ({
-      checked: { request, waves, processKey, pulsed, requirements, orderBy, descending },
-      recorded: spectrum,
-    })),
-  };
-  const total = design.guides.length * requests.length;
-  let finished = 0;
-  const pool = openPool(setup, options.workers, total, ({ request, guide, prediction }) => {
-    const asked = requests[request]!;
-    const cautions = [
-      ...powerCautions(loaded.platform, asked.request, prediction.figures),
-      ...couplingRemarks(designs, design.guides[guide]!.width_um, asked, prediction.figures),
-    ];
-    stores[request]!.set(guide, { ...prediction, remarks: [...prediction.remarks, ...cautions] });
-    options.onProgress?.(++finished, total);
-  });
-  try {
-    const feed = new Feed(pool);
-    const give = async (index: number, walls: Float64Array | null) => {
-      const guide = design.guides[index]!;
-      for (const [k, request] of setup.requests.entries()) {
-        const resolved = resolveGuide(pools, windows, guide, request.checked, walls, along);
-        roles[k]!.push({ guide, roles: resolved.roles });
-        await feed.add({ request: k, guide: index, inputs: resolved.inputs });
-      }
-    };
-    const exact = completeWalls(traits);
-    const position = new Map(design.guides.map((g, k) => [g.guide_id, k]));
-    for (const [index, guide] of design.guides.entries()) {
-      if (!exact.has(guide.guide_id)) await give(index, null);
-    }
-    if (exact.size > 0) {
-      for await (const walls of streamWalls(ledger, lot)) {
-        if (exact.get(walls.guide_id) !== walls.refs[0]!.file_name) continue;
-        await give(position.get(walls.guide_id)!, walls.positions_um);
-      }
-    }
-    await feed.flush();
-    await pool.finish();
-  } finally {
-    pool.close();
-  }
-  return { stores, roles, unavailable, designRuns, pools };
-}
-
-/** Gathers jobs into batches: one message per job would cost as much as a small job. */
-class Feed {
-  #jobs: Job[] = [];
-  constructor(readonly pool: JobPool) {}
-
-  async add(job: Job): Promise<void> {
-    this.#jobs.push(job);
-    if (this.#jobs.length >= BATCH) await this.flush();
-  }
-
-  async flush(): Promise<void> {
-    if (this.#jobs.length > 0) await this.pool.submit(this.#jobs.splice(0));
-  }
-}
-
-function roleTable(lot: string, request: string, guides: Computed["roles"][number]) {
+function roleTable(lot: string, request: string, guides: ComputedLot["roles"][number]) {
   const rows = guides.flatMap(({ guide, roles }) => roles.map((role) => ({ guide, role })));
   return tableStream(ROLE_SHAPE, {
     lot: rows.map(() => lot),

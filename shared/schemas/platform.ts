@@ -17,6 +17,12 @@ const perPolarisation = z.union([
   z.strictObject({ TE: uncertain.optional(), TM: uncertain.optional() }),
 ]);
 
+/** One target for both polarisations, or one per polarisation. */
+const aim = z.union([
+  z.number().min(0),
+  z.strictObject({ TE: z.number().min(0).optional(), TM: z.number().min(0).optional() }),
+]);
+
 const spread = z.strictObject({
   lot_sd: z.number().min(0),
   wafer_sd: z.number().min(0),
@@ -85,13 +91,13 @@ export const DEFAULT_TRAITS = [
   "etch_depth_nm",
   "titanium_nm",
   "mismatch_offset_per_m",
+  "mismatch_sd_per_m",
 ] as const;
 export type DefaultTrait = typeof DEFAULT_TRAITS[number];
 
 const processKey = z.string().regex(
   /^(TE|TM)>(TE|TM)\+(TE|TM)$/,
   'need pump>signal+idler with TE or TM, such as "TE>TE+TM"',
-  "mismatch_sd_per_m",
 );
 
 /** `<id>.json`: a fabrication platform (formats: "Platforms"). */
@@ -142,14 +148,29 @@ export const platformSchema = z.strictObject({
     titanium_nm: uncertain.optional(),
     /** How far the calculated Δβ may be off, 1/m; with it, scans speak for the guides near them, too. */
     mismatch_offset_per_m: uncertain.optional(),
+    /** Standard deviation of Δβ along a guide at a correlation length of 1 mm, 1/m; with it, scans speak for the guides near them, too. */
+    mismatch_sd_per_m: uncertain.optional(),
     u_insertion_loss_db: z.number().min(0).optional(),
     u_contrast: z.number().min(0).optional(),
     u_reflectivity: z.number().min(0).optional(),
     u_mfd_um: z.number().min(0).optional(),
     u_value: z.record(z.string(), z.number().min(0)).optional(),
   }).default({}),
-    /** Standard deviation of Δβ along a guide at a correlation length of 1 mm, 1/m; with it, scans speak for the guides near them, too. */
-    mismatch_sd_per_m: uncertain.optional(),
+  /** What a fabrication aims at, where that is not the default; mode sizes at the default's wavelength. */
+  targets: z.strictObject({
+    loss_db_cm: aim.optional(),
+    mfd_x_um: aim.optional(),
+    mfd_y_um: aim.optional(),
+    duty: z.number().gt(0).lt(1).optional(),
+    duty_sd: z.number().min(0).optional(),
+    merged: z.number().min(0).max(1).optional(),
+    coated_reflectivity: aim.optional(),
+    width_error_um: z.number().optional(),
+    film_thickness_nm: z.number().positive().optional(),
+    etch_depth_nm: z.number().positive().optional(),
+    titanium_nm: z.number().positive().optional(),
+    mismatch_offset_per_m: z.number().optional(),
+  }).default({}),
   priors: z.partialRecord(z.enum(DEFAULT_TRAITS), spread).default({}),
   notes: z.object({
     pump_limit_mw: z.number().positive().optional(),
