@@ -116,7 +116,9 @@ export function drawTraits(
     lossI: loss("idler_loss", guide.idler.loss),
     signal: arm("signal", guide.signal),
     idler: arm("idler", guide.idler),
-    duty: poling.from === "duty" ? draw("poling", "duty", poling.duty, DUTY) : none(),
+    duty: poling.from === "walls" || poling.duty === undefined
+      ? none()
+      : draw("poling", "duty", poling.duty, DUTY),
     dutySd: poling.from === "duty" ? draw("poling", "duty_sd", poling.dutySd, NOT_NEGATIVE) : none(),
     merged: poling.from === "duty" ? draw("poling", "merged", poling.merged, SHARE) : none(),
     offset: drawOffset(),

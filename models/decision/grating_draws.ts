@@ -48,13 +48,24 @@ export function gratingForPeak(
   return uniformGrating({ start: guide.poledFrom, length: guide.poledLength, period: guide.period });
 }
 
+/** Beyond this a grating is no grating. */
+const MOST_DUTY = 0.98;
+
 /** One grating with a guide's poling statistics: draw `index` of its own seeded stream. */
 export function drawGrating(guide: GuideInputs, draw: PolingDraw, index: number): Grating {
   const random = randomFrom(`${guide.id}|grating|${index}`);
   const at = { start: guide.poledFrom, length: guide.poledLength, period: guide.period };
   const { poling } = guide;
   if (poling.from === "windows") {
-    return realiseGrating({ ...at, windows: windowStatistics(poling.windows) }, random);
+    const seen = windowStatistics(poling.windows);
+    if (poling.duty === undefined) return realiseGrating({ ...at, windows: seen }, random);
+    // Windows of a die or wafer are not this guide's own: it may differ from them as guides do.
+    const shift = draw.duty - poling.duty.value;
+    const windows = seen.map((w) => ({
+      ...w,
+      duty: Math.min(MOST_DUTY, Math.max(1 - MOST_DUTY, w.duty + shift)),
+    }));
+    return realiseGrating({ ...at, windows }, random);
   }
   return realiseGrating({ ...at, duty: draw.duty, dutySd: draw.dutySd, missing: draw.merged }, random);
 }

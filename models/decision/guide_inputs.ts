@@ -39,7 +39,13 @@ export type PolingTraits =
   /** The complete list of domain walls, m from the input facet, ascending. */
   | { readonly from: "walls"; readonly walls: Float64Array; readonly basis: Basis }
   /** Inspected windows of this guide (measured) or of its die. */
-  | { readonly from: "windows"; readonly windows: readonly PolingWindow[]; readonly basis: Basis }
+  | {
+    readonly from: "windows";
+    readonly windows: readonly PolingWindow[];
+    readonly basis: Basis;
+    /** Windows of a whole die or wafer: the duty cycle as pooled for this guide, by whose u it may differ from them. */
+    readonly duty?: UsedTrait;
+  }
   /** Pooled or default duty cycle, its spread, and the share of inverted domains that are missing. */
   | {
     readonly from: "duty";

@@ -233,7 +233,12 @@ function resolvePoling(
       refs: refsOf("poling", own),
       note: `${own.length} windows`,
     });
-    return { from: "windows", windows: own.map(windowOf), basis };
+    const seen = { from: "windows" as const, windows: own.map(windowOf), basis };
+    if (basis === "measured") return seen;
+    const duty = pools.estimate("duty", guide, null, null);
+    if (duty === null) return seen;
+    roles.push({ ...roleOf("poling", duty), note: `spreads the duty of the windows of ${unit}` });
+    return { ...seen, duty: used(duty) };
   }
   const need = (trait: "duty" | "duty_sd" | "merged"): UsedTrait => {
     // Platforms need not speak of merged domains or spread: then there are none, exactly.

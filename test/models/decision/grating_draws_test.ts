@@ -53,3 +53,18 @@ Deno.test("convertingStretches() of walls at both ends and none between is the w
   const grating = gratingFromWalls(Float64Array.of(0.001, 0.019), section);
   assert.deepEqual(convertingStretches(guide, grating), [{ from: 0.001, to: 0.019 }]);
 });
+
+Deno.test("a guide that only its die's windows speak of may have another duty than they, by as much as guides differ", () => {
+  const seen = { from: "windows" as const, basis: "die" as const, windows: [window(0.001, 390, 0, 0.45)] };
+  const duty = { value: 0.455, u: 0.02, basis: "die" as const, key: "duty" };
+  const widths = (poling: typeof seen & { duty?: typeof duty }, drawn: number) => {
+    const { walls } = drawGrating({ ...guide, poling }, { duty: drawn, dutySd: 0, merged: 0 }, 3);
+    // Inverted domains lie between walls 0 and 1, 2 and 3 …
+    const inverted = Array.from({ length: walls.length >> 1 }, (_, k) => walls[2 * k + 1]! - walls[2 * k]!);
+    return inverted.reduce((a, b) => a + b, 0) / inverted.length / guide.period;
+  };
+  const own = widths(seen, 0.6);
+  assertClose(own, 0.45, { abs: 0.002 });
+  assertClose(widths({ ...seen, duty }, 0.455), own, { rel: 1e-12 });
+  assertClose(widths({ ...seen, duty }, 0.475) - own, 0.02, { rel: 0.01 });
+});

@@ -65,6 +65,14 @@ Deno.test("windows of a whole die or wafer serve its guides, its own windows fir
   deepEqual(from(HERE), ["die", 0.43]);
   deepEqual(from(SAME_WAFER), ["wafer", 0.47]);
   deepEqual(from(SAME_LOT), ["duty"]);
+  // What is told of a die is not told of the guide: how far guides differ comes on top.
+  const dutyOf = (guide: typeof HERE) => {
+    const { inputs, roles } = resolve(duty("A-1/01", 0.43), windows, guide);
+    ok(inputs.poling.from === "windows");
+    return { duty: inputs.poling.duty, told: roles.filter((r) => r.trait === "duty").length };
+  };
+  deepEqual(dutyOf(SAME_DIE), { duty: undefined, told: 0 });
+  ok(dutyOf(HERE).duty!.u > 0.005 && dutyOf(HERE).told === 1);
 });
 
 Deno.test("each role takes its own wavelength and polarisation", () => {
