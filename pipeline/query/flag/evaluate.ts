@@ -128,7 +128,12 @@ function withoutEchoes(flags: readonly Flag[]): Flag[] {
       first.set(key(f), Math.min(r, first.get(key(f)) ?? r));
     }
   }
-  return flags.filter((f) => rank(f) <= (first.get(key(f)) ?? Infinity));
+  const beyond = flags.filter((f) => f.scope === "wafer" && f.evidence.numbers.limit !== undefined);
+  // One or two others are no yardstick if one of them is itself beyond a limit.
+  const byWrongYardstick = (f: Flag) =>
+    rank(f) === 1 && Number(f.evidence.numbers.other_wafers) < 3 &&
+    beyond.some((b) => b.id !== f.id && b.evidence.numbers.trait === f.evidence.numbers.trait);
+  return flags.filter((f) => rank(f) <= (first.get(key(f)) ?? Infinity) && !byWrongYardstick(f));
 }
 
 /** A lot as the others are summed up. */

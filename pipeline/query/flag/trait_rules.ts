@@ -148,7 +148,14 @@ export function waferContrast(facts: LotFacts, rule: RuleOf<"wafer_contrast">): 
       } times what the readings and the platform's ` +
       `spread between wafers allow (${num(u, 2)})`,
     evidence: {
-      numbers: { trait: series.trait, value: wafer.value, others: rest, u, z },
+      numbers: {
+        trait: series.trait,
+        value: wafer.value,
+        others: rest,
+        other_wafers: new Set(series.dies.map((d) => d.wafer)).size - 1,
+        u,
+        z,
+      },
       readings: mergeRefs(wafer.dies.flatMap((d) => d.refs)),
       dies: wafer.dies.map((d) => d.unit),
     },

@@ -119,6 +119,14 @@ Deno.test("a wafer unlike its twins within the limits is watched", () => {
   });
   const flags = flagsOf(facts, only("titanium-off", "wafer-out"), []);
   deepEqual(flags.map((f) => [f.id, f.rule, f.severity]), [["L003-3", "wafer-out", "watch"]]);
+  // Beside a wafer that is beyond its limit its good twins are not out.
+  const far = simulatedLot(3, {
+    wafers: 3,
+    fault: (trait, g) => trait === "titanium_nm" && g.wafer.endsWith("-3") ? 12 : 0,
+  });
+  deepEqual(flagsOf(far, only("titanium-off", "wafer-out"), []).map((f) => [f.id, f.rule]), [
+    ["L003-3", "titanium-off"],
+  ]);
 });
 
 Deno.test("a lot that steps out of line with its forerunners is flagged; too few forerunners are said, not charted", () => {
