@@ -60,7 +60,9 @@ export function restoredInputs(
     pumpLoss: loss(guide.pumpLoss, waves.lambdaP, waves.polP),
     signal: arm(guide.signal, waves.lambdaS, waves.polS),
     idler: arm(guide.idler, waves.lambdaI, waves.polI),
-    ...(has("poling") && guide.poledLength > 0 ? { poling: designGrating(guide, platform) } : {}),
+    ...(has("poling") && guide.poledLength > 0
+      ? { poling: designGrating(guide, platform), mismatchSpread: null }
+      : {}),
   };
   return has("phase_matching") ? asDesigned(restored, designWidth_um, platform) : restored;
 }

@@ -1,5 +1,6 @@
 import assert from "node:assert/strict";
 import { type GuideInputs, predictGuide } from "../../../models/decision/mod.ts";
+import { restoredInputs } from "../../../models/decision/restored_inputs.ts";
 import { spreadFactor } from "../../../models/decision/mismatch_draws.ts";
 import { mismatch } from "../../../models/guides/mod.ts";
 import { realiseMismatch, uniformGrating } from "../../../models/poling/mod.ts";
@@ -204,4 +205,10 @@ Deno.test("a spread goes to other processes by the parameter that would explain 
   assert.deepEqual(factor(near, 5), { factor: 1, by: null });
   assert.deepEqual(factor({ ...waves, lambdaP: waves.lambdaP * 1.06 }, 5), { factor: 2, by: "width_um" });
   assert.equal(spreadFactor(other, told, { geometryErrors: [] }, () => () => 0), null);
+});
+
+Deno.test("a guide whose poling is put right has no spread left, one whose losses are has", () => {
+  const aims = { platform: { targets: {}, defaults: {} }, designWidth_um: 3 };
+  assert.equal(restoredInputs(spread(300), ["poling"], doubling, aims).mismatchSpread, null);
+  assert.equal(restoredInputs(spread(300), ["loss"], doubling, aims).mismatchSpread!.sd.value, 300);
 });
