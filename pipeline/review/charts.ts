@@ -84,7 +84,8 @@ export function controlChart(c: ChartReview): Html {
   const limits = [["upper limit", c.upper], ["centre", c.centre], ["lower limit", c.lower]] as const;
   return chart(`Control chart of ${c.words}`, {
     width: WIDTH,
-    height: 230,
+    height: 240,
+    marginTop: 30,
     marginLeft: 64,
     marginRight: 84,
     marginBottom: 60,

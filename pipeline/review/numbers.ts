@@ -25,3 +25,6 @@ const raised = (power: number): string => String(power).replace(/./g, (c) => "â
 
 export const percentText = (x: number | null): string =>
   x === null ? "â€“" : `${shown(100 * x, x < 0.1 ? 2 : 3)} %`;
+
+/** As the first word of a sentence. */
+export const capitalised = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1);

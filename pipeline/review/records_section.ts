@@ -104,7 +104,11 @@ export function methodSection({ provenance, cautions, platform }: ReviewData): H
     </div>
     <ul>
       <li>A die is decided by its best guide: accepted when the guide meets every requirement in at least the asked share of 256 seeded draws of its traits (JCGM 101, JCGM 106), rejected when in too few, else on hold.</li>
-      <li>Intervals of yields are exact (Clopper &amp; Pearson 1934), with an effective number of dies where wafers share a fate (Korn &amp; Graubard 1998).</li>
+      <li>Intervals of yields: exact (Clopper &amp; Pearson 1934) and score (Wilson 1927); where wafers are taken together, exact with an effective number of dies (Korn &amp; Graubard 1998). Expected dies are the sum of the probabilities; their range holds for independent dies, the wider one if all dies of a wafer share their doubts.</li>
+      <li>Traits at target: the same draws computed again with one group of traits at the platform's targets. What the single rises leave of the whole rise is the interaction.</li>
+      <li>Lots in time: individuals charts with limits from the lots before (NIST/SEMATECH e-Handbook, 6.3.2.2). Wafers: means and standard deviations of dies (6.3.2.1); as wafers of different lots differ by nature, a wafer is judged by how wafers and lots before differed (Satterthwaite 1946). Only lots computed by the same model version from the same files are compared.</li>
+      <li>Growth of a spread: ratio of variances (e-Handbook, 1.3.5.9), corrected for all wafers and traits compared (Holm 1979), with allowance for readings worse than before.</li>
+      <li>Capability: cp with its interval by chi-squared, cpk with Bissell's (1990), of die means as read: the readings' own uncertainty makes it look worse, not better.</li>
       <li>Suspects: Fisher's exact test, dealt among what shares its fate as a whole (wafers where a step is a wafer's), corrected for everything tried (Holm 1979).</li>
       <li>Trends over the wafer: least squares on slope and bow with F tests; the edge by Welch's test; neighbours by Moran's I of what the trend leaves. Told below p = 0.01, each by itself: with many traits one in a hundred is told by chance.</li>
       <li>A trait of a die is the mean of its readings, weighted by their u and the prior spread between guides.</li>

@@ -1,6 +1,6 @@
 import type { CapabilityReview, WaferChartReview } from "../review_types.ts";
 import { type Html, html } from "./html.ts";
-import { percentText, shown } from "./numbers.ts";
+import { capitalised, percentText, shown } from "./numbers.ts";
 import { chart, figure, Plot } from "./plot.ts";
 import { csvLink, foldedTable, type PageTable, tableOf } from "./table.ts";
 
@@ -33,7 +33,8 @@ export function meanChart(c: WaferChartReview, lot: string): Html {
     }`;
   return chart(`Wafer means of ${c.words}`, {
     width: WIDTH,
-    height: 230,
+    height: 240,
+    marginTop: 30,
     marginLeft: 64,
     marginRight: 84,
     marginBottom: 60,
@@ -83,7 +84,8 @@ export function spreadChart(c: WaferChartReview, lot: string): Html {
   const line = { x: "wafer", stroke: "currentColor", strokeOpacity: 0.7, strokeDasharray: "4 3" } as const;
   return chart(`Spread of dies within wafers: ${c.words}`, {
     width: WIDTH,
-    height: 170,
+    height: 180,
+    marginTop: 30,
     marginLeft: 64,
     marginRight: 84,
     marginBottom: 60,
@@ -152,7 +154,7 @@ export function waferChartsPart(charts: readonly WaferChartReview[], lot: string
           open
         `
         : null}><summary>Wafers: ${c.words}${isOut(c) ? ", out of line" : ""}</summary>${figure(
-          `${c.words}${c.unit === "" ? "" : `, ${c.unit}`}. ${c.sentence}.`,
+          `${capitalised(c.words)}${c.unit === "" ? "" : `, ${c.unit}`}. ${c.sentence}.`,
           [meanChart(c, lot), spreadChart(c, lot)],
           foldedTable(waferTable(c)),
         )}</details>

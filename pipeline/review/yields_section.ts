@@ -1,7 +1,7 @@
 import type { RequestReview, ReviewData, ShareOf } from "../review_types.ts";
 import { controlChart, limitChart, lotRows, yieldChart } from "./charts.ts";
 import { type Html, html } from "./html.ts";
-import { percentText, shown } from "./numbers.ts";
+import { capitalised, percentText, shown } from "./numbers.ts";
 import { figure } from "./plot.ts";
 import { foldedTable, type PageTable } from "./table.ts";
 import { waferChartsPart } from "./wafer_charts.ts";
@@ -136,7 +136,7 @@ export function chartsSection(data: ReviewData): Html {
       ? "The lot is in line."
       : `Lot ${data.lot} is out of line: ${c.signals.join("; ")}.`;
     return figure(
-      `${c.words}${c.unit === "" ? "" : `, ${c.unit}`}. ${told}`,
+      `${capitalised(c.words)}${c.unit === "" ? "" : `, ${c.unit}`}. ${told}`,
       controlChart(c),
       foldedTable(table),
     );
