@@ -60,7 +60,7 @@ export function peakShape(x: Float64Array, y: Float64Array, startWidth: number):
         break;
       }
     }
-    if (moved < 1e-4) break;
+    if (moved < 1e-3) break; // the next step would be a thousandth of this one
   }
   const reach = x[n - 1]! - x[0]!;
   if (!(width > 0 && width < reach && scale > 0)) return null;

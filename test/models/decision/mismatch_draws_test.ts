@@ -78,30 +78,36 @@ function bruteForce(sd: number, draw: number) {
     const sign = k % 8 >= 2 && k % 8 < 6 ? -1 : 1;
     return { x, phase: K * x + theta - here * h / 2, sign };
   });
-  const power = (x: number) => {
+  // Every midpoint's phasor is turned on from one Δβ of a grid to the next.
+  const [low, step, count] = [-2400, 8, 601];
+  const phasors = at.map((p) => {
+    const phase = p.phase + low * p.x;
+    return {
+      re: p.sign * Math.cos(phase),
+      im: p.sign * Math.sin(phase),
+      c: Math.cos(step * p.x),
+      s: Math.sin(step * p.x),
+    };
+  });
+  const power = Float64Array.from({ length: count }, () => {
     let [re, im] = [0, 0];
-    for (const p of at) {
-      re += p.sign * Math.cos(p.phase + x * p.x);
-      im += p.sign * Math.sin(p.phase + x * p.x);
+    for (const p of phasors) {
+      re += p.re;
+      im += p.im;
+      [p.re, p.im] = [p.re * p.c - p.im * p.s, p.re * p.s + p.im * p.c];
     }
     return (re * re + im * im) / (n * n);
-  };
-  const step = 12;
-  let top = 0;
-  let best = 0;
-  for (let x = -2400; x <= 2400; x += step) {
-    const p = power(x);
-    if (p > best) [top, best] = [x, p];
-  }
-  const [a, c] = [power(top - step), power(top + step)];
-  const shift = (a - c) / (2 * (a - 2 * best + c));
-  const height = best - (a - c) * shift / 4;
+  });
+  const top = power.indexOf(Math.max(...power));
+  const [a, b, c] = [power[top - 1]!, power[top]!, power[top + 1]!];
+  const height = b - (a - c) ** 2 / (8 * (a - 2 * b + c));
   const half = (direction: number): number => {
-    let x = top;
-    while (power(x + direction) > height / 2) x += direction;
-    return Math.abs(x + direction / 2 - top - shift * step);
+    let k = top;
+    while (power[k]! > height / 2) k += direction;
+    const [outer, inner] = [power[k]!, power[k - direction]!];
+    return step * (Math.abs(k - top) - (height / 2 - outer) / (inner - outer));
   };
-  return { height, width: half(-2) + half(2) };
+  return { height, width: half(-1) + half(1) };
 }
 
 Deno.test("efficiency and acceptance under a spread are those of plain integrals over the same realisations", () => {
