@@ -19,7 +19,7 @@ import { responseOfMode } from "./mode_response.ts";
 import type { CutOff, SolvedMode } from "./solve_guide.ts";
 
 /** Changes whenever the numbers of a table would. */
-export const SOLVER_VERSION = 1;
+export const SOLVER_VERSION = 2;
 /** How fine a table is. */
 export interface TableGrid {
   readonly cells: GridCells;

@@ -8,8 +8,9 @@ import type { CrossSection } from "./cross_section.ts";
 
 /**
  * Which field is solved for. `scalar`: E, continuous with its slope everywhere: exact for E along the surface of a
- * weakly graded guide. `across`: E across the surface, by H = n²E whose flux H_y/n² is continuous; `along` is the
- * crystal's index for E along the guide, the scale of depth diffraction (n_s for an isotropic body).
+ * weakly graded guide. `across`: E across the surface, by H = n²E whose flux H_y/n² is continuous, n² as in the middle
+ * of the guide: at side walls, along which it stands, E itself goes on with its slope. `along` is the crystal's index for
+ * E along the guide, the scale of depth diffraction (n_s for an isotropic body).
  */
 export type FieldKind = { readonly kind: "scalar" } | { readonly kind: "across"; readonly along: number };
 
@@ -70,8 +71,8 @@ export function modeMatrix(
       for (let c = 0; c < 4; c++) {
         const v = contrast[(2 * j + (c >> 1)) * wide + 2 * i + (c & 1)]!;
         highest = Math.max(highest, v);
-        // n_s²/n²: what multiplies both sides of the equation for H (1 for the scalar field).
-        const m = field.kind === "scalar" ? 1 : s2 / (s2 + v);
+        // n_s²/n² in the middle: what multiplies both sides of the equation for H (1 for the scalar field).
+        const m = field.kind === "scalar" ? 1 : s2 / (s2 + contrast[(2 * j + (c >> 1)) * wide]!);
         corner[c] = m;
         if (at[c]! < 0) continue;
         mass[at[c]!]! += m * area;

@@ -126,9 +126,9 @@ Deno.test("where the exchange depth hardly counts both signs are told, and they 
   const point = { ...POINT, waves: TYPE_TWO, geometry: { width_um: 3 } };
   const depth = nudgeEffects(model, point, changedModels("rb-ktp-zcut", 3, TYPE_TWO))
     .filter((e) => e.parameter === "exchange_depth_um");
-  // On 160 × 240 cells: −3.326 and +0.303 1/m for ±0.1 µm; here the grid is coarse.
+  // On 160 × 240 cells: −4.481 and +1.481 1/m for ±0.1 µm; here the grid is coarse.
   equal(depth.map((e) => e.by).join(), "0.1,-0.1");
-  assertClose(depth[0]!.deltaBeta, -3.326, { abs: 0.2 });
-  assertClose(depth[1]!.deltaBeta, 0.303, { abs: 0.2 });
+  assertClose(depth[0]!.deltaBeta, -4.481, { abs: 0.2 });
+  assertClose(depth[1]!.deltaBeta, 1.481, { abs: 0.2 });
   ok(depth[0]!.efficiency! > 0.005 && depth[1]!.efficiency! < -0.005);
 });

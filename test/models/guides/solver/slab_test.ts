@@ -81,6 +81,33 @@ Deno.test("a field across the layers obeys the closed form of TM slabs", () => {
   }
 });
 
+Deno.test("a field along two side walls is a TE wave of the slab that they make, whatever it is across the surface", () => {
+  // Uniform in depth: E stands along the walls, so that the closed form of TE holds; that of TM is 1.9e-5 lower.
+  const [core, clad, lambda, width] = [1.83, 1.815, 0.8e-6, 3e-6];
+  const slab = { core, substrate: clad, cover: clad, thickness: width };
+  const [te, tm] = (["TE", "TM"] as const).map((pol) => slabIndex(slab, pol, lambda)!);
+  const half = width / 2 * 2 * Math.PI / lambda; // k0 = 1
+  const x: PlannedAxis = {
+    segments: [
+      { dense: 0, far: half, cells: 24, scale: Infinity },
+      { dense: half, far: half + 20 / Math.sqrt(te! ** 2 - clad ** 2), cells: 24, scale: half },
+    ],
+    low: "mirror",
+    high: "zero",
+  };
+  const mu = solvedMu(
+    clad,
+    (at) => at < half ? core ** 2 - clad ** 2 : 0,
+    x,
+    UNIFORM,
+    0,
+    { kind: "across", along: clad },
+  );
+  const found = Math.sqrt(clad ** 2 + mu!);
+  assertClose(found, te!, { abs: 2e-7 });
+  assert.ok(te! - tm! > 1e-5, `found ${te! - tm!}`);
+});
+
 Deno.test("a crystal's other index scales the depth of a field across the surface", () => {
   // (ε_across/ε_along)·H″ + k0²·(…)H: as an isotropic slab of thickness·√(ε_along/ε_across) between equal claddings.
   const [core, clad, along] = [2.2, 2.19, 2.3];
