@@ -111,15 +111,15 @@ export async function loadPlatform(id: string, folder?: string): Promise<LoadedP
   return { platform, indexRows, areaRows, file, fingerprint: fingerprintOf(hashes) };
 }
 
-/** A table that states what its guides stand on is held against it before anything is computed with it. */
+/** A table is held against what its guides stand on before anything is computed with it. */
 function checkBounds(
   { index, material, axes }: Pick<Platform, "index" | "material" | "axes">,
   rows: readonly IndexRow[],
   file: string,
 ): void {
-  if (index.from !== "table" || index.substrate === undefined) return;
+  if (index.from !== "table") return;
   try {
-    checkTableBounds(rows, material, axes, index.substrate);
+    checkTableBounds(rows, material, axes, index.substrate ?? "unknown");
   } catch (cause) {
     if (!(cause instanceof RangeError)) throw cause;
     throw new InputError(`Cannot use platform ${file}: ${cause.message}`, { file, column: "n_eff" }, {

@@ -4,8 +4,11 @@ import type { PolarisationAxes } from "./index_model.ts";
 import { silicaIndex } from "./ridge.ts";
 import type { IndexTableRow } from "./table_index.ts";
 
-/** What a guide stands on: silica, another material of this index, or (a diffused guide) the crystal itself. */
-export type TableSubstrate = "silica" | "crystal" | number;
+/**
+ * What a guide stands on: silica, another material of this index, or (a diffused guide) the crystal itself; `unknown`, air
+ * at the least.
+ */
+export type TableSubstrate = "silica" | "crystal" | "unknown" | number;
 
 /** No diffusion or exchange raises an index by more; common practice, no source. */
 const LARGEST_INCREASE = 0.2;
@@ -25,14 +28,16 @@ export function checkTableBounds(
   for (const row of rows) {
     const lambda = row.wavelength_nm * 1e-9;
     const bulk = refractiveIndex(material, axes[row.polarisation], lambda, row.temperature_c);
-    const [low, high] = substrate === "crystal"
-      ? [bulk, bulk + LARGEST_INCREASE]
+    const [low, high] = substrate === "crystal" || substrate === "unknown"
+      ? [substrate === "crystal" ? bulk : 1, bulk + LARGEST_INCREASE]
       : [substrate === "silica" ? silicaIndex(lambda) : substrate, bulk];
     if (row.n_eff > low && row.n_eff < high) continue;
     const { n_eff, ...node } = row;
     const place = Object.entries(node).map(([key, value]) => `${key} ${value}`).join(", ");
     const names = substrate === "crystal"
       ? [`the crystal's ${low.toFixed(5)}`, `${LARGEST_INCREASE} more`]
+      : substrate === "unknown"
+      ? ["air's 1", `${LARGEST_INCREASE} more than the crystal's ${bulk.toFixed(5)}`]
       : [`the substrate's ${low.toFixed(5)}`, `the film's ${high.toFixed(5)}`];
     throw new RangeError(
       `Cannot use the index table: found n_eff ${n_eff} at ${place}; a guided mode lies between ${

@@ -36,3 +36,12 @@ Deno.test("a diffused guide's n_eff lies above the crystal's, and not far", () =
   );
   throws(() => checkTableBounds([{ ...diffused, n_eff: 2.4 }], "CLN", AXES, "crystal"), /0\.2 more/);
 });
+
+Deno.test("a table that does not say what it stands on is still held between air and a little above the crystal", () => {
+  doesNotThrow(() => checkTableBounds([row, { ...row, n_eff: 2.2 }], "CLN", AXES, "unknown"));
+  throws(
+    () => checkTableBounds([{ ...row, n_eff: 0.99 }], "CLN", AXES, "unknown"),
+    /between air's 1 and 0\.2 more/,
+  );
+  throws(() => checkTableBounds([{ ...row, n_eff: 2.35 }], "CLN", AXES, "unknown"), /the crystal's 2\.13\d+/);
+});
