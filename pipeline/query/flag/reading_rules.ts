@@ -6,9 +6,19 @@ import { seriesWords, unitOf } from "./series.ts";
 import { type Flag, mergeRefs, num, plural, pText, refText } from "./types.ts";
 import { inPlay } from "./verdicts.ts";
 
-/** Findings of the reduction: readings that contradict others or what is possible; one flag per unit and kind. */
+/** More units of one wafer with the same finding are told together. */
+const MOST_SINGLE = 3;
+
+interface Finding {
+  readonly code: string;
+  readonly unit: string;
+  readonly severity: Severity;
+  readonly statements: string[];
+}
+
+/** Findings of the reduction: readings that contradict others or what is possible; one flag per unit and kind, or per wafer where they are many. */
 export function readingRemarks(facts: LotFacts, rule: RuleOf<"reading_remarks">): Flag[] {
-  const groups = new Map<string, { code: string; unit: string; severity: Severity; statements: string[] }>();
+  const groups = new Map<string, Finding>();
   for (const { code, unit, statement } of facts.reduceRemarks) {
     const severity = rule.codes[code];
     if (severity === undefined) continue;
@@ -16,23 +26,44 @@ export function readingRemarks(facts: LotFacts, rule: RuleOf<"reading_remarks">)
     held.statements.push(statement);
     groups.set(`${code}|${unit}`, held);
   }
-  return [...groups.values()].map(({ code, unit, severity, statements }) => {
-    const named = statements.flatMap((s) => refsIn(s, facts));
-    return {
-      ...scopeOf(unit),
-      lot: facts.lot,
-      rule: rule.rule,
-      severity,
-      brief: `${unit}: ${code.replaceAll("_", " ")}`,
-      statement: joinedStatements(statements),
-      evidence: {
-        numbers: { code, findings: statements.length },
-        readings: mergeRefs(named.length > 0 ? named : refsOfUnit(facts, unit, code)),
-        ...(unit.split("/").length === 3 ? { guides: [unit] } : {}),
-      },
-      suspects: [],
-    };
-  });
+  const alike = Map.groupBy(
+    groups.values(),
+    (f) => `${f.code}|${scopeOf(f.unit).scope}|${scopeOf(f.unit).id}`,
+  );
+  return [...alike.values()].flatMap((own) =>
+    own.length > MOST_SINGLE
+      ? [doubted(facts, rule.rule, own)]
+      : own.map((f) => doubted(facts, rule.rule, [f]))
+  );
+}
+
+function doubted(facts: LotFacts, rule: string, findings: readonly Finding[]): Flag {
+  const [{ code, unit, severity }] = findings as [Finding];
+  const statements = findings.flatMap((f) => f.statements);
+  const named = statements.flatMap((s) => refsIn(s, facts));
+  const units = findings.map((f) => f.unit);
+  const words = code.replaceAll("_", " ");
+  const { id } = scopeOf(unit);
+  return {
+    ...scopeOf(unit),
+    lot: facts.lot,
+    rule,
+    severity,
+    brief: units.length === 1 ? `${unit}: ${words}` : `${words} on ${plural(units.length, "unit")}`,
+    statement: units.length === 1
+      ? joinedStatements(statements)
+      : `${id}: ${words} on ${units.length} units, such as ${statements.slice(0, 3).join("; ")}; and ${
+        plural(statements.length - 3, "more finding")
+      }`,
+    evidence: {
+      numbers: { code, findings: statements.length },
+      readings: mergeRefs(
+        named.length > 0 ? named : findings.flatMap((f) => refsOfUnit(facts, f.unit, code)),
+      ),
+      ...(units.every((u) => u.split("/").length === 3) ? { guides: units } : {}),
+    },
+    suspects: [],
+  };
 }
 
 /** Several findings about one unit, without telling its name each time. */

@@ -58,10 +58,21 @@ function comparedWith(
   }
   const yields = charts.filter((c) => c.key.startsWith("yield|"));
   if (yields.length === 0) {
-    return `Compared with earlier lots: ${
-      plural(compared, "lot")
-    } of ${platform}, too few for a control chart; see the yields over lots`;
+    const why = charts.length > 0
+      ? `none of its charts is of a yield: there is none to compare, or the lots before do not differ`
+      : "too few for a control chart; see the yields over lots";
+    const out = charts.filter((c) => c.signals.length > 0).map((c) => c.words);
+    return `Compared with earlier lots: ${plural(compared, "lot")} of ${platform}, ${why}${
+      charts.length === 0
+        ? ""
+        : out.length === 0
+        ? "; every trait charted is in line"
+        : `; out of line: ${out.join(", ")}`
+    }`;
   }
+  const traitsOut = charts.filter((c) => !c.key.startsWith("yield|") && c.signals.length > 0).map((c) =>
+    c.words
+  );
   return `Compared with earlier lots: ${
     requests.map((r) => yields.find((c) => c.key === `yield|${r.request}`)).filter((c) => c !== undefined)
       .map((c) =>
@@ -69,7 +80,7 @@ function comparedWith(
           plural(c.points.length - 1, "lot")
         } before have ${percent(c.centre)}`
       ).join("; ")
-  }`;
+  }${traitsOut.length === 0 ? "; traits are in line" : `; out of line: ${traitsOut.join(", ")}`}`;
 }
 
 /** Flags that call for a decision, one line per lot, wafer or coating run. */
