@@ -68,9 +68,10 @@ export function analyseGuide(
     sampleGuide(model, checked, inputs, options, size);
   const made = sampled(guide);
   const probability = jointOf(checked, made);
+  const matched = made.exists.includes(1);
   const restored = (group: RestoreGroup | "all"): RestoredGuide => {
     const groups = (group === "all" ? RESTORE_GROUP_NAMES : [group]).filter((g) => matters(checked, g));
-    const found = groups.length === 0
+    const found = groups.every((g) => !matched && !movesPoint(guide, g))
       ? probability
       : jointOf(checked, sampled(restoredInputs(guide, groups, checked, question)));
     return { group, probability: found, decision: decide(found, thresholds) };
@@ -123,6 +124,10 @@ function matters({ requirements }: CheckedRequest, group: RestoreGroup): boolean
   const roles: readonly Role[] = RESTORE_GROUPS[group];
   return requirements.some((r) => RESTS_ON[r.figure].some((role) => roles.includes(role)));
 }
+
+/** Whether a group can bring a guide that matches nowhere to an operating point. */
+const movesPoint = ({ poling }: GuideInputs, group: RestoreGroup): boolean =>
+  group === "phase_matching" || group === "poling" && poling.from === "walls";
 
 /**
  * The decision as its draws leave it open. That a draw has no operating point is a matter of its offset alone: the offset

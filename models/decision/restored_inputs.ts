@@ -1,6 +1,5 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { GEOMETRY_PARAMETERS } from "../guides/mod.ts";
-import { uniformGrating } from "../poling/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import type { GuideGeometry, Polarisation } from "../../shared/vocabulary.ts";
@@ -60,9 +59,7 @@ export function restoredInputs(
     pumpLoss: loss(guide.pumpLoss, waves.lambdaP, waves.polP),
     signal: arm(guide.signal, waves.lambdaS, waves.polS),
     idler: arm(guide.idler, waves.lambdaI, waves.polI),
-    ...(has("poling") && guide.poledLength > 0
-      ? { poling: designGrating(guide, platform), mismatchSpread: null }
-      : {}),
+    ...(has("poling") ? { poling: designGrating(platform), mismatchSpread: null } : {}),
   };
   return has("phase_matching") ? asDesigned(restored, designWidth_um, platform) : restored;
 }
@@ -74,19 +71,15 @@ const exactly = (value: number, key: string): UsedTrait => ({
   key: `target|${key}`,
 });
 
-/** The mask's grating as a list of walls; with a target of spread or missing domains, as statistics. */
-function designGrating(guide: GuideInputs, { targets }: Pick<Platform, "targets">): GuideInputs["poling"] {
+/** The mask's grating: statistics without spread make it wall by wall. */
+function designGrating({ targets }: Pick<Platform, "targets">): GuideInputs["poling"] {
   const { duty = DESIGN_DUTY, duty_sd = 0, merged = 0 } = targets;
-  if (duty_sd > 0 || merged > 0) {
-    return {
-      from: "duty",
-      duty: exactly(duty, "duty"),
-      dutySd: exactly(duty_sd, "duty_sd"),
-      merged: exactly(merged, "merged"),
-    };
-  }
-  const at = { start: guide.poledFrom, length: guide.poledLength, period: guide.period };
-  return { from: "walls", walls: uniformGrating({ ...at, duty }).walls, basis: "platform" };
+  return {
+    from: "duty",
+    duty: exactly(duty, "duty"),
+    dutySd: exactly(duty_sd, "duty_sd"),
+    merged: exactly(merged, "merged"),
+  };
 }
 
 /** The cross-section as drawn, the same all along the guide, and the mismatch as calculated for it. */

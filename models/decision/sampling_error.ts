@@ -5,8 +5,11 @@ import type { SampleSize } from "./draws.ts";
 
 /** A decision is settled when its probability is this many standard errors of the sample away from both thresholds. */
 const SETTLED_ERRORS = 2;
-/** A requirement whose limit is further than this from the figure's mean, in units of its u, is met or missed for sure. */
-const SURE_MARGIN = 3;
+/**
+ * A requirement whose limit is further than this from the figure's mean, in units of its u, is taken to be met or missed for
+ * sure. Of 16 draws that margin is known to 0.4: what it lacks to 1.28, where 0.9 of all draws conform, is 1.7 errors.
+ */
+const SURE_MARGIN = 2;
 /** A figure follows the spectra when at least this share of its variance lies between draws of different spectra. */
 const CARRIED_SHARE = 0.5;
 
