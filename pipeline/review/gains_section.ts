@@ -81,11 +81,9 @@ function gainTable(data: ReviewData, r: RequestReview): PageTable {
 
 function limitsByWafer(data: ReviewData, r: RequestReview): PageTable {
   return {
-    caption: `What limits dies for ${r.request}, by wafer`,
+    caption: `What limits dies for ${r.request}, by wafer, and how many would pass if that alone were met`,
     file: `limits-by-wafer-${data.lot}-${r.request}`,
-    columns: ["wafer", "requirement", "rejected", "on hold", "would pass if it alone were met"].map((
-      title,
-    ) => ({ title })),
+    columns: ["wafer", "requirement", "rejected", "on hold", "would pass"].map((title) => ({ title })),
     rows: r.limits_by_wafer.flatMap((w) =>
       w.limits.map((l) => [w.wafer, l.figure, l.rejected, l.on_hold, l.would_pass])
     ),

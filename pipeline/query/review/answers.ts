@@ -11,6 +11,8 @@ export interface LotsBefore {
   readonly leftOut: readonly string[];
 }
 
+const NOTHING_PREDICTED = "No request was predicted that a guide of the lot matches";
+
 /** What the first screen says: the answers that the meeting came for, in words. */
 export function answersOf(
   requests: readonly RequestReview[],
@@ -19,11 +21,15 @@ export function answersOf(
   lots: LotsBefore,
 ): Answers {
   return {
-    how: [...requests.map(howDid), comparedWith(requests, charts, lots), ...lots.leftOut],
+    how: [
+      ...(requests.length === 0 ? [NOTHING_PREDICTED] : requests.map(howDid)),
+      comparedWith(requests, charts, lots),
+      ...lots.leftOut,
+    ],
     out: outOf(flags),
     behind: behind(flags),
-    pay_off: payOff(requests, flags),
-    goes: requests.flatMap(goes),
+    pay_off: requests.length === 0 ? [NOTHING_PREDICTED] : payOff(requests, flags),
+    goes: requests.length === 0 ? [NOTHING_PREDICTED] : requests.flatMap(goes),
   };
 }
 

@@ -106,8 +106,12 @@ Deno.test("the demo's lots: flagged, reviewed, and on pages that stand alone", a
         /heralded-1582 loses 10 of 16 dies: 8 on wafer R08-2 \(poling with recipe P5-long\), 2 under coating run C203/,
       );
       match(answers.goes[1]!, /^heralded-1582: R08-1\/01, 02, 03, 07, 08, 10; best is R08-1\//);
+      match(
+        answers.pay_off[1]!,
+        /^heralded-1582: poling at target would bring 8 dies more \(6 to 14 of 16\)/,
+      );
       const [first] = dom(pages.get("R08.html")!).querySelectorAll(".answers");
-      for (const line of [...answers.how, ...answers.out, ...answers.goes]) {
+      for (const line of [...answers.how, ...answers.out, ...answers.pay_off, ...answers.goes]) {
         ok(first!.textContent.includes(line), line);
       }
     });
@@ -150,9 +154,28 @@ Deno.test("the demo's lots: flagged, reviewed, and on pages that stand alone", a
             ) => [y.id, Number(y.accepted), Number(y.exact_high), Number(y.score_low), Number(y.expected)]),
             request.wafers.map((w) => [w.wafer, w.good, w.exact.high, w.score.low, w.expected!.dies]),
           );
+          const restored = files.get(`restored-${lot}-${request.request}.csv`)!;
+          for (const gain of request.gains) {
+            const own = restored.filter((row) => row.unit === gain.id);
+            deepEqual(
+              own.map((row) => row["at target"]),
+              ["as made", ...gain.groups.map((g) => g.words), "all", "interaction"],
+            );
+            equal(Number(own.at(-2)!.accepted), gain.all_at_target);
+            // The single rises and the interaction make the whole rise.
+            const sum = gain.groups.reduce((total, g) => total + g.rise, gain.interaction);
+            ok(Math.abs(sum - (gain.all_at_target - gain.as_made) / gain.dies) < 1e-12);
+          }
+          equal(request.gains.length, request.wafers.length > 1 ? 1 + request.wafers.length : 1);
           deepEqual(
             yields.filter((y) => y.scope === "group").map((y) => [y.id, Number(y.accepted), Number(y.dies)]),
             request.groups.map((g) => [g.group, g.good, g.of]),
+          );
+        }
+        if (data.capabilities.length > 0) {
+          deepEqual(
+            files.get("capability.csv")!.map((row) => [row.unit, row.cpk === "" ? null : Number(row.cpk)]),
+            data.capabilities.map((c) => [c.wafer ?? "lot", c.cpk?.value ?? null]),
           );
         }
         for (const trait of data.traits) {
