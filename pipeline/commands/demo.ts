@@ -8,6 +8,7 @@ import { loadPlatform } from "../platforms.ts";
 import { loadRequests, requestFolders } from "../requests.ts";
 import { note, print, threadsOf } from "./common.ts";
 import { DemoChecks } from "./demo_checks.ts";
+import { falseContradictions } from "./demo_contradictions.ts";
 import { DemoFlags } from "./demo_flags.ts";
 import { bringUpToDate, solvingProgress } from "./predictions.ts";
 import { rankCommand } from "./rank.ts";
@@ -84,9 +85,13 @@ export async function demoCommand(
   const missed = found.filter((f) => f.length > 0).length;
   const alarms: string[] = [];
   for (const { lot } of lots.filter((l) => l.faults.length === 0)) {
-    const own = await flags.falseAlarms(lot);
+    const own = [...await flags.falseAlarms(lot), ...await falseContradictions(ledger, lot)];
     alarms.push(...own);
-    print(`${own.length === 0 ? "quiet " : "ALARM "}  ${lot} was made without a fault and raises no alarm`);
+    const lines = wrap(
+      `${lot} was made without a fault: no alarm, and no reading contradicts the others`,
+      70,
+    );
+    print(`${own.length === 0 ? "quiet " : "ALARM "}  ${lines.join("\n        ")}`);
     for (const line of own) print(wrap(`not so: ${line}`, 70).map((l) => `          ${l}`).join("\n"));
   }
   print(

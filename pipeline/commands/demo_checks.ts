@@ -5,6 +5,7 @@ import type { Ledger } from "../ledger/mod.ts";
 import { type RankedEntry, rankGuides } from "../query/rank.ts";
 import { runSql } from "../query/sql.ts";
 import type { LoadedRequest } from "../requests.ts";
+import { missedContradiction } from "./demo_contradictions.ts";
 
 /** Compares what the program says with what was planted in the demo's lots. */
 export class DemoChecks {
@@ -60,6 +61,8 @@ export class DemoChecks {
       }
       case "reading-doubted":
         return await this.#doubted(lot, e.file, e.line, e.unit);
+      case "contradicted":
+        return await missedContradiction(this.ledger, lot, e);
       case "walls-not-exact": {
         const exact = await this.#texts(
           `SELECT unit FROM traits WHERE lot = ${

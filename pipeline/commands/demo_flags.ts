@@ -9,7 +9,10 @@ export class DemoFlags {
 
   constructor(readonly ledger: Ledger) {}
 
-  /** What the flags should say of a fault and don't: a fault of a step, a coating run or a mask group has to be flagged and blamed. */
+  /**
+   * What the flags should say of a fault and don't: a fault of a step, a coating run or a mask group has to be flagged and
+   * blamed, a contradictory reading to be named by file and line.
+   */
   async missed(fault: PlantedFault): Promise<string[]> {
     const { step, scope, unit, lot } = fault;
     if (step !== undefined) {
@@ -36,6 +39,15 @@ export class DemoFlags {
         f.suspects[0]?.kind === "group" && f.suspects[0].name === unit
       );
       return own === undefined ? [`group ${unit} is flagged as matching nothing`] : [];
+    }
+    const contradicted = fault.expect.find((e) => e.kind === "contradicted");
+    if (contradicted !== undefined) {
+      const { file, line } = contradicted;
+      const told = (await this.#of(lot)).filter((f) => f.rule === "contradiction").map((f) =>
+        f.evidence.readings.map((r) => `${r.file_name}:${r.lines.join()}`).join()
+      );
+      const at = `${file}:${line},${line}`;
+      return told.length === 1 && told[0] === at ? [] : [`one flag names ${file}:${line}; named: ${told}`];
     }
     return [];
   }
