@@ -106,26 +106,43 @@ export function unlistedCut(facts: LotFacts, rule: RuleOf<"unlisted_cut">): Flag
       if (d.unavailable !== null && !facts.design.unavailable.has(d.die_id)) cut.set(d.die_id, d.unavailable);
     }
   }
-  return [...cut].map(([die, why]) => ({
+  const byWafer = Map.groupBy(cut, ([die]) => waferOf(die));
+  return [...byWafer.values()].flatMap((dies) =>
+    (dies.length > MOST_SINGLE ? [dies] : dies.map((d) => [d])).map((own) => cutFlag(facts, rule, own))
+  );
+}
+
+function cutFlag(
+  facts: LotFacts,
+  rule: RuleOf<"unlisted_cut">,
+  cut: readonly (readonly [die: string, why: string])[],
+): Flag {
+  const [die, why] = cut[0]!;
+  const dies = cut.map(([d]) => d);
+  const one = cut.length === 1;
+  return {
     scope: "wafer",
     id: waferOf(die),
     lot: facts.lot,
     rule: rule.rule,
     severity: rule.severity,
-    brief: `die ${die} was cut and is not listed`,
-    statement:
-      `Die ${die}: ${why}, but lot.json does not list it as unavailable; it is not accepted for anything`,
+    brief: one ? `die ${die} was cut and is not listed` : `${cut.length} dies were cut and are not listed`,
+    statement: one
+      ? `Die ${die}: ${why}, but lot.json does not list it as unavailable; it is not accepted for anything`
+      : `Wafer ${
+        waferOf(die)
+      }: ${cut.length} dies were cut, such as ${die} (${why}), but lot.json does not list ` +
+        `them as unavailable; they are not accepted for anything`,
     evidence: {
-      numbers: { die },
+      numbers: { die: dies.join(", ") },
       readings: mergeRefs(
-        facts.traits.filter((t) => t.die_id === die).flatMap((t) => t.readings).filter((r) =>
-          r.table === "cutback"
-        ),
+        facts.traits.filter((t) => t.die_id !== null && dies.includes(t.die_id)).flatMap((t) => t.readings)
+          .filter((r) => r.table === "cutback"),
       ),
-      dies: [die],
+      dies,
     },
     suspects: [],
-  }));
+  };
 }
 
 /** Readings that the other readings of their trait contradict; each is told once, whatever rests on it. */

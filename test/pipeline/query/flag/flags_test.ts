@@ -384,6 +384,34 @@ Deno.test("readings, outcomes and records that contradict each other are flagged
   match(flags.get("period-off")!.statement, /has 16\.5 µm .* drawn 17 µm/);
 });
 
+Deno.test("the same finding on many units of a wafer is told once, with the first of them", () => {
+  const lot = simulatedLot(13);
+  const guides = lot.design.guides.filter((g) => g.wafer === "L013-1").slice(0, 6);
+  const remarks = guides.map((g, k) => ({
+    code: "cutback_outlier",
+    unit: g.guide_id,
+    statement: `${g.guide_id}: 3 dB at 10 mm (readings/cutback.csv:${
+      10 + 2 * k
+    }) is off the line; it is kept`,
+  }));
+  const cut = new Set(guides.map((g) => g.die_id).concat("L013-1/07", "L013-1/08", "L013-1/09"));
+  const facts = predicted(
+    { ...lot, reduceRemarks: remarks },
+    (die) => cut.has(die) ? { unavailable: "cut back to 5 mm" } : {},
+  );
+  const flags = flagsOf(facts, only("reading-doubted", "record-missing"), []);
+  deepEqual(flags.map((f) => [f.rule, f.id]), [["reading-doubted", "L013-1"], ["record-missing", "L013-1"]]);
+  match(
+    flags[0]!.statement,
+    /^L013-1: cutback outlier on 6 units, such as L013-1\/01\/g1: .*; and 3 more findings/,
+  );
+  deepEqual(flags[0]!.evidence.guides, guides.map((g) => g.guide_id));
+  deepEqual(flags[0]!.evidence.readings[0]!.lines.map(([a]) => a), [10, 12, 14, 16, 18, 20]);
+  match(flags[1]!.statement, /^Wafer L013-1: 5 dies were cut, such as L013-1\/01 \(cut back to 5 mm\)/);
+  const few = { ...lot, reduceRemarks: remarks.slice(0, 3) };
+  equal(flagsOf(few, only("reading-doubted"), []).length, 3);
+});
+
 Deno.test("a reading that the others contradict is named by file and line, once, with the numbers", () => {
   const facts = predicted(simulatedLot(12), () => ({}));
   const contradiction = {
