@@ -103,12 +103,16 @@ command(
   .option("--lot <lot>", "only this lot; may repeat", collect, [])
   .option("--all-guides", "one line per guide, dies that can't be shipped included")
   .addOption(new Option("--top <n>", "the first n only").argParser(wholeNumber(1)))
+  .option("--explain <die|guide>", "why one die or guide is decided as it is, and what would help")
   .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
     workersOption(),
   )
   .addOption(formatOption())
   .action(
-    run(async (request: string, options: Common & { lot: string[]; allGuides?: true; top?: number }) => {
+    run(async (
+      request: string,
+      options: Common & { lot: string[]; allGuides?: true; top?: number; explain?: string },
+    ) => {
       const { rankCommand } = await import("./commands/rank.ts");
       return await rankCommand(request, options);
     }),

@@ -13,6 +13,7 @@ export {
 export { type NonCriticalWidth, nonCriticalWidths, parameterSlope } from "./parameter_slope.ts";
 export { type ChangedDesign, changedDesigns, PROCESS_NUDGES, type ProcessNudge } from "./process_changes.ts";
 export * from "./analyse_guide.ts";
+export * from "./explain_guide.ts";
 export { type KnownReadingU, type PossibleReading, type ReadingU } from "./possible_readings.ts";
 export { RESTORE_GROUP_NAMES, restoredInputs, type RestoreGroup } from "./restored_inputs.ts";
 export * from "./draws.ts";

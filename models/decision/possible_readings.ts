@@ -50,6 +50,7 @@ const KINDS: Readonly<Record<string, PossibleReading["kind"]>> = {
   duty: "poling",
   duty_sd: "poling",
   merged: "poling",
+  mismatch_sd_per_m: "tuning",
   width_error_um: "geometry",
   film_thickness_nm: "geometry",
   etch_depth_nm: "geometry",
@@ -83,8 +84,12 @@ export function possibleReadings(
     if (kind === undefined || u === 0 || done) continue;
     const found = known.byTrait[trait] ?? derived(trait, roles);
     if (found === null) continue;
-    // One picture shows a mode both ways, one window all of a grating; the rest is read one by one.
-    const name = kind === "modes" ? `modes ${roles.join()}` : kind === "poling" ? kind : key;
+    // One picture shows a mode both ways, one window all of a grating, one scan its centre and width.
+    const name = kind === "modes"
+      ? `modes ${roles.join()}`
+      : kind === "poling" || kind === "tuning"
+      ? kind
+      : key;
     offer(name, kind, { key, trait, roles, ...found });
   }
   const scanned = guide.offset?.basis === "measured";
@@ -94,7 +99,7 @@ export function possibleReadings(
       u: PEAK_SHARE * LINE_WIDTH / guide.poledLength,
       from: "a twentieth of the line width",
     };
-    offer(WHOLE_OFFSET, "tuning", { key: WHOLE_OFFSET, trait, roles: ["phase_matching"], ...found });
+    offer("tuning", "tuning", { key: WHOLE_OFFSET, trait, roles: ["phase_matching"], ...found });
   }
   return [...groups.values()];
 

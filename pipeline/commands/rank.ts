@@ -5,17 +5,24 @@ import { type RankedEntry, rankGuides, type Ranking } from "../query/rank.ts";
 import { findRequest, type LoadedRequest } from "../requests.ts";
 import { budgetText } from "./budget_text.ts";
 import { type CommonOptions, note, print, printJson } from "./common.ts";
+import { explainIn } from "../query/explain.ts";
+import { lotOf } from "../query/trace_find.ts";
+import { EXPLAIN_COLUMNS, explainRows, explainText, readingText } from "./explain_text.ts";
+import { SHORT } from "./figure_titles.ts";
 import { bringUpToDate, chosenLots } from "./predictions.ts";
 
 export interface RankCommandOptions extends CommonOptions {
   readonly lot: readonly string[];
   readonly allGuides?: true;
   readonly top?: number;
+  /** A die or guide whose decision is explained in place of a ranking. */
+  readonly explain?: string;
 }
 
 /** Ranks for a request; predictions that are missing or no longer hold are computed first. */
 export async function rankCommand(nameOrPath: string, options: RankCommandOptions): Promise<0> {
   const request = await findRequest(nameOrPath, options.requests);
+  if (options.explain !== undefined) return await explainCommand(request, options.explain, options);
   let lots: string[];
   {
     await using ledger = await openLedger(options.ledger, { write: false });
@@ -31,6 +38,26 @@ export async function rankCommand(nameOrPath: string, options: RankCommandOption
   if (options.format === "json") printJson(ranking);
   else if (options.format === "csv") print(csvRanking(ranking));
   else printTable(ranking, request, options);
+  return 0;
+}
+
+/** Explains one guide; the prediction of its lot is computed first where it no longer holds. */
+async function explainCommand(
+  request: LoadedRequest,
+  id: string,
+  options: RankCommandOptions,
+): Promise<0> {
+  let lot: string;
+  {
+    await using ledger = await openLedger(options.ledger, { write: false });
+    ({ lot } = await lotOf(ledger, id));
+  }
+  await bringUpToDate(options, [lot], [request]);
+  await using ledger = await openLedger(options.ledger, { write: false });
+  const explained = await explainIn(ledger, request, id, options.platforms);
+  if (options.format === "json") printJson(explained);
+  else if (options.format === "csv") print(csvText([...EXPLAIN_COLUMNS], explainRows(explained)));
+  else print(explainText(explained));
   return 0;
 }
 
@@ -80,12 +107,29 @@ function printTable(ranking: Ranking, request: LoadedRequest, options: RankComma
   print(LEGEND);
   if (dies.some(isUnmatched)) print("(T): nothing matches in the oven; T is the nearest temperature");
   printUnavailable(dies);
+  printNextReadings(dies);
   const best = dies[0];
   if (best !== undefined && best.unavailable === undefined) print(`\n${budgetText(best, request)}`);
   for (const text of new Set(dies.flatMap((d) => d.remarks ?? []).map((r) => r.split(":", 1)[0]!))) {
     const count = dies.filter((d) => (d.remarks ?? []).some((r) => r.startsWith(text))).length;
     const example = dies.flatMap((d) => d.remarks ?? []).find((r) => r.startsWith(text))!;
     note(`remark on ${count} of ${dies.length}: ${example}`);
+  }
+}
+
+/** For held dies the reading that promises most, dies with the same advice in one paragraph. */
+function printNextReadings(entries: readonly RankedEntry[]): void {
+  const byReading = new Map<string, RankedEntry[]>();
+  for (const entry of entries) {
+    if (entry.next_reading === undefined) continue;
+    const { kind, reads } = entry.next_reading;
+    const name = `${kind} ${reads.map((r) => `${r.trait} ${r.wavelength_nm}`).join()}`;
+    byReading.set(name, [...byReading.get(name) ?? [], entry]);
+  }
+  for (const held of byReading.values()) {
+    const [first] = held;
+    const where = held.length === 1 ? first!.guide : `${held.map((e) => e.guide).join(", ")}; for the first`;
+    print(wrap(`next reading of ${where}: ${readingText(first!.next_reading!)}`, 80).join("\n"));
   }
 }
 
@@ -102,28 +146,6 @@ function printUnavailable(entries: readonly RankedEntry[]): void {
 }
 
 const LEGEND = "m: measured on the guide; d, w, l: from die, wafer, lot; p: platform's default";
-
-/** Column headings that leave room for three figures in 80 columns. */
-const SHORT: Partial<Record<Figure, string>> = {
-  operating_temperature_c: "oven/°C",
-  efficiency_percent_per_w: "%/W",
-  efficiency_percent_per_w_cm2: "%/Wcm²",
-  peak_conversion: "convers.",
-  pairs_per_pulse: "pairs",
-  pair_rate_hz: "pairs/s",
-  heralding_signal: "herald.s",
-  heralding_idler: "herald.i",
-  purity: "purity",
-  schmidt_number: "K",
-  g2_heralded: "g2",
-  g2_unheralded: "g2unh.",
-  exchange_overlap: "overlap",
-  acceptance_nm: "acc./nm",
-  bandwidth_signal_nm: "bw.s/nm",
-  bandwidth_idler_nm: "bw.i/nm",
-  loss_db_cm_signal: "dB/cm s",
-  loss_db_cm_idler: "dB/cm i",
-};
 
 /** No draw has an operating point: the temperature shown is only the nearest one. */
 const isUnmatched = ({ figures: { operating_temperature_c: t, operating_pump_nm: pump } }: RankedEntry) =>

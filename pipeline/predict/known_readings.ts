@@ -13,6 +13,7 @@ const METHODS: readonly (readonly [trait: TraitName, method: string])[] = [
   ["duty_sd", "poling windows"],
   ["merged", "poling windows"],
   ["mismatch_offset_per_m", ""],
+  ["mismatch_sd_per_m", ""],
   ["width_error_um", ""],
   ["film_thickness_nm", ""],
   ["etch_depth_nm", ""],

@@ -2,6 +2,8 @@ import { type Figure, figureAbsence, FIGURES } from "../../shared/schemas/figure
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import type { Basis } from "../../shared/vocabulary.ts";
 import type { Ledger } from "../ledger/mod.ts";
+import { bestReadings, type ReadingAdvice } from "./reading_advice.ts";
+import { ledgerTableNames } from "./ledger_tables.ts";
 import { type Engine, type QueryResult } from "./engine.ts";
 import { engineWith } from "./sql.ts";
 
@@ -31,6 +33,8 @@ export interface RankedEntry {
   readonly windows_nm?: { readonly signal: readonly number[]; readonly idler: readonly number[] };
   readonly exchange_delay_ps?: number;
   readonly remarks?: readonly string[];
+  /** For a held guide that stands for its die: the reading that would take away most of the doubt. */
+  readonly next_reading?: ReadingAdvice;
   readonly figures: Readonly<Record<Figure, RankedFigure>>;
 }
 
@@ -53,9 +57,24 @@ export async function rankGuides(
   checked: CheckedRequest,
   options: RankOptions,
 ): Promise<Ranking> {
-  using engine = await engineWith(ledger, RANKED_FROM, { lots: options.lots });
-  return await rankIn(engine, checked, options);
+  // A ledger whose predictions are older than the analysis ranks without it.
+  const held = (await ledgerTableNames(ledger)).includes(NEXT_READINGS);
+  using engine = await engineWith(ledger, held ? [...RANKED_FROM, NEXT_READINGS] : RANKED_FROM, {
+    lots: options.lots,
+  });
+  const ranking = await rankIn(engine, checked, options);
+  if (!held) return ranking;
+  const advice = bestReadings(engine, checked.request.request);
+  return {
+    ...ranking,
+    dies: ranking.dies.map((die) => {
+      const next_reading = advice.get(die.guide);
+      return next_reading === undefined ? die : { ...die, next_reading };
+    }),
+  };
 }
+
+const NEXT_READINGS = "next_readings";
 
 /** What a ranking reads. */
 export const RANKED_FROM: readonly string[] = ["ranked_guides", "figures"];

@@ -10,11 +10,12 @@ import { type LoadedPlatform, loadPlatform } from "../platforms.ts";
 import { type GuideRecord, loadDesign, type LotDesign } from "../records.ts";
 import { loadTraits } from "../traits/load_traits.ts";
 import { loadOtherLots } from "../traits/pooled_lots.ts";
+import type { RoleTrait } from "../traits/guide_traits.ts";
 import type { TraitRow } from "../traits/trait_row.ts";
 import { rankGuides } from "./rank.ts";
 import { figureNamed, lotOf, predictionOf, type PredictParameters, requestInRun } from "./trace_find.ts";
 import { historyOf } from "./trace_history.ts";
-import { deriveRoles, type FollowedRole, followRoles, rowsOfGuide, type StoredRole } from "./trace_roles.ts";
+import { deriveGuide, type FollowedRole, followRoles, rowsOfGuide, type StoredRole } from "./trace_roles.ts";
 import { staleness } from "./trace_staleness.ts";
 import { defaultsOf, tracedTraits } from "./trace_traits.ts";
 import type { Trace } from "./trace_types.ts";
@@ -132,7 +133,12 @@ interface FigureRow {
 }
 
 /** The guide by which a ranking shows the die. */
-async function bestGuide(ledger: Ledger, lot: string, checked: CheckedRequest, die: string): Promise<string> {
+export async function bestGuide(
+  ledger: Ledger,
+  lot: string,
+  checked: CheckedRequest,
+  die: string,
+): Promise<string> {
   const { dies } = await rankGuides(ledger, checked, { lots: [lot], allGuides: false, top: null });
   const found = dies.find((d) => d.die === die);
   if (found !== undefined) return found.guide;
@@ -143,7 +149,7 @@ async function bestGuide(ledger: Ledger, lot: string, checked: CheckedRequest, d
 }
 
 /** Runs of traits that a prediction was made from: its own lot's first, then those of the other lots. */
-async function pooledBy(past: Ledger, run: Manifest): Promise<Manifest[]> {
+export async function pooledBy(past: Ledger, run: Manifest): Promise<Manifest[]> {
   const runs = new Map((await past.runs()).map((r) => [r.run, r]));
   const reduced = run.parents.map((p) => runs.get(p)).filter((r) => r?.kind === "reduce") as Manifest[];
   return reduced[0]?.run === run.parents[0] ? reduced : [];
@@ -166,10 +172,10 @@ async function followedRoles(
   const stored = await rowsOfGuide<StoredRole>(past, run, "used_traits", guide.guide_id);
   const { platform_sha256 } = run.parameters as PredictParameters;
   const exact = fingerprint === platform_sha256 && run.model === MODEL_VERSION;
-  let derived: Awaited<ReturnType<typeof deriveRoles>> = [];
+  let derived: readonly RoleTrait[] = [];
   try {
     const pooled = await loadOtherLots(past, others);
-    derived = await deriveRoles(past, design, traits, platform, checked, guide, pooled);
+    derived = (await deriveGuide(past, design, traits, platform, checked, guide, pooled)).roles;
   } catch (error) {
     if (exact || !(error instanceof InputError)) throw error;
   }

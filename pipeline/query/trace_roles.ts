@@ -3,7 +3,7 @@ import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import type { Ledger, Manifest } from "../ledger/mod.ts";
 import { type GuideRecord, type LotDesign, recordsOf } from "../records.ts";
-import { resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
+import { type ResolvedGuide, resolveGuide, type RoleTrait, windowsByUnit } from "../traits/guide_traits.ts";
 import { alongGuides } from "../traits/along_guide.ts";
 import { completeWalls } from "../traits/guide_walls.ts";
 import type { OtherLot } from "../traits/pooled_lots.ts";
@@ -54,7 +54,7 @@ export async function rowsOfGuide<T>(
  * Resolves a guide's traits again, with the code that predicting uses.
  * @param past the ledger as it stood when the figures were predicted
  */
-export async function deriveRoles(
+export async function deriveGuide(
   past: Ledger,
   design: LotDesign,
   traits: readonly TraitRow[],
@@ -62,20 +62,21 @@ export async function deriveRoles(
   checked: CheckedRequest,
   guide: GuideRecord,
   others: readonly OtherLot[],
-): Promise<readonly RoleTrait[]> {
+): Promise<ResolvedGuide> {
   const { lot } = design.lot;
   const pools = new TraitPools(platform, design, traits, others);
   const windows = windowsByUnit(await recordsOf(past, "poling", lot));
   const file = completeWalls(traits).get(guide.guide_id);
   const walls = file === undefined ? null : await wallsOf(past, lot, guide.guide_id, file);
   const along = alongGuides(await recordsOf(past, "geometry", lot), platform);
-  const { roles } = resolveGuide(pools, windows, guide, checked, walls, along);
+  const { inputs, roles } = resolveGuide(pools, windows, guide, checked, walls, along);
   // A wall list read again makes the earlier one a trait row, too; only the list that was integrated is under the figure.
-  return roles.map((role) =>
+  const narrowed = roles.map((role) =>
     role.trait === "walls"
       ? { ...role, used: role.used.filter((k) => traits[k]!.readings[0]!.file_name === file) }
       : role
   );
+  return { inputs, roles: narrowed };
 }
 
 async function wallsOf(past: Ledger, lot: string, guide: string, file: string): Promise<Float64Array> {
