@@ -27,7 +27,11 @@ export function tableOf({ caption, columns, rows }: PageTable, most = Infinity):
   const numeric = columns.map((_, k) => rows.some((r) => typeof r[k] === "number"));
   return html`
     <div class="scroll" role="region" aria-label="${caption}" tabindex="0">
-      <table>
+      <table ${columns.length > 11
+        ? html`
+          class="wide"
+        `
+        : null}>
         <caption>${caption}</caption>
         <thead>
           <tr>${columns.map((c, k) =>
