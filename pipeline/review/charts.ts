@@ -78,7 +78,7 @@ export function controlChart(c: ChartReview): Html {
   const last = c.points.length - 1;
   const data = c.points.map((p, k) => ({
     ...p,
-    out: Math.abs(p.z) > 3 || (k === last && c.signals.length > 0),
+    out: p.value > c.upper || p.value < c.lower || (k === last && c.signals.length > 0),
     hover: `${p.lot}: ${shown(p.value, 4)} ${c.unit}, ${shown(p.z, 2)} standard deviations from the centre`,
   }));
   const limits = [["upper limit", c.upper], ["centre", c.centre], ["lower limit", c.lower]] as const;

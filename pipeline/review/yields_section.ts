@@ -148,7 +148,7 @@ export function chartsSection(data: ReviewData): Html {
   if (charts.length > 0) {
     return html`
       <p
-        class="soft">Individuals charts: centre and limits are those of the lots before (mean, and mean moving range over 1.128). z of the newest lot allows for limits that rest on few lots; a diamond marks a point that signals.</p>${yields}<div
+        class="soft">Individuals charts: centre and limits are those of the lots before (mean, and three times the mean moving range over 1.128, wider where they rest on few lots); a diamond marks a point that signals.</p>${yields}<div
         class="pair">${charts}</div>${waferChartsPart(data.wafer_charts, data.lot)}${aside}
     `;
   }

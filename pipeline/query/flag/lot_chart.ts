@@ -25,6 +25,7 @@ export interface LotChart {
   readonly lots: readonly string[];
   readonly values: readonly number[];
   readonly centre: number;
+  /** Limits of a further lot: three standard deviations, widened for how few lots they rest on. */
   readonly lower: number;
   readonly upper: number;
   /** Standardised values; the last one corrected for limits that rest on few lots. */
@@ -46,6 +47,20 @@ export function correctedZ(z: number, n: number): number {
   return Math.sign(z) * (p < 1e-12 ? 7 : -normalQuantile(p / 2, 0, 1));
 }
 
+/** Keys of quantities that can't be below 0. */
+const NEVER_NEGATIVE = /^(yield|merged|duty_sd)\|/;
+
+/** How many standard deviations of the lots before a new value may be away: as improbable as three of a known spread. */
+function reachOf(n: number): number {
+  let [low, high] = [3, 1e4];
+  for (let k = 0; k < 60; k++) {
+    const middle = Math.sqrt(low * high);
+    if (correctedZ(middle, n) > 3) high = middle;
+    else low = middle;
+  }
+  return low;
+}
+
 function chartOf(
   key: string,
   words: string,
@@ -62,11 +77,12 @@ function chartOf(
   const n = points.length - 1;
   if (n < least || points.at(-1)!.lot !== lots.at(-1)!.lot) return null;
   const values = points.map((p) => p.value);
-  const { centre, individuals } = individualsCharts(values, { baseline: n, rules });
+  const { centre, sigma, individuals } = individualsCharts(values, { baseline: n, rules });
   const last = individuals.points.at(-1)!;
   const z = individuals.points.map((p) => p.z);
   if (Number.isNaN(last.z)) return null; // earlier lots that do not differ at all judge nothing
   z[n] = correctedZ(last.z, n);
+  const reach = reachOf(n);
   const signals = joinSignals(runSignals(z, rules).filter((s) => s.at === n));
   return {
     key,
@@ -75,8 +91,9 @@ function chartOf(
     lots: points.map((p) => p.lot),
     values,
     centre,
-    lower: last.lower,
-    upper: last.upper,
+    // Nothing is below none or above all: limits out there would only widen the picture.
+    lower: Math.max(NEVER_NEGATIVE.test(key) ? 0 : -Infinity, centre - reach * sigma),
+    upper: Math.min(key.startsWith("yield|") ? 1 : Infinity, centre + reach * sigma),
     z,
     signals,
   };

@@ -29,6 +29,15 @@ Deno.test("fault-free lots raise no more alarms than the rules promise", () => {
     if (flags.some((f) => f.severity === "watch")) watch++;
     for (const f of flags) byRule.set(f.rule, (byRule.get(f.rule) ?? 0) + 1);
     const own = lotCharts(summaries.at(-1)!, summaries, chart);
+    // The limits shown are those that judge.
+    for (const c of own) {
+      const [x, z] = [c.values.at(-1)!, c.z.at(-1)!];
+      equal(
+        x > c.upper || x < c.lower,
+        Math.abs(z) > 3,
+        `${c.words}: ${x} in ${c.lower} to ${c.upper}, z ${z}`,
+      );
+    }
     charts += own.length;
     signals += own.filter((c) => c.signals.length > 0).length;
     for (const { z } of waferCharts(summaries.at(-1)!, summaries, chart).flatMap((c) => c.points)) {
