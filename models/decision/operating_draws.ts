@@ -1,5 +1,6 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import { mismatchOverTemperature } from "../guides/mod.ts";
+import { bandForPeak, type Grating, gratingSpectrum, mainPeaks } from "../poling/mod.ts";
 import type { ThreeWaves } from "../../shared/vocabulary.ts";
 import {
   type OperatingPoint,
@@ -87,14 +88,31 @@ function needCurve(
   const middle = (range[0] + range[1]) / 2;
   let target = Math.sign(bare(middle) + nominalOffset) * 2 * Math.PI / question.period;
   if (question.walls !== null) {
-    if (!nominal.matched || nominal.tuned) return null;
-    target = (bare(nominal.temperatureC) + nominalOffset) * model.expansion(nominal.temperatureC);
+    if (nominal.matched && !nominal.tuned) {
+      target = (bare(nominal.temperatureC) + nominalOffset) * model.expansion(nominal.temperatureC);
+    } else {
+      // Nothing to take the peak from: it is the highest one near the grating vector.
+      const found = highestPeak(question, question.walls, target);
+      if (found === null) return null;
+      target = found;
+    }
   }
   const temperature = Float64Array.from(
     { length: TEMPERATURE_STEPS + 1 },
     (_, k) => range[0] + (range[1] - range[0]) * k / TEMPERATURE_STEPS,
   );
   return { target, temperature, need: temperature.map((T) => target / model.expansion(T) - bare(T)) };
+}
+
+/** Scaled Δβ (1/m, signed) at the highest peak of |φ|² near a grating vector (1/m, signed). */
+function highestPeak(
+  { period, poledLength, profile }: OperatingQuestion,
+  walls: Grating,
+  vector: number,
+): number | null {
+  const band = bandForPeak(vector, vector, period, walls.end - walls.start);
+  const options = { poledLength, ...(profile === undefined ? {} : { profile }) };
+  return mainPeaks(gratingSpectrum(walls, band, options))[0]?.deltaBeta ?? null;
 }
 
 function ovenRange(model: PlatformModel, { oven, geometry }: OperatingQuestion, waves: ThreeWaves) {
