@@ -68,6 +68,7 @@ const BOUNDS: Partial<Record<PooledTrait, { readonly low?: number; readonly high
   film_thickness_nm: { low: 0 },
   etch_depth_nm: { low: 0 },
   titanium_nm: { low: 0 },
+  mismatch_sd_per_m: { low: 0 },
 };
 
 /**
@@ -82,7 +83,7 @@ const WITHIN_LOT: readonly TraitName[] = [
 ];
 
 /** Counts of rare events and spreads have skew errors: a tail that a normal would call impossible is theirs by nature. */
-const SKEW: readonly TraitName[] = ["merged", "duty_sd"];
+const SKEW: readonly TraitName[] = ["merged", "duty_sd", "mismatch_sd_per_m"];
 
 interface Held {
   readonly pool: HierarchicalPool;
