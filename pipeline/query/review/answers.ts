@@ -65,7 +65,7 @@ function comparedWith(
   const yields = charts.filter((c) => c.key.startsWith("yield|"));
   if (yields.length === 0) {
     const why = charts.length > 0
-      ? `none of its charts is of a yield: there is none to compare, or the lots before do not differ`
+      ? "no yield is charted (none to compare, or all alike)"
       : "too few for a control chart; see the yields over lots";
     const out = charts.filter((c) => c.signals.length > 0).map((c) => c.words);
     return `Compared with earlier lots: ${plural(compared, "lot")} of ${platform}, ${why}${
