@@ -2,11 +2,11 @@ import type { ReviewData, ReviewFlag } from "../review_types.ts";
 import { budgetSection, diesSection } from "./dies_section.ts";
 import { flagsSection } from "./flags_section.ts";
 import { page } from "./frame.ts";
+import { capabilitySection } from "./capability_section.ts";
 import { gainsSection } from "./gains_section.ts";
 import { type Html, html } from "./html.ts";
 import { mapsSection } from "./maps_section.ts";
 import { coverageSection, methodSection, recordsSection } from "./records_section.ts";
-import { capabilitySection } from "./wafer_charts.ts";
 import { chartsSection, yieldsSection } from "./yields_section.ts";
 
 /** The review of a lot as one page that needs nothing else: no network, no script. */

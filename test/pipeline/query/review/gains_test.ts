@@ -6,7 +6,7 @@ import type {
   RestoredFact,
 } from "../../../../pipeline/query/flag/facts.ts";
 import { dieVerdicts } from "../../../../pipeline/query/flag/verdicts.ts";
-import { gainWords } from "../../../../pipeline/query/review/answers.ts";
+import { gainWords } from "../../../../pipeline/query/review/gain_words.ts";
 import { gainsOf, missingReadings } from "../../../../pipeline/query/review/gains.ts";
 import { interactionWords } from "../../../../pipeline/review/gains_section.ts";
 import { assertClose } from "../../../assert_close.ts";
