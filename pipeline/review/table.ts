@@ -27,9 +27,9 @@ export function tableOf({ caption, columns, rows }: PageTable, most = Infinity):
   const numeric = columns.map((_, k) => rows.some((r) => typeof r[k] === "number"));
   return html`
     <div class="scroll" role="region" aria-label="${caption}" tabindex="0">
-      <table ${columns.length > 11
+      <table ${columns.length > 8
         ? html`
-          class="wide"
+          class="${columns.length > 10 ? "wide widest" : "wide"}"
         `
         : null}>
         <caption>${caption}</caption>
