@@ -54,6 +54,7 @@ function figureLines(figure: ExplainedFigure): string[] {
   const met = figure.probability === null ? "" : `; met in ${percent(figure.probability)} of the draws`;
   return [
     ...wrap(`${figure.figure} ${withU(figure.mean, figure.u)} (${linear})${met}`, WIDTH),
+    ...(figure.reason === null ? [] : wrap(figure.reason, WIDTH - 2).map((line) => `  ${line}`)),
     ...figure.limits.flatMap((limit) => wrap(marginText(limit), WIDTH - 2).map((line) => `  ${line}`)),
   ];
 }
@@ -111,7 +112,9 @@ function readingLines({ next_readings: readings, decision }: GuideExplained): st
   if (best.length === 0) return ["No reading that could still be taken would settle the decision."];
   return [
     "What a reading would do to the doubt, and the decision that would follow:",
-    ...best.slice(0, 3).flatMap((r) => wrap(`- ${readingText(r)}`, WIDTH)),
+    ...best.slice(0, 3).flatMap((r) =>
+      wrap(readingText(r), WIDTH - 2).map((line, k) => `${k === 0 ? "-" : " "} ${line}`)
+    ),
   ];
 }
 

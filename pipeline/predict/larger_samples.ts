@@ -5,12 +5,12 @@ import { representatives } from "./representatives.ts";
 /** The largest sample of a guide at the edge of a decision. */
 export const MOST_DRAWS = 4096;
 /**
- * Of a lot's guides at most one in this many (or a few, in small lots) is sampled again, for each request. A guide that goes
+ * Of a lot's guides at most one in this many (and a few, in small lots) is sampled again, for each request. A guide that goes
  * through 1,024 and 4,096 draws costs 20 times its first sample: were a whole lot at a threshold, its prediction would still
  * take no more than about twice as long.
  */
 const GUIDES_PER_LARGER = 20;
-const ALWAYS_LARGER = 16;
+const ALWAYS_LARGER = 4;
 
 /**
  * Guides that get larger samples: those whose decision is not settled and whose die can be shipped. If these are too many,

@@ -4,6 +4,7 @@ import { DEFAULT_SAMPLE, drawTrait, nestedStrata } from "../../../models/decisio
 import { predictGuide } from "../../../models/decision/mod.ts";
 import { followsSpectra, independentDraws, settledAt } from "../../../models/decision/sampling_error.ts";
 import { randomFrom } from "../../../shared/random.ts";
+import { assertClose } from "../../assert_close.ts";
 import { guide, ktp, request, trait, TYPE_II } from "./a_guide.ts";
 
 const AT = { acceptAt: 0.9, rejectBelow: 0.1 };
@@ -45,6 +46,24 @@ Deno.test("independentDraws() counts spectra alone where a figure that follows t
   assert.equal(independentDraws([atLeast(repeated, -1.9)], DEFAULT_SAMPLE), 16);
   assert.equal(independentDraws([atLeast(repeated, -5), atLeast(draws, 0)], DEFAULT_SAMPLE), 256);
   assert.equal(independentDraws([atLeast(repeated.map(() => NaN), 0)], DEFAULT_SAMPLE), 256);
+});
+
+Deno.test("independentDraws() lies between both where spectra carry a part of a figure", () => {
+  const draws = normal("x");
+  for (const weight of [0.5, 1, 2]) {
+    const mixed = draws.map((x, k) => x + weight * normal("y")[k % 16]!);
+    const share = weight ** 2 / (1 + weight ** 2);
+    const n = independentDraws([atLeast(mixed, 0)], DEFAULT_SAMPLE);
+    // 16 spectra tell a share to about a third.
+    assertClose(1 / n, share / 16 + (1 - share) / 256, { rel: 0.4 });
+  }
+});
+
+Deno.test("settledAt() asks for nothing more where one requirement is missed by far, whatever the others are", () => {
+  const doubtful = atLeast(normal("x"), 0);
+  assert.equal(settledAt(0.1, [doubtful], DEFAULT_SAMPLE, AT), false);
+  assert.equal(settledAt(0, [doubtful, atLeast(normal("y"), 10)], DEFAULT_SAMPLE, AT), true);
+  assert.equal(settledAt(0, [doubtful, atLeast(normal("y").map(() => NaN), 0)], DEFAULT_SAMPLE, AT), true);
 });
 
 Deno.test("predictGuide() grows its sample until the decision is settled, as far as it may", () => {
