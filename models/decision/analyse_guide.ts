@@ -137,7 +137,7 @@ const movesPoint = ({ poling }: GuideInputs, group: RestoreGroup): boolean =>
 function openDecision(checked: CheckedRequest, sample: GuideSample): OpenDecision {
   const { drawn, exists } = sample;
   const traits = [
-    ...drawn.columns.map(({ key, draws }) => ({ trait: key, draws })),
+    ...drawn.columns.map(({ key, draws, narrowed }) => ({ trait: key, draws: narrowed ?? draws })),
     { trait: WHOLE_OFFSET, draws: drawn.offset },
   ];
   const matching = matchingOffsets(drawn.offset, exists);

@@ -6,6 +6,7 @@ import type { Basis } from "../../shared/vocabulary.ts";
 import { type Bounds, DEFAULT_SAMPLE, drawTrait, nestedStrata, type SampleSize } from "./draws.ts";
 import type { Role } from "./figure_basis.ts";
 import type { ArmTraits, GuideInputs, UsedTrait } from "./guide_inputs.ts";
+import { addErrors, type DrawnError, narrowed, otherScanTrait, type ToldErrors } from "./other_scan.ts";
 
 /** Draws of everything uncertain in one guide; index k of every array belongs to draw k. */
 export interface DrawnTraits {
@@ -21,6 +22,8 @@ export interface DrawnTraits {
   readonly merged: Float64Array;
   /** Offset of Δβ, 1/m. */
   readonly offset: Float64Array;
+  /** The offset where every trait is at its mean, 1/m. */
+  readonly nominalOffset: number;
   /** Standard deviation of δβ along the guide, 1/m; null where none is known. */
   readonly mismatchSd: Float64Array | null;
   /** The length (mm) and the share of the peak that a scan found; null without one. */
@@ -38,8 +41,10 @@ export interface TraitColumn {
   readonly value: number;
   readonly u: number;
   readonly basis: Basis;
-  /** All equal where u is 0, or where nothing depends on the trait. */
+  /** All equal where u is 0, or where nothing depends on the trait. Columns are independent of each other. */
   readonly draws: Float64Array;
+  /** What a reading of the trait would find, where a scan of another process tells of it; else left out: `draws`. */
+  readonly narrowed?: Float64Array;
 }
 
 export interface DrawnArm {
@@ -62,12 +67,14 @@ const DUTY: Bounds = { low: 0.02, high: 0.98 };
 /**
  * Draws the traits of a guide. The seed is the guide's id and the trait's key, so a draw does not depend on the order of
  * guides, and one reading used twice (a second harmonic's signal and idler) is drawn once.
+ * @param told what a scan of another process tells of the errors of the cross-section
  */
 export function drawTraits(
   guide: GuideInputs,
   sensitivity: MismatchSensitivity = () => 0,
   size: SampleSize = DEFAULT_SAMPLE,
   bend: MismatchBend = () => 0,
+  told: ToldErrors | null = null,
 ): DrawnTraits {
   const { draws, spectral } = size;
   const held = new Map<string, Float64Array>();
@@ -121,8 +128,13 @@ export function drawTraits(
       : draw("poling", "duty", poling.duty, DUTY),
     dutySd: poling.from === "duty" ? draw("poling", "duty_sd", poling.dutySd, NOT_NEGATIVE) : none(),
     merged: poling.from === "duty" ? draw("poling", "merged", poling.merged, SHARE) : none(),
-    offset: drawOffset(),
-    mismatchSd: spread === null ? null : draw("poling", "mismatch_sd_per_m", spread.sd, NOT_NEGATIVE),
+    ...drawOffset(),
+    mismatchSd: spread === null
+      ? null
+      // Realisations of a scanned guide take the draw that suits the scan: no column, for draw k is not that of realisation k.
+      : scanned !== null
+      ? drawTrait(spread.sd, NOT_NEGATIVE, strataOf(spread.sd.key))
+      : draw("poling", "mismatch_sd_per_m", spread.sd, NOT_NEGATIVE),
     scanShape: scanned === null ? null : {
       effectiveLength: draw("poling", "effective_length_mm", scanned.effectiveLength, LENGTH),
       peakKept: draw("poling", "peak_kept", scanned.peakKept, SHARE),
@@ -130,30 +142,38 @@ export function drawTraits(
   };
   return { ...drawn, columns: [...columns.values()] };
 
-  /** Offset of Δβ: the scan's, and what the errors of the geometry make of it, to second order. */
-  function drawOffset(): Float64Array {
+  /** Offset of Δβ: a scan's, and what the errors of the geometry make of it, to second order. */
+  function drawOffset(): Pick<DrawnTraits, "offset" | "nominalOffset"> {
     const role = "phase_matching";
+    const slopes = { slope: sensitivity, bend };
     const offset = guide.offset === null
       ? none()
       : Float64Array.from(draw(role, "mismatch_offset_per_m", guide.offset, {}));
-    const errors: { parameter: GeometryParameter; u: number; off: Float64Array }[] = [];
+    const nominal = Float64Array.of(guide.offset?.value ?? 0);
+    const errors: (DrawnError & { trait: UsedTrait })[] = [];
     for (const { parameter, trait } of guide.geometryErrors) {
-      const slope = trait.u === 0 ? 0 : sensitivity(parameter);
+      const felt = trait.u > 0 && (sensitivity(parameter) !== 0 || (told?.weight(parameter) ?? 0) !== 0);
       const name = parameter === "width_um" ? "width_error_um" : parameter;
-      if (slope === 0) noted(role, name, trait, new Float64Array(draws).fill(trait.value));
+      if (!felt) noted(role, name, trait, new Float64Array(draws).fill(trait.value));
       else {
         const off = draw(role, name, trait, {}).map((x) => x - trait.value);
-        errors.push({ parameter, u: trait.u, off });
-        off.forEach((d, k) => offset[k]! += slope * d);
+        errors.push({ parameter, u: trait.u, off, trait });
       }
     }
-    errors.forEach((a, m) =>
-      errors.slice(m).forEach((b) => {
-        const half = bend(a, b) / (a === b ? 2 : 1);
-        if (half !== 0) a.off.forEach((d, k) => offset[k]! += half * d * b.off[k]!);
-      })
-    );
-    return offset;
+    if (told === null) {
+      addErrors(offset, errors, slopes);
+      return { offset, nominalOffset: nominal[0]! };
+    }
+    const rest = draw(role, otherScanTrait(told.scan.waves), told.rest, {}).map((x) => x - told.rest.value);
+    const left = narrowed(told, errors, rest);
+    addErrors(offset, left, slopes);
+    left.forEach(({ off }, i) => {
+      const { key, value } = errors[i]!.trait;
+      columns.set(key, { ...columns.get(key)!, narrowed: off.map((d) => value + d) });
+    });
+    const means = errors.map((e) => ({ ...e, off: Float64Array.of(told.gain(e.parameter) * told.surprise) }));
+    addErrors(nominal, means, slopes);
+    return { offset, nominalOffset: nominal[0]! };
   }
 }
 

@@ -32,10 +32,10 @@ export function mismatchSensitivity(
  */
 export function mismatchBend(
   model: PlatformModel,
+  waves: ThreeWaves,
   checked: CheckedRequest,
   guide: GuideInputs,
 ): MismatchBend {
-  const { waves } = checked;
   const at = middleOfOven(model, waves, checked, guide);
   if (at === null) return () => 0;
   const held = guide.geometry as unknown as Readonly<Record<string, number | undefined>>;

@@ -79,6 +79,24 @@ export interface SpreadTraits {
   } | null;
 }
 
+/** A tuning scan of another process on the same guide: it tells of the asked one what the cross-section explains of it. */
+export interface OtherScan {
+  readonly waves: ThreeWaves;
+  /** The offset of its own Δβ that it found, 1/m. */
+  readonly offset: UsedTrait;
+  /** The offset that is expected of this guide without it. */
+  readonly expected: Uncertain;
+  /** Share that scans of other guides have in what is expected, 0…1. */
+  readonly read: number;
+  /**
+   * Of the variance of a parameter's error: the share that makes this guide's scan differ from what is expected of it, and the
+   * share in that which is this guide's own for the asked process, too: 0 ≤ own ≤ felt ≤ 1. Left out: 1.
+   */
+  readonly shares: Partial<
+    Readonly<Record<GeometryParameter, { readonly felt: number; readonly own: number }>>
+  >;
+}
+
 /** Everything that a prediction of one guide rests on; lengths in m at 25 °C. */
 export interface GuideInputs {
   readonly id: string;
@@ -101,6 +119,8 @@ export interface GuideInputs {
    * that scans nearby or the platform suggest; null when the calculated Δβ is taken as it is.
    */
   readonly offset: UsedTrait | null;
+  /** Scans of other processes on this guide, where none of the asked one was made. */
+  readonly otherScans?: readonly OtherScan[];
   /** Spread of Δβ along the guide beside what `along` says; null or left out where nothing speaks of one. */
   readonly mismatchSpread?: SpreadTraits | null;
 }

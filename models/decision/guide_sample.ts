@@ -16,6 +16,7 @@ import { drawOperatingPoints, type OperatingDraws } from "./operating_draws.ts";
 import { spreadFactor, withSpread } from "./mismatch_draws.ts";
 import { mismatchProfile } from "./mismatch_profile.ts";
 import { type OperatingPoint, type OperatingPoints, operatingPoints } from "./operating_point.ts";
+import { otherScanRemarks, tellingScan } from "./other_scan.ts";
 import { type PairNotes, type PairQuestion, predictPairs, type RecordedSpectrum } from "./pair_prediction.ts";
 import type { PlatformModel } from "./platform_model.ts";
 import { type Site, siteAt } from "./site.ts";
@@ -53,7 +54,9 @@ export function sampleGuide(
 ): GuideSample {
   const sensitivityOf = (waves: ThreeWaves) => mismatchSensitivity(model, waves, checked, guide);
   const sensitivity = sensitivityOf(checked.waves);
-  const drawn = drawTraits(guide, sensitivity, size, mismatchBend(model, checked, guide));
+  const bendOf = (waves: ThreeWaves) => mismatchBend(model, waves, checked, guide);
+  const told = tellingScan(guide, (waves) => ({ slope: sensitivityOf(waves), bend: bendOf(waves) }));
+  const drawn = drawTraits(guide, sensitivity, size, bendOf(checked.waves), told);
   const profile = mismatchProfile(guide.along ?? [], sensitivity);
   const out: Draws = new FigureDraws(size.draws);
   const loss = (name: Figure, alpha: Float64Array) =>
@@ -65,7 +68,7 @@ export function sampleGuide(
   const asked = { ...question(checked, guide, gratingForPeak(guide, walls, profile)), profile };
   const points = guide.poledLength > 0 ? operatingPoints(model, asked) : { reason: "the guide is not poled" };
   if ("reason" in points) return nowhere(checked, drawn, out, points.reason);
-  const nominalOffset = guide.offset?.value ?? 0;
+  const { nominalOffset } = drawn;
   const nominal = points.at(nominalOffset);
   const draws = drawOperatingPoints(model, asked, points, nominal, nominalOffset, drawn.offset);
   const { exists, point, offset } = drawPoints(
@@ -86,6 +89,7 @@ export function sampleGuide(
     ...pairs?.remarks ?? [],
     ...indexRemarks(model, site),
     ...spread === null ? [] : spreadRemarks(factor),
+    ...otherScanRemarks(guide, told, sensitivity),
   ];
   return { drawn, figures: out, exists, point, pairs, remarks };
 }

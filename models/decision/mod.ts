@@ -19,6 +19,7 @@ export { RESTORE_GROUP_NAMES, restoredInputs, type RestoreGroup } from "./restor
 export * from "./draws.ts";
 export * from "./figure_basis.ts";
 export * from "./guide_inputs.ts";
+export { otherScanTrait } from "./other_scan.ts";
 export { type OperatingPoint, operatingPoints, type OperatingQuestion } from "./operating_point.ts";
 export type { RecordedSpectrum } from "./pair_prediction.ts";
 export { type GuideSample, sampleGuide, type SampleOptions } from "./guide_sample.ts";

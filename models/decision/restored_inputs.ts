@@ -88,7 +88,7 @@ function asDesigned(
   designWidth_um: number,
   platform: Pick<Platform, "targets" | "defaults">,
 ): GuideInputs {
-  const { along: _, ...rest } = guide;
+  const { along: _, otherScans: __, ...rest } = guide;
   const geometry: { -readonly [K in keyof GuideGeometry]: GuideGeometry[K] } = {
     ...guide.geometry,
     width_um: designWidth_um + (platform.targets.width_error_um ?? 0),
