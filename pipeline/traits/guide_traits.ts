@@ -15,6 +15,7 @@ import type { GuideRecord, PolingRecord } from "../records.ts";
 import type { AlongByGuide, AlongReadings } from "./along_guide.ts";
 import { resolveGeometry } from "./geometry.ts";
 import { resolveSpread } from "./mismatch_spread.ts";
+import { resolveOtherScans } from "./other_scans.ts";
 import type { ResolvedTrait, TraitPools } from "./pools.ts";
 import type { ReadingRef } from "./trait_row.ts";
 import { refsOf } from "./trait_row.ts";
@@ -121,7 +122,10 @@ export function resolveGuide(
   if (offset !== null) roles.push(roleOf("phase_matching", offset));
   const spread = resolveSpread(pools, guide, checked.waves);
   if (spread !== null) roles.push(...spread.told.map((t) => roleOf("poling", t)));
-  const { geometry, errors } = resolveGeometry(pools, guide);
+  const resolvedGeometry = resolveGeometry(pools, guide);
+  const { geometry, errors } = resolvedGeometry;
+  const others = resolveOtherScans(pools, guide, checked.waves, offset, resolvedGeometry);
+  roles.push(...others.told.map((t) => roleOf("phase_matching", t)));
   for (const { resolved } of errors) roles.push(roleOf("phase_matching", resolved));
   const varying = along.get(guide.guide_id) ?? [];
   for (const reading of varying) roles.push(alongRole(reading, guide));
@@ -143,6 +147,7 @@ export function resolveGuide(
     idler,
     poling,
     offset: offset === null ? null : used(offset),
+    ...(others.scans.length === 0 ? {} : { otherScans: others.scans }),
     mismatchSpread: spread?.traits ?? null,
   };
   return { inputs, roles };
@@ -153,7 +158,8 @@ export const wavelengthNm = (lambda: number): number => Number(toNm(lambda).toFi
 
 const used = ({ value, u, basis, key }: ResolvedTrait): UsedTrait => ({ value, u, basis, key });
 
-const roleOf = (role: Role, t: ResolvedTrait & { readonly note?: string }): RoleTrait => ({
+type Told = Omit<ResolvedTrait, "trait"> & { readonly trait: string; readonly note?: string };
+const roleOf = (role: Role, t: Told): RoleTrait => ({
   role,
   trait: t.trait,
   wavelength_nm: t.wavelength_nm,

@@ -120,7 +120,7 @@ function weighed(
 }
 
 /** The waves of a scanned second harmonic: process `TE>TE+TM` and its fundamental, nm. */
-function wavesOf(process: string, fundamental_nm: number): ThreeWaves {
+export function wavesOf(process: string, fundamental_nm: number): ThreeWaves {
   const [polP, polS, polI] = process.split(/[>+]/) as [Polarisation, Polarisation, Polarisation];
   const lambda = nm(fundamental_nm);
   return { lambdaP: lambda / 2, lambdaS: lambda, lambdaI: lambda, polP, polS, polI };

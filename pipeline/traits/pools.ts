@@ -89,6 +89,8 @@ interface Held {
   readonly pool: HierarchicalPool;
   /** Guides' own readings as they are, where these outrank what the others suggest. */
   readonly own: Pool;
+  /** What the platform says of the spreads. */
+  readonly prior: Spread;
   readonly describe: (used: readonly number[]) => UsedRows;
 }
 
@@ -200,11 +202,12 @@ export class TraitPools {
     wavelength_nm: number | null,
     polarisation: Polarisation | null,
     process: string | null,
+    without: string | null = null,
   ): Held {
-    const key = poolKey(trait, wavelength_nm, polarisation, process);
+    const key = `${poolKey(trait, wavelength_nm, polarisation, process)}|${without}`;
     let held = this.#pools.get(key);
     if (held === undefined) {
-      held = this.#make(trait, wavelength_nm, polarisation, process);
+      held = this.#make(trait, wavelength_nm, polarisation, process, without);
       this.#pools.set(key, held);
     }
     return held;
@@ -215,10 +218,12 @@ export class TraitPools {
     wavelength_nm: number | null,
     polarisation: Polarisation | null,
     process: string | null,
+    without: string | null,
   ): Held {
     const { lot } = this.design.lot;
     const asked = { wavelength_nm, polarisation, process };
-    const own = readingsNear(this.rows, this.positions(trait), asked);
+    const own = readingsNear(this.rows, this.positions(trait), asked)
+      .filter(({ row }) => without === null || row.guide_id !== without);
     const others = WITHIN_LOT.includes(trait) ? [] : this.others.flatMap((other) => {
       const all = other.rows.flatMap((row, k) => row.trait === trait ? [k] : []);
       // Their readings are never among those that an estimate of this lot names.
@@ -249,6 +254,7 @@ export class TraitPools {
     return {
       pool: pools(observations, this.places(), scaled, carried, bounds === undefined ? {} : { bounds })(lot),
       own: inherit(ownReadings(own, lot), scaled, carried, lot),
+      prior: scaled,
       describe: describer(own),
     };
   }
@@ -296,6 +302,22 @@ export class TraitPools {
       return this.#resolved(held.own, held, trait, guide, fundamental_nm, null, processKey);
     }
     return defaultOf(this.platform, trait, null) === null ? null : found;
+  }
+
+  /** {@link offset} as it would be without the guide's own scans; null where it then is the calculated one. */
+  expectedOffset(guide: GuideRecord, processKey: string, fundamental_nm: number): ResolvedTrait | null {
+    const trait = "mismatch_offset_per_m";
+    if (defaultOf(this.platform, trait, null) === null) return null;
+    const held = this.#held(trait, fundamental_nm, null, processKey, guide.guide_id);
+    return this.#resolved(held.pool, held, trait, guide, fundamental_nm, null, processKey);
+  }
+
+  /** Standard deviations between lots, wafers, dies and guides of a trait without wavelength: as learned, else the platform's. */
+  spreads(trait: PooledTrait): Spread {
+    const { pool, prior } = this.#held(trait, null, null, null);
+    if (pool.spreads === null) return prior;
+    const { lot, wafer, die, guide } = pool.spreads;
+    return { lotSd: lot.value, waferSd: wafer.value, dieSd: die.value, guideSd: guide.value };
   }
 }
 
