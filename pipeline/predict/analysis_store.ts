@@ -1,9 +1,8 @@
-import type { Decision, GuideAnalysis, NextReading, Role } from "../../models/decision/mod.ts";
+import type { Decision, GuideAnalysis } from "../../models/decision/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
-import type { Polarisation } from "../../shared/vocabulary.ts";
 import { type TableShape, type TableStream, tableStream } from "../ledger/mod.ts";
 import type { GuideRecord } from "../records.ts";
-import { wavelengthNm } from "../traits/guide_traits.ts";
+import { waveOf } from "../traits/role_wave.ts";
 
 /** One row per trait of a reading: a reading that tells several traits has the same worth in each of its rows. */
 export const NEXT_READING_SHAPE = {
@@ -109,19 +108,3 @@ export class AnalysisStore {
     });
   }
 }
-
-/** Wavelength and polarisation at which a trait is read; null for traits of the whole guide. */
-export function waveOf(
-  { waves }: Pick<CheckedRequest, "waves">,
-  { roles }: Pick<NextReading["reading"]["reads"][number], "roles">,
-): { wavelength_nm: number; polarisation: Polarisation } | null {
-  const has = (...names: Role[]) => names.some((n) => roles.includes(n));
-  if (has("signal_loss", "signal_mode", "signal_facet")) return at(waves.lambdaS, waves.polS);
-  if (has("idler_loss", "idler_mode", "idler_facet")) return at(waves.lambdaI, waves.polI);
-  return has("pump_loss") ? at(waves.lambdaP, waves.polP) : null;
-}
-
-const at = (lambda: number, polarisation: Polarisation) => ({
-  wavelength_nm: wavelengthNm(lambda),
-  polarisation,
-});

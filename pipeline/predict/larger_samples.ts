@@ -10,7 +10,7 @@ export const MOST_DRAWS = 4096;
  * take no more than about twice as long.
  */
 const GUIDES_PER_LARGER = 20;
-const ALWAYS_LARGER = 4;
+const ALWAYS_LARGER = 12;
 
 /**
  * Guides that get larger samples: those whose decision is not settled and whose die can be shipped. If these are too many,

@@ -1,7 +1,7 @@
 import type { KnownReadingU, ReadingU } from "../../models/decision/mod.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import { quantileOfSorted } from "../../shared/statistics.ts";
-import type { TraitName, TraitRow } from "../traits/trait_row.ts";
+import type { TraitName, TraitRow } from "./trait_row.ts";
 
 /** Traits by the methods that can still be used on a guide that is to be delivered: how their rows' method begins. */
 const METHODS: readonly (readonly [trait: TraitName, method: string])[] = [
