@@ -137,7 +137,7 @@ export function addErrors(
 
 /** Name of a scan's offset among the traits of a guide for which another process is asked. */
 export const otherScanTrait = ({ polP, polS, polI }: ThreeWaves): string =>
-  `mismatch_offset_per_m ${processName(polP, polS, polI)}`;
+  `${processName(polP, polS, polI)} mismatch_offset_per_m`;
 
 /** What a scan of another process does to a guide's phase matching, for people. */
 export function otherScanRemarks(

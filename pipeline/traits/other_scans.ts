@@ -50,7 +50,11 @@ export function resolveOtherScans(
     });
     told.push({ ...found, trait, note: "of another process: acts by the errors of the cross-section" });
     if (expected !== null) {
-      told.push({ ...expected, trait: `expected ${trait}`, note: "what the scan is compared with" });
+      told.push({
+        ...expected,
+        trait: `${process} expected_offset_per_m`,
+        note: "what the scan is compared with",
+      });
     }
   }
   return { scans, told };

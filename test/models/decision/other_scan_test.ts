@@ -102,7 +102,7 @@ Deno.test("of two parameters the draws have the means, variances and the correla
     column(found, "titanium_nm"),
     column(found, "scan|by the cross-section"),
   ];
-  deepEqual(columns.map((c) => c.trait), ["width_error_um", "titanium_nm", "mismatch_offset_per_m TM>TM+TM"]);
+  deepEqual(columns.map((c) => c.trait), ["width_error_um", "titanium_nm", "TM>TM+TM mismatch_offset_per_m"]);
   for (const x of columns) {
     for (const y of columns) {
       const expected = x === y ? x.u ** 2 : 0;

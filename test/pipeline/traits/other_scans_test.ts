@@ -50,7 +50,7 @@ Deno.test("a scan of another process is compared with the calculation where the 
   equal(inputs.offset, null);
   const told = roles.filter((r) => r.role === "phase_matching" && r.trait.includes("offset"));
   deepEqual(told.map((r) => [r.trait, r.used, r.basis, r.wavelength_nm]), [
-    ["mismatch_offset_per_m TM>TM+TM", [0], "measured", 1582],
+    ["TM>TM+TM mismatch_offset_per_m", [0], "measured", 1582],
   ]);
   ok(told[0]!.note!.includes("cross-section"));
 });
@@ -77,7 +77,7 @@ Deno.test("what is expected comes from scans of the process on other guides, nev
   // Most of a width error is common to the guides of a die or wafer: the others' scans hold that.
   const { felt, own } = a.shares.width_um!;
   ok(felt > 0.2 && felt < 0.6 && own === felt, `${felt}, ${own}`);
-  const expected = near.roles.find((r) => r.trait === "expected mismatch_offset_per_m TM>TM+TM")!;
+  const expected = near.roles.find((r) => r.trait === "TM>TM+TM expected_offset_per_m")!;
   deepEqual([expected.value, expected.basis, expected.used], [a.expected.value, "die", [0]]);
   // Nobody else was scanned: all is told, but the platform's doubt hides it.
   const alone = resolve([scan(HERE.guide_id, 900, TYPE_ZERO)], platform).inputs.otherScans![0]!;
