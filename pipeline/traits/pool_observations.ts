@@ -95,7 +95,7 @@ export function withSharedU(observations: readonly LotObservation[]): LotObserva
 }
 
 /**
- * What is told of the rows that an estimate used: the farthest one's distance in wavelength, and all their distances as text.
+ * What is told of the rows that an estimate used: the farthest one's distance in wavelength, and all their wavelengths as text.
  * With the unit they name the readings whatever else the lot holds: seeds made of positions would move with every new file.
  */
 export interface UsedRows {
@@ -105,16 +105,20 @@ export interface UsedRows {
 
 /** Describes lists of positions; once each: a whole lot inherits from one list of thousands. */
 export function describer(readings: readonly NearReading[]): (used: readonly number[]) => UsedRows {
-  const distances = new Map(readings.flatMap((r) => r.distance === null ? [] : [[r.position, r.distance]]));
+  const byPosition = new Map(readings.map((r) => [r.position, r]));
   const held = new WeakMap<readonly number[], UsedRows>();
   return (used) => {
     let rows = held.get(used);
     if (rows === undefined) {
-      const distance = used.reduce<number | null>((far, k) => {
-        const d = distances.get(k);
-        return d === undefined ? far : far === null || Math.abs(d) > Math.abs(far) ? d : far;
-      }, null);
-      rows = { distance, list: [...new Set(used.map((k) => distances.get(k) ?? 0))].sort().join(",") };
+      let distance: number | null = null;
+      const wavelengths = new Set<number>();
+      for (const k of used) {
+        const near = byPosition.get(k)!;
+        if (near.distance === null) continue;
+        if (distance === null || Math.abs(near.distance) > Math.abs(distance)) distance = near.distance;
+        wavelengths.add(near.row.wavelength_nm!);
+      }
+      rows = { distance, list: [...wavelengths].sort((a, b) => a - b).join(",") };
       held.set(used, rows);
     }
     return rows;
