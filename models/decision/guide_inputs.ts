@@ -119,6 +119,8 @@ export interface GuideInputs {
    * that scans nearby or the platform suggest; null when the calculated Δβ is taken as it is.
    */
   readonly offset: UsedTrait | null;
+  /** Offset of Δβ that the lot's guides have on the whole, 1/m; left out: none is known. */
+  readonly usualOffset?: number;
   /** Scans of other processes on this guide, where none of the asked one was made. */
   readonly otherScans?: readonly OtherScan[];
   /** Spread of Δβ along the guide beside what `along` says; null or left out where nothing speaks of one. */

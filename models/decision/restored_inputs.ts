@@ -30,7 +30,8 @@ export interface RestoreAims {
 
 /**
  * A guide with some groups of traits at their targets, exactly known; every other trait keeps its key and with it its draws.
- * Poling becomes the design's grating, phase matching the calculated one of the cross-section as designed.
+ * Poling becomes the design's grating, phase matching that of the cross-section as designed: calculated, with the offset that the
+ * lot's guides have on the whole.
  */
 export function restoredInputs(
   guide: GuideInputs,
@@ -82,7 +83,7 @@ function designGrating({ targets }: Pick<Platform, "targets">): GuideInputs["pol
   };
 }
 
-/** The cross-section as drawn, the same all along the guide, and the mismatch as calculated for it. */
+/** The cross-section as drawn, the same all along the guide, and the mismatch that such guides of the lot have. */
 function asDesigned(
   guide: GuideInputs,
   designWidth_um: number,
@@ -97,6 +98,7 @@ function asDesigned(
     if (parameter === "width_um" || geometry[parameter] === undefined) continue;
     geometry[parameter] = targetOf(platform, parameter) ?? geometry[parameter];
   }
-  const offset = platform.targets.mismatch_offset_per_m ?? 0;
+  // What all guides of the lot have in common is the error of the calculation, which no fabrication puts right.
+  const offset = platform.targets.mismatch_offset_per_m ?? guide.usualOffset ?? 0;
   return { ...rest, geometry, geometryErrors: [], offset: exactly(offset, "mismatch_offset_per_m") };
 }

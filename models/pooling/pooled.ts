@@ -28,6 +28,8 @@ export interface HierarchicalPool extends Pool {
   /** Mean, differences between widths and slopes of the trend; empty without a fit. */
   readonly effects: LotFit["effects"];
   readonly trend: Pick<TrendChoice, "taken" | "trials">;
+  /** What the lot's guides have on the whole; null without a fit. */
+  usual(): Uncertain | null;
   /** Readings of this lot that contradict their neighbours; they are in the estimates all the same. */
   contradictions(): readonly Contradiction[];
 }
@@ -102,6 +104,7 @@ export function pools(
     return {
       estimate: estimator(fit, leaves, observations, lot, fallback, 1 / priors.mean.u ** 2, options),
       spreads: spreadsOf(fit),
+      usual: () => joined(fit.ask({ lot, wafer: UNREAD })),
       effects: fit.effects,
       trend: { taken: trend.taken, trials: trend.trials },
       contradictions: () => named ??= contradictions(observations, lot, fit, refit, alpha),
@@ -115,7 +118,7 @@ export function pools(
   };
 }
 
-/** A name that no lot has. */
+/** A name that no lot and no wafer has. */
 const UNREAD = "";
 
 /** {@link pools} for one lot. */
@@ -236,6 +239,7 @@ function withoutModel(
       return { ...found, shares: null, bounded: bounds === undefined ? null : truncated(found, bounds) };
     },
     spreads: null,
+    usual: () => null,
     effects: [],
     trend: { taken: null, trials: [] },
     contradictions: () => [],

@@ -118,6 +118,7 @@ export function resolveGuide(
   const signal = arm("signal", lambdaS, polS);
   const idler = arm("idler", lambdaI, polI);
   const poling = resolvePoling(pools, windows, guide, walls, roles);
+  const usualOffset = pools.usualOffset(processName(polP, polS, polI), wavelengthNm(2 * lambdaP));
   const offset = pools.offset(guide, processName(polP, polS, polI), wavelengthNm(2 * lambdaP));
   if (offset !== null) roles.push(roleOf("phase_matching", offset));
   const spread = resolveSpread(pools, guide, checked.waves);
@@ -147,6 +148,7 @@ export function resolveGuide(
     idler,
     poling,
     offset: offset === null ? null : used(offset),
+    ...(usualOffset === null ? {} : { usualOffset }),
     ...(others.scans.length === 0 ? {} : { otherScans: others.scans }),
     mismatchSpread: spread?.traits ?? null,
   };

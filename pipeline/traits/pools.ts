@@ -178,6 +178,16 @@ export class TraitPools {
     };
   }
 
+  /**
+   * Offset of Δβ that the lot's guides have on the whole for a process, 1/m: how far the platform's calculation is off. Null
+   * where the platform does not say how far that may be, or nobody scanned.
+   */
+  usualOffset(processKey: string, fundamental_nm: number): number | null {
+    const trait = "mismatch_offset_per_m";
+    if (defaultOf(this.platform, trait, null) === null) return null;
+    return this.#held(trait, fundamental_nm, null, processKey).pool.usual()?.value ?? null;
+  }
+
   /** Readings of the lot that contradict the others of their trait, as it is pooled at a wavelength. */
   contradictions(
     trait: PooledTrait,

@@ -95,6 +95,26 @@ Deno.test("analyseGuide() takes a stated target before the platform's default", 
   assert.deepEqual([of({}), of({ loss_db_cm: 0.1 }), of({ loss_db_cm: { TE: 0.1 } })], [0, 1, 1]);
 });
 
+Deno.test("restoredInputs() keeps what all guides of the lot are off by: a target the platform states comes first", () => {
+  const checked = doubled([]);
+  const offsetOf = (usualOffset: number | undefined, targets: object) =>
+    restoredInputs(
+      { ...lossy, ...(usualOffset === undefined ? {} : { usualOffset }) },
+      ["phase_matching"],
+      checked,
+      {
+        platform: { ...platform, targets },
+        designWidth_um: 3,
+      },
+    ).offset;
+  assert.deepEqual([offsetOf(undefined, {})!.value, offsetOf(-350, {})!.value, offsetOf(-350, {})!.u], [
+    0,
+    -350,
+    0,
+  ]);
+  assert.equal(offsetOf(-350, { mismatch_offset_per_m: 20 })!.value, 20);
+});
+
 Deno.test("restoredInputs() leaves the draws of every other trait as they are", () => {
   const checked = doubled([]);
   const made = drawTraits(lossy).columns;

@@ -78,6 +78,16 @@ Deno.test("a mode's size and its u are carried with the wavelength, readings and
   assertClose(lossAt(pools([loss("A-1/01/g1", 0.3, 1550)]), HERE, 1600).value, 0.3, { rel: 1e-4 });
 });
 
+Deno.test("readings at two wavelengths err apart, one reading that serves two wavelengths errs alike", () => {
+  const p = pools([loss("A-1/01/g1", 0.7, 791), loss("A-1/01/g1", 0.3, 1582)]);
+  const keys = (guide: typeof HERE, ...at: number[]) =>
+    new Set(at.map((nm) => lossAt(p, guide, nm).key)).size;
+  for (const guide of [HERE, SAME_DIE, SAME_WAFER, SAME_LOT]) {
+    equal(keys(guide, 791, 1582), 2);
+    equal(keys(guide, 1570, 1582, 1600), 1);
+  }
+});
+
 Deno.test("guides of the same design width are heard first", () => {
   const wide = { ...loss("A-1/01/g2", 0.9), width_um: 6 };
   const alone = lossAt(pools([wide]));
@@ -219,6 +229,23 @@ Deno.test("a scan's offset is its guide's own as read; for its neighbours its u 
   deepEqual([of(300, HERE).value, of(300, HERE).u], [80, 2]);
   ok(of(300, SAME_DIE).u > of(null, SAME_DIE).u);
   ok(Math.abs(of(300, SAME_DIE).value) < Math.abs(of(null, SAME_DIE).value));
+});
+
+Deno.test("the usual offset of a lot is what its scans have in common, and unknown where nobody scanned or none is expected", () => {
+  const defaults = { ...PLATFORM.defaults, mismatch_offset_per_m: { value: 0, u: 5000 } };
+  const priors = { mismatch_offset_per_m: { lot_sd: 5000, wafer_sd: 60, die_sd: 30, guide_sd: 30 } };
+  const scans = [HERE, SAME_DIE, SAME_WAFER, SAME_LOT].map((g, k) =>
+    traitRow("mismatch_offset_per_m", g.guide_id, -400 + 20 * k, {
+      wavelength_nm: 1582,
+      process: "TE>TE+TM",
+      u: 2,
+    })
+  );
+  const usual = (rows: readonly TraitRow[], platform = { ...PLATFORM, defaults, priors }) =>
+    new TraitPools(platform, lotDesign(), rows).usualOffset("TE>TE+TM", 1582);
+  assertClose(usual(scans)!, -370, { abs: 25 });
+  equal(usual([]), null);
+  equal(usual(scans, PLATFORM as never), null);
 });
 
 /** A lot of one wafer, two guides read. */
