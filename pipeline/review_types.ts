@@ -80,6 +80,8 @@ export interface RankedDie {
   readonly guides_of_die: number;
   readonly matched: boolean;
   readonly unavailable: string | null;
+  /** Readings of the guide that the others contradict, as sentences. */
+  readonly contradicted: readonly string[];
   readonly operating_temperature_c: FigureValue;
   /** Required figures. */
   readonly figures: Readonly<Record<string, FigureValue>>;

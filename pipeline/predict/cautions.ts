@@ -36,3 +36,12 @@ export function samplingRemarks({ settled, probability, draws }: GuidePrediction
     "sure: more draws might decide otherwise",
   ];
 }
+
+/** Says of a guide that a reading of its own, or of its die as a whole, is one that the others contradict. */
+export function contradictionRemarks(
+  { guide_id, die_id }: { readonly guide_id: string; readonly die_id: string },
+  contradictions: readonly { readonly unit: string; readonly text: string }[],
+): string[] {
+  return contradictions.filter(({ unit }) => unit === guide_id || unit === die_id)
+    .map(({ text }) => `contradicted_reading: ${text}`);
+}

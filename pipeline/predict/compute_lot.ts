@@ -10,7 +10,8 @@ import { loadTraits } from "../traits/load_traits.ts";
 import { loadOtherLots } from "../traits/pooled_lots.ts";
 import { TraitPools } from "../traits/pools.ts";
 import { AnalysisStore } from "./analysis_store.ts";
-import { powerCautions, samplingRemarks } from "./cautions.ts";
+import { contradictionRemarks, powerCautions, samplingRemarks } from "./cautions.ts";
+import { contradictionsOf, contradictionText } from "./contradictions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import { GuideSource, type SourcedGuide } from "./guide_source.ts";
 import type { GuideAt, Job, JobResult, Task, WorkerSetup } from "./jobs.ts";
@@ -71,9 +72,13 @@ export async function computeLot(
   const analyses = checked.map((c) => new AnalysisStore(lot, c));
   const roles: { guide: GuideRecord; roles: readonly RoleTrait[] }[][] = requests.map(() => []);
   let [finished, total] = [0, 0];
+  const contradicted = checked.map((c) =>
+    contradictionsOf(pools, c).map((found) => ({ unit: found.unit, text: contradictionText(found, pools) }))
+  );
   const remarked = ({ request, guide }: GuideAt, prediction: GuidePrediction): GuidePrediction => {
     const { die_id } = guides[guide]!;
     const cautions = [
+      ...contradictionRemarks(guides[guide]!, contradicted[request]!),
       ...powerCautions(loaded.platform, requests[request]!.request, prediction.figures),
       ...(unavailable.has(die_id) ? [] : samplingRemarks(prediction)),
     ];

@@ -204,10 +204,18 @@ function goes({ request, ranked }: RequestReview): string[] {
   };
   const [accepted, held] = [list("accept"), list("hold")];
   const best = ranked.find((d) => d.unavailable === null && d.decision === "accept");
+  const doubted = ranked.filter((d) =>
+    d.unavailable === null && d.decision === "accept" && d.contradicted.length > 0
+  );
   return [
     accepted === ""
       ? `${request}: no die`
       : `${request}: ${accepted}; best is ${best!.guide} (probability ${num(best!.probability, 3)})`,
+    ...(doubted.length === 0 ? [] : [
+      `${request}, read again before it is shipped: ${
+        doubted.map((d) => d.guide).join(", ")
+      }, where a reading contradicts the others`,
+    ]),
     ...(held === "" ? [] : [`${request}, on hold: ${held}`]),
   ];
 }

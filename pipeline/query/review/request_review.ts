@@ -64,6 +64,9 @@ export function describe({ request, waves, processKey }: CheckedRequest): string
   }
 }
 
+/** How a prediction's remark on a contradicted reading of its guide begins. */
+const CONTRADICTED = "contradicted_reading: ";
+
 function rankedDie(e: RankedEntry, { requirements }: CheckedRequest, matched: boolean): RankedDie {
   return {
     die: e.die,
@@ -75,6 +78,9 @@ function rankedDie(e: RankedEntry, { requirements }: CheckedRequest, matched: bo
     guides_of_die: e.guides_of_die,
     matched,
     unavailable: e.unavailable ?? null,
+    contradicted: (e.remarks ?? []).filter((r) => r.startsWith(CONTRADICTED)).map((r) =>
+      r.slice(CONTRADICTED.length)
+    ),
     operating_temperature_c: e.figures.operating_temperature_c,
     figures: Object.fromEntries(requirements.map((r) => [r.figure, e.figures[r.figure]])),
   };
