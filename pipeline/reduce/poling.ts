@@ -86,6 +86,7 @@ function polingTraits(
     trait: "merged",
     value: merged / total,
     u: Math.sqrt(share * (1 - share) / (total + 2)),
+    counted: total,
   };
   if (domains === 0) return [missing]; // no domain, so no duty: but that all are missing is known
   return [
@@ -113,7 +114,11 @@ export function reduceWalls(readings: LotReadings, walls: GuideWalls): Reduced {
   };
   const positions = walls.positions_um.map(um);
   const verdict = walls.quarantined > 0
-    ? { complete: false, reason: `${walls.quarantined} of its rows are quarantined`, remarks: [] }
+    ? {
+      complete: false,
+      reason: `${walls.quarantined} of its rows ${walls.quarantined === 1 ? "is" : "are"} quarantined`,
+      remarks: [],
+    }
     : wallsComplete(positions, section);
   const place: Place = {
     scope: "guide",

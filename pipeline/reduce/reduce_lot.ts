@@ -156,6 +156,7 @@ function traitTable(lot: string, rows: readonly TraitRow[]): TableStream {
     value: column("value"),
     u: column("u"),
     u_pooled: rows.map((r) => r.u_pooled ?? null),
+    counted: rows.map((r) => r.counted ?? null),
     u_from: column("u_from"),
     method: column("method"),
     readings: rows.map((r) => JSON.stringify(r.readings)),

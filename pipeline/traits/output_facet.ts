@@ -67,7 +67,8 @@ export function outputFacetOf(
     value: fallback.value,
     u: fallback.u,
     basis: "platform",
-    key: `reflectivity|platform|${wavelength_nm}|${polarisation}`,
+    // One coating, one error: the polarisations part only where the platform tells them apart.
+    key: `reflectivity|platform|${wavelength_nm}|${fallback.value}|${fallback.u}`,
     distance: null,
     from: platform.platform,
     used: [],

@@ -56,13 +56,18 @@ export function readingsNear(
   });
 }
 
+/** A reading for the pool; of how many things, where it is a share. */
+export interface CountedObservation extends LotObservation {
+  readonly counted?: number;
+}
+
 /** A reading as one of many of its trait; `index` is the caller's handle on it. */
 export function observationOf(
   { row, scale }: NearReading,
   lot: string,
   index: number,
   u = row.u_pooled ?? row.u,
-): LotObservation {
+): CountedObservation {
   return {
     lot,
     wafer: row.wafer!,
@@ -72,6 +77,7 @@ export function observationOf(
     value: row.value * scale,
     u: u * scale,
     index,
+    ...(row.counted === undefined || row.counted === null ? {} : { counted: row.counted }),
   };
 }
 
@@ -82,16 +88,30 @@ export const ownReadings = (readings: readonly NearReading[], lot: string): LotO
 
 /**
  * The u of a share of rare events goes with the share itself: weighed by 1/u², guides that happened to count none would
- * outweigh all others. Within a wafer every guide's share gets the root mean square of their u, so that all weigh alike.
+ * outweigh all others. Within a wafer every guide's u is that of the wafer's common share p̂ = (M + ½)/(N + 1), counted of its own
+ * things: √(p̂(1 − p̂)/n).
  */
-export function withSharedU(observations: readonly LotObservation[]): LotObservation[] {
-  const byWafer = Map.groupBy(observations, (o) => o.wafer);
-  const shared = new Map(
-    [...byWafer].map((
-      [wafer, all],
-    ) => [wafer, Math.sqrt(all.reduce((s, { u }) => s + u * u, 0) / all.length)]),
+export function withSharedU(observations: readonly CountedObservation[]): LotObservation[] {
+  const byWafer = new Map(
+    [...Map.groupBy(observations, (o) => o.wafer)].map(([wafer, all]) => [wafer, commonShare(all)]),
   );
-  return observations.map((o) => ({ ...o, u: shared.get(o.wafer)! }));
+  return observations.map((o) => {
+    const share = byWafer.get(o.wafer)!;
+    return o.counted === undefined ? o : { ...o, u: Math.sqrt(share * (1 - share) / o.counted) };
+  });
+}
+
+/**
+ * The common share of counted readings, with half an event for what was not seen (Jeffreys; L. D. Brown, T. T. Cai &
+ * A. DasGupta, Stat. Sci. 16, 101 (2001); from memory).
+ */
+export function commonShare(observations: readonly CountedObservation[]): number {
+  let [events, things] = [0.5, 1];
+  for (const { value, counted = 0 } of observations) {
+    events += value * counted;
+    things += counted;
+  }
+  return events / things;
 }
 
 /**

@@ -12,12 +12,15 @@ import {
 } from "../../models/pooling/mod.ts";
 import type { UsedTrait } from "../../models/decision/mod.ts";
 import { InputError } from "../../shared/errors.ts";
+import { mean, standardDeviation } from "../../shared/statistics.ts";
 import type { DefaultTrait, Platform } from "../../shared/schemas/platform.ts";
 import type { Polarisation } from "../../shared/vocabulary.ts";
 import type { GuideRecord, LotDesign } from "../records.ts";
 import { type OutputFacet, outputFacetOf } from "./output_facet.ts";
 import { defaultOf, spreadOf } from "./platform_defaults.ts";
 import {
+  commonShare,
+  type CountedObservation,
   describer,
   observationOf,
   ownReadings,
@@ -252,7 +255,7 @@ export class TraitPools {
       from: this.platform.platform,
     };
     const spread = fallback === null && this.platform.priors[trait] === undefined
-      ? spreadOfOne(all)
+      ? unstatedSpread(observations, all)
       : spreadOf(this.platform, trait, fallback);
     const scaled = {
       lotSd: spread.lotSd * carry,
@@ -334,9 +337,19 @@ export class TraitPools {
 /**
  * Spreads where the platform states nothing. Several units tell them by themselves (all 0: not stated); a single one is taken
  * to be off by half of itself for other guides (common practice, no source), and never to hold for them as it was read.
+ * Shares that scatter no more than counting makes them are taken to differ by as much as they are large: the error of counting
+ * on one guide says nothing of how much guides differ.
  */
-function spreadOfOne(observations: readonly LotObservation[]): Spread {
+function unstatedSpread(
+  observations: readonly LotObservation[],
+  counted: readonly CountedObservation[],
+): Spread {
   const units = new Set(observations.map((o) => o.guide ?? o.die ?? o.wafer));
+  if (counted.some((o) => o.counted !== undefined)) {
+    const scatter = units.size < 2 ? 0 : standardDeviation(observations.map((o) => o.value));
+    const counting = Math.sqrt(mean(observations.map((o) => o.u * o.u)));
+    return spreadFromDefault(scatter > counting ? 0 : commonShare(counted));
+  }
   if (units.size !== 1) return spreadFromDefault(0);
   return spreadFromDefault(Math.max(...observations.map(({ value, u }) => Math.max(u, Math.abs(value) / 2))));
 }

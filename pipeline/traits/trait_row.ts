@@ -51,6 +51,8 @@ export interface TraitRow {
    * cross-section errs by, which is nothing of its neighbours'. Null or left out: u.
    */
   readonly u_pooled?: number | null;
+  /** Of how many things a share was counted; left out or null for what is no share. */
+  readonly counted?: number | null;
   /** Where u comes from: stated with the readings, the platform's default, or the fit. */
   readonly u_from: "stated" | "platform" | "fit";
   readonly method: string;
@@ -74,6 +76,7 @@ export const TRAIT_SHAPE = {
   value: "f64",
   u: "f64",
   u_pooled: "f64",
+  counted: "f64",
   u_from: "text",
   method: "text",
   readings: "text",

@@ -129,6 +129,19 @@ Deno.test("a coated facet: linear between readings up to 25 nm apart, 5 nm beyon
   }
 });
 
+Deno.test("a coating that nobody measured errs alike in both polarisations, unless the platform tells them apart", () => {
+  const keys = (coated_reflectivity: object) => {
+    const platform = {
+      ...PLATFORM,
+      defaults: { ...PLATFORM.defaults, coated_reflectivity },
+    } as typeof PLATFORM;
+    const p = new TraitPools(platform, coated("C1"), []);
+    return new Set((["TE", "TM"] as const).map((pol) => p.outputFacet(HERE, 1582, pol).resolved!.key)).size;
+  };
+  equal(keys({ value: 0.01, u: 0.01 }), 1);
+  equal(keys({ TE: { value: 0.01, u: 0.01 }, TM: { value: 0.02, u: 0.01 } }), 2);
+});
+
 Deno.test("the last coating of a facet counts; the input facet's coating is not the output's; no coating is bare", () => {
   const readings = [mirror(1582, 0.5, "C1|out"), mirror(1582, 0.003, "C2|out")];
   equal(pools(readings, coated("C1", "C2")).outputFacet(HERE, 1582, "TE").resolved!.value, 0.003);
