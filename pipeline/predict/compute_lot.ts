@@ -18,7 +18,7 @@ import type { GuideAt, Job, JobResult, Task, WorkerSetup } from "./jobs.ts";
 import { guidesForLargerSamples, MOST_DRAWS } from "./larger_samples.ts";
 import { type JobPool, openPool } from "./pool.ts";
 import type { PredictLotOptions } from "./predict_lot.ts";
-import { representatives } from "./representatives.ts";
+import { guidesToAnalyse } from "./representatives.ts";
 
 /** Everything that predicting a lot finds, by the position of the request. */
 export interface ComputedLot {
@@ -123,7 +123,7 @@ export async function computeLot(
     );
     await round(
       stores.map((store, k) =>
-        representatives(store, checked[k]!, unavailable).filter((guide) => store.decision(guide) !== "accept")
+        guidesToAnalyse(store, checked[k]!, unavailable).filter((guide) => store.decision(guide) !== "accept")
       ),
       ({ request, guide }) => ({
         kind: "analyse",

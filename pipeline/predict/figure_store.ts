@@ -85,6 +85,11 @@ export class FigureStore {
     return this.#predictions[guide]!.decision;
   }
 
+  /** Share of the draws with an operating point. */
+  matched(guide: number): number {
+    return this.#predictions[guide]!.matched;
+  }
+
   settled(guide: number): boolean {
     return this.#predictions[guide]!.settled;
   }

@@ -21,6 +21,30 @@ export function representatives(
   return [...best.values()].map((b) => b.guide).sort((a, b) => a - b);
 }
 
+/**
+ * The guides whose analysis speaks for the dies: those that stand for them, but a guide that matches nowhere leaves its
+ * place to the one of its die that matches most often, if they rank alike. What traits at their targets would bring a die
+ * can't be told by a guide that was drawn for another process.
+ * @returns positions of guides, ascending
+ */
+export function guidesToAnalyse(
+  store: FigureStore,
+  request: Pick<CheckedRequest, "orderBy" | "descending">,
+  unavailable: ReadonlyMap<string, string>,
+): number[] {
+  const standing = representatives(store, request, unavailable);
+  const [matching, lost] = [true, false].map((some) =>
+    standing.filter((guide) => store.matched(guide) > 0 === some)
+  );
+  const better = new Map(lost!.map((guide) => [store.guides[guide]!.die_id, guide]));
+  store.guides.forEach(({ die_id }, guide) => {
+    const held = better.get(die_id);
+    if (held === undefined || store.probability(guide) !== store.probability(held)) return;
+    if (store.matched(guide) > store.matched(held)) better.set(die_id, guide);
+  });
+  return [...matching!, ...better.values()].sort((a, b) => a - b);
+}
+
 /** Whether a value ranks before another; one that does not exist ranks last. */
 const before = (a: number | null, b: number | null, descending: boolean): boolean =>
   a !== null && (b === null || (descending ? a > b : a < b));

@@ -12,7 +12,7 @@ export interface DieVerdict {
   readonly die: string;
   readonly wafer: string;
   readonly decision: "accept" | "hold" | "reject";
-  /** The guide that stands for the die: the most probable, ties by id. */
+  /** The guide that stands for the die: the most probable, then the one that matches most often, then the first. */
   readonly best: DecisionFact;
   readonly unavailable: string | null;
 }
@@ -25,7 +25,9 @@ export function dieVerdicts(decisions: readonly DecisionFact[]): DieVerdict[] {
     const held = byDie.get(d.die_id);
     if (
       held === undefined || rank[d.decision] < rank[held.decision] ||
-      (d.decision === held.decision && d.probability > held.probability)
+      d.decision === held.decision &&
+        (d.probability > held.probability ||
+          d.probability === held.probability && Number(d.matched) > Number(held.matched))
     ) byDie.set(d.die_id, d);
   }
   return [...byDie].map(([die, best]) => ({

@@ -2,7 +2,7 @@ import assert from "node:assert/strict";
 import type { GuidePrediction } from "../../../models/decision/mod.ts";
 import { FigureStore } from "../../../pipeline/predict/figure_store.ts";
 import { guidesForLargerSamples } from "../../../pipeline/predict/larger_samples.ts";
-import { representatives } from "../../../pipeline/predict/representatives.ts";
+import { guidesToAnalyse, representatives } from "../../../pipeline/predict/representatives.ts";
 import { checkRequest, requestSchema } from "../../../shared/schemas/request.ts";
 import { guideRecord } from "../traits/a_lot.ts";
 
@@ -20,10 +20,16 @@ const asked = (over: object = {}) => {
 };
 
 function storeOf(
-  guides: readonly { id: string; p: number; settled?: boolean; efficiency?: number | null }[],
+  guides: readonly {
+    id: string;
+    p: number;
+    settled?: boolean;
+    efficiency?: number | null;
+    matched?: number;
+  }[],
 ) {
   const store = new FigureStore("A", "r", guides.map((g) => guideRecord(g.id)));
-  guides.forEach(({ p, settled = true, efficiency = null }, k) =>
+  guides.forEach(({ p, settled = true, efficiency = null, matched = 1 }, k) =>
     store.set(
       k,
       {
@@ -43,7 +49,7 @@ function storeOf(
         limitedBy: null,
         draws: 256,
         settled,
-        matched: 1,
+        matched,
         otherTemperatures: [],
         pairs: null,
         remarks: [],
@@ -66,6 +72,22 @@ Deno.test("representatives() picks the guide that a ranking shows for a die, and
   const byFigure = asked({ order_by: "efficiency_percent_per_w" });
   assert.deepEqual(representatives(store, byFigure, gone), [0, 3], "a figure that does not exist ranks last");
   assert.deepEqual(representatives(store, byFigure, new Map()), [0, 3, 4]);
+});
+
+Deno.test("guidesToAnalyse() lets a guide that matches speak for a die whose first guide matches nowhere", () => {
+  const store = storeOf([
+    { id: "A-1/01/g1", p: 0, matched: 0 },
+    { id: "A-1/01/g2", p: 0, matched: 0.4 },
+    { id: "A-1/01/g3", p: 0, matched: 0.9 },
+    { id: "A-1/02/g1", p: 0.2, matched: 0.2 },
+    { id: "A-1/02/g2", p: 0.2, matched: 1 },
+    { id: "A-1/03/g1", p: 0, matched: 0 },
+    { id: "A-1/03/g2", p: 0, matched: 0 },
+    { id: "A-1/04/g1", p: 0, matched: 0 },
+    { id: "A-1/04/g2", p: 0, matched: 1 },
+  ]);
+  const gone = new Map([["A-1/04", "cut"]]);
+  assert.deepEqual(guidesToAnalyse(store, asked(), gone), [2, 3, 5]);
 });
 
 Deno.test("guidesForLargerSamples() takes unsettled guides, and of a whole lot at a threshold no more than one in twenty", () => {

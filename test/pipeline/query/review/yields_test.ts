@@ -24,6 +24,13 @@ const dies = (wafer: string, good: number, of: number, p = 0.95) =>
     (_, k) => [`${wafer}/${k}/g1`, k < good ? "accept" : "reject", k < good ? p : 0.02] as const,
   );
 
+Deno.test("a die whose guides all fail is spoken for by one that matches", () => {
+  const rows = decided([["A/1/g1", "reject", 0], ["A/1/g2", "reject", 0], ["A/1/g3", "reject", 0]]);
+  const matched = [false, true, true];
+  const [die] = dieVerdicts(rows.map((d, k) => ({ ...d, matched: matched[k]! })));
+  equal(die!.best.guide_id, "A/1/g2");
+});
+
 Deno.test("a yield has both usual intervals, as printed for 81 of 263", () => {
   // L. D. Brown, T. T. Cai, A. DasGupta, Stat. Sci. 16, 101 (2001) discuss both; R. G. Newcombe, Stat. Med. 17, 857 (1998), table I:
   // 81 of 263: score 0.2553 to 0.3662, exact 0.2527 to 0.3676 (from memory).
