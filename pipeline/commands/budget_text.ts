@@ -1,4 +1,5 @@
 import { type Figure } from "../../shared/schemas/figures.ts";
+import { budgetBasis } from "../budget_basis.ts";
 import { textTable } from "../console/mod.ts";
 import type { RankedEntry, RankedFigure } from "../query/rank.ts";
 import type { LoadedRequest } from "../requests.ts";
@@ -19,14 +20,16 @@ export function budgetText(best: RankedEntry, { request }: LoadedRequest): strin
         ? `Nothing matches in the oven; what follows is at the nearest temperature, ${
           temperature.mean.toFixed(1)
         } °C`
-        : `Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}`,
+        : `Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}${partly(best)}`,
     );
   }
   if (request.process !== "pair-generation") return lines.join("\n");
   const arms = ["signal", "idler"] as const;
   const rows = [
-    ...FACTORS.map((factor) => [factor, ...arms.flatMap((arm) => cells(f[`${factor}_${arm}` as Figure]))]),
-    ["heralding", ...arms.flatMap((arm) => cells(f[`heralding_${arm}`]))],
+    ...[...FACTORS, "heralding"].map((factor) => [
+      factor,
+      ...arms.flatMap((arm) => cells(factor, f[`${factor}_${arm}` as Figure])),
+    ]),
   ];
   const columns = [
     { title: "budget" },
@@ -51,8 +54,14 @@ export function budgetText(best: RankedEntry, { request }: LoadedRequest): strin
   return lines.join("\n");
 }
 
-const cells = (figure: RankedFigure): string[] =>
-  figure.mean === null ? ["–", figure.reason ?? ""] : [withU(figure, 3), figure.basis];
+/** Draws without a match have no temperature: what is told then holds for the others only. */
+const partly = ({ matched }: RankedEntry): string =>
+  matched > 0.995
+    ? ""
+    : `; so far as a match is in the oven at all, in ${Math.round(100 * matched)} % of the draws`;
+
+const cells = (factor: string, figure: RankedFigure): string[] =>
+  figure.mean === null ? ["–", figure.reason ?? ""] : [withU(figure, 3), budgetBasis(factor, figure)];
 
 /** Value with its standard uncertainty. */
 function withU({ mean, u }: RankedFigure, decimals: number): string {

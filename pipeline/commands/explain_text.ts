@@ -3,6 +3,7 @@ import type { Figure } from "../../shared/schemas/figures.ts";
 import { type Cell, textTable, wrap } from "../console/mod.ts";
 import type { ExplainedRole, GuideExplained } from "../query/explain.ts";
 import type { ReadingAdvice } from "../query/reading_advice.ts";
+import { mostlyUnmatched } from "../query/limits.ts";
 import { SHORT } from "./figure_titles.ts";
 
 const WIDTH = 80;
@@ -36,10 +37,12 @@ export function explainText(explained: GuideExplained): string {
   return parts.filter((lines) => lines.length > 0).map((lines) => lines.join("\n").trimEnd()).join("\n\n");
 }
 
-function limitLine({ limited_by, explanation: { matched, draws, spectra } }: GuideExplained): string[] {
+function limitLine(
+  { limited_by, probability, explanation: { matched, draws, spectra } }: GuideExplained,
+): string[] {
   const limit = limited_by === null
     ? "No requirement limits it."
-    : limited_by === "operating_temperature_c" && matched < 1
+    : matched < 1 && (limited_by === "operating_temperature_c" || mostlyUnmatched(probability, matched))
     ? `Limited by phase matching: ${percent(1 - matched)} of the draws match nowhere in the oven.`
     : `Limited by ${limited_by}.`;
   return wrap(
@@ -91,8 +94,11 @@ function traitTable({ traits, explanation: { figures } }: GuideExplained): strin
   const resolved = Math.max(...shown.map((f) => f.resolution ?? 0), 0);
   const left = figures.length > MOST_SHARES ? `; of ${figures.length} figures the first ${MOST_SHARES}` : "";
   return textTable(columns, rows, { width: WIDTH }) +
-    `Shares of the figure's variance, told to about ${percent(resolved)}${left}`;
+    `Shares of the figure's variance${toldTo(resolved)}${left}`;
 }
+
+/** How far the shares may be off, where that shows in whole percent. */
+const toldTo = (resolved: number): string => resolved < 0.005 ? "" : `, told to about ${percent(resolved)}`;
 
 const shareText = (share: number | null): string => share === null ? "–" : percent(share);
 
@@ -125,7 +131,9 @@ export function readingText(advice: ReadingAdvice): string {
   const at = reads[0]!.wavelength_nm === null
     ? ""
     : ` at ${number(reads[0]!.wavelength_nm, 5)} nm ${reads[0]!.polarisation}`;
-  return `${kind}${at} (${what}; u: ${reads[0]!.from}): takes away ${percent(reduction / doubt)} of it; ` +
+  return `${kind}${at} (${what}; u: ${reads[0]!.from}): takes away ${
+    percent(reduction / doubt)
+  } of the doubt; ` +
     `then accept ${percent(p_accept)}, hold ${percent(p_hold)}, reject ${percent(p_reject)}`;
 }
 

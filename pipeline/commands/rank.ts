@@ -1,6 +1,7 @@
 import { type Cell, csvText, textTable, wrap } from "../console/mod.ts";
 import { type Figure, FIGURES } from "../../shared/schemas/figures.ts";
 import { openLedger } from "../ledger/mod.ts";
+import { mostlyUnmatched } from "../query/limits.ts";
 import { type RankedEntry, rankGuides, type Ranking } from "../query/rank.ts";
 import { findRequest, type LoadedRequest } from "../requests.ts";
 import { budgetText } from "./budget_text.ts";
@@ -95,7 +96,7 @@ function printTable(ranking: Ranking, request: LoadedRequest, options: RankComma
     3,
   );
   const columns = [
-    { title: "guide" },
+    { title: "guide", whole: true },
     { title: "decision" },
     { title: "prob", align: "right" as const },
     { title: "T/°C", align: "right" as const },
@@ -151,10 +152,14 @@ const LEGEND = "m: measured on the guide; d, w, l: from die, wafer, lot; p: plat
 const isUnmatched = ({ figures: { operating_temperature_c: t, operating_pump_nm: pump } }: RankedEntry) =>
   t.mean !== null && pump.mean === null;
 
-function limitText({ limited_by }: RankedEntry, { requirements }: LoadedRequest): string {
+function limitText(
+  { limited_by, probability, matched }: RankedEntry,
+  { requirements }: LoadedRequest,
+): string {
   if (limited_by === null) return "";
+  if (mostlyUnmatched(probability, matched)) return "no match";
   const asked = requirements.some((r) => r.figure === limited_by);
-  return asked ? SHORT[limited_by as Figure] ?? limited_by : "no root";
+  return asked ? SHORT[limited_by as Figure] ?? limited_by : "no match";
 }
 
 function tableRow(

@@ -5,6 +5,8 @@ export interface TableColumn {
   readonly title: string;
   /** Left out: right if the column holds numbers and nothing else. */
   readonly align?: "left" | "right";
+  /** Never cut, as numbers are: an id is of no use without its end. */
+  readonly whole?: boolean;
   /** Significant digits of numbers that are not whole; 6 if left out. */
   readonly digits?: number;
 }
@@ -74,7 +76,7 @@ function measure(
   );
   const widest = cells.reduce((most, row) => Math.max(most, widthOf(row[i]!)), 0);
   const full = Math.max(widest, widthOf(visibleText(column.title)), 1);
-  const least = Math.min(full, Math.max(number, LEAST));
+  const least = column.whole === true ? full : Math.min(full, Math.max(number, LEAST));
   return { full, least, right: column.align === undefined ? numeric : column.align === "right" };
 }
 
@@ -114,11 +116,11 @@ function cut(text: string, width: number): string {
 }
 const segments = new Intl.Segmenter("en", { granularity: "grapheme" });
 
-/** Breaks a sentence at spaces; a word longer than the width is cut. */
+/** Breaks a sentence at spaces, but not between a number and its % or u; a word longer than the width is cut. */
 export function wrap(text: string, width: number): string[] {
   const lines: string[] = [];
   let current = "";
-  for (const word of text.split(" ")) {
+  for (const word of text.split(/(?<! ±) (?![%±] ?)/)) {
     const longer = current === "" ? word : `${current} ${word}`;
     if (widthOf(longer) <= width) {
       current = longer;

@@ -25,6 +25,8 @@ export interface RankedEntry {
   readonly decision: "accept" | "hold" | "reject";
   readonly probability: number;
   readonly limited_by: string | null;
+  /** Share of the draws that match within the oven or the pump's range; the others meet no requirement that needs it. */
+  readonly matched: number;
   readonly qualifying_guides: number;
   readonly guides_of_die: number;
   /** Why the die can't be shipped; left out when it can. */
@@ -168,6 +170,7 @@ function entry(
     decision: row.decision as RankedEntry["decision"],
     probability: row.probability as number,
     limited_by: row.limited_by as string | null,
+    matched: row.matched as number,
     qualifying_guides: row.qualifying_guides as number,
     guides_of_die: row.guides_of_die as number,
     ...(row.unavailable === null ? {} : { unavailable: row.unavailable as string }),

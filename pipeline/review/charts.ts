@@ -1,3 +1,4 @@
+import { budgetBasis } from "../budget_basis.ts";
 import type {
   BudgetRow,
   ChartReview,
@@ -169,7 +170,9 @@ export function budgetChart(label: string, rows: readonly BudgetRow[]): Html {
       mean: r[arm].mean,
       low: (r[arm].mean ?? NaN) - 2 * (r[arm].u ?? 0),
       high: Math.min(1, (r[arm].mean ?? NaN) + 2 * (r[arm].u ?? 0)),
-      hover: `${r.factor}, ${arm}: ${shown(r[arm].mean)} (u ${shown(r[arm].u, 2)}), ${r[arm].basis}`,
+      hover: `${r.factor}, ${arm}: ${shown(r[arm].mean)} (u ${shown(r[arm].u, 2)}), ${
+        budgetBasis(r.factor, r[arm])
+      }`,
     }))
   ).filter((d) => d.mean !== null);
   return chart(label, {

@@ -1,3 +1,4 @@
+import { budgetBasis } from "../budget_basis.ts";
 import type { FigureValue, RankedDie, RequestReview, ReviewData } from "../review_types.ts";
 import type { Cell } from "../console/mod.ts";
 import { budgetChart } from "./charts.ts";
@@ -124,10 +125,10 @@ export function budgetSection(data: ReviewData): Html {
               row.factor,
               row.signal.mean,
               row.signal.u,
-              row.signal.basis,
+              budgetBasis(row.factor, row.signal),
               row.idler.mean,
               row.idler.u,
-              row.idler.basis,
+              budgetBasis(row.factor, row.idler),
             ]),
           };
           return figure(

@@ -1,3 +1,4 @@
+import { budgetBasis } from "../budget_basis.ts";
 import type { FigureValue, SheetData, SheetRequest } from "../review_types.ts";
 import { page } from "./frame.ts";
 import { type Html, html } from "./html.ts";
@@ -158,7 +159,7 @@ function requestSection(r: SheetRequest, k: number): Html {
         b.factor,
         withU(b.signal.mean, b.signal.u),
         withU(b.idler.mean, b.idler.u),
-        b.signal.basis === b.idler.basis ? b.signal.basis : `${b.signal.basis}, ${b.idler.basis}`,
+        [...new Set([b.signal, b.idler].map((arm) => budgetBasis(b.factor, arm)))].join(", "),
       ]),
     })}</div>${r.remarks.length === 0
       ? null
@@ -205,7 +206,11 @@ function readings(d: SheetData): Html {
         ).join("; "),
       ]),
     })
-  }${rest > 0 ? html`<p class="soft">and ${rest} more traits in the ledger.</p>` : null}`;
+  }${
+    rest > 0
+      ? html`<p class="soft">and ${rest} more ${rest === 1 ? "trait" : "traits"} in the ledger.</p>`
+      : null
+  }`;
 }
 
 function provenance({ provenance: p, platform, readings: rows, requests }: SheetData): Html {

@@ -1,3 +1,4 @@
+import { mostlyUnmatched, NO_MATCH } from "../limits.ts";
 import { exactInterval } from "../../../models/decision/yields.ts";
 import { mean } from "../../../shared/statistics.ts";
 import type { LotFacts } from "./facts.ts";
@@ -24,7 +25,11 @@ export function yieldFloor(facts: LotFacts, rule: RuleOf<"yield_floor">): Flag[]
       const good = dies.filter((d) => d.decision === "accept").length;
       if (good / dies.length >= rule.floor) continue;
       const bound = exactInterval(good, dies.length, twoSided(rule.confidence)).high;
-      const limit = mostOften(dies.filter((d) => d.decision !== "accept").map((d) => d.best.limited_by));
+      const limit = mostOften(
+        dies.filter((d) => d.decision !== "accept").map(({ best }) =>
+          mostlyUnmatched(best.probability, Number(best.matched)) ? NO_MATCH : best.limited_by
+        ),
+      );
       low.set(wafer, [...low.get(wafer) ?? [], { request, dies, good, bound, limit }]);
     }
   }

@@ -6,6 +6,7 @@ import type { Engine } from "../engine.ts";
 import type { LotFacts, PredictionFacts } from "../flag/facts.ts";
 import { byWafer, type DieVerdict, dieVerdicts } from "../flag/verdicts.ts";
 import { type RankedEntry, rankIn } from "../rank.ts";
+import { mostlyUnmatched, NO_MATCH } from "../limits.ts";
 import { gainsOf, missingReadings } from "./gains.ts";
 import { groupShares, shareOf, waferShares } from "./yields.ts";
 
@@ -93,27 +94,35 @@ function limitsOf({ checked, figures }: PredictionFacts, dies: readonly DieVerdi
     { rejected: number; on_hold: number; would_pass: number; wafers: Set<string> }
   >();
   for (const d of dies) {
-    const figure = d.best.limited_by;
-    if (d.unavailable !== null || d.decision === "accept" || figure === null) continue;
+    const { limited_by, probability, matched } = d.best;
+    if (d.unavailable !== null || d.decision === "accept" || limited_by === null) continue;
+    const figure = mostlyUnmatched(probability, Number(matched)) ? NO_MATCH : limited_by;
     const row = rows.get(figure) ?? { rejected: 0, on_hold: 0, would_pass: 0, wafers: new Set() };
     if (d.decision === "reject") row.rejected++;
     else row.on_hold++;
     row.wafers.add(d.wafer);
-    if (othersPass(checked, figures.get(d.best.guide_id), figure)) row.would_pass++;
+    if (othersPass(checked, figures.get(d.best.guide_id), figure, Number(matched))) row.would_pass++;
     rows.set(figure, row);
   }
   return [...rows].map(([figure, r]) => ({ figure, ...r, wafers: [...r.wafers] }))
     .sort((a, b) => b.rejected + b.on_hold - a.rejected - a.on_hold || (a.figure < b.figure ? -1 : 1));
 }
 
-/** All other requirements hold together with the probability asked for: 1 − Σ(1 − p) bounds it from below, however they depend on each other. */
+/**
+ * All other requirements hold together with the probability asked for: 1 − Σ(1 − p) bounds it from below, however they depend
+ * on each other. Where phase matching limits, the others are those of the draws that match.
+ */
 function othersPass(
   { requirements, request }: CheckedRequest,
   figures: ReadonlyMap<string, { readonly probability: number | null }> | undefined,
   limiting: string,
+  matched: number,
 ): boolean {
+  if (limiting === NO_MATCH && matched === 0) return false; // of no draw is known what it would do
+  // A requirement met more often than there is a match needs none.
+  const given = (p: number) => limiting === NO_MATCH && p <= matched ? p / matched : p;
   const others = requirements.filter((r) => r.figure !== limiting).map((r) =>
-    figures?.get(r.figure)?.probability ?? 0
+    given(figures?.get(r.figure)?.probability ?? 0)
   );
   return 1 - others.reduce((sum, p) => sum + (1 - p), 0) >= request.decide.accept_at;
 }

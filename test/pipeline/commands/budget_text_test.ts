@@ -15,12 +15,26 @@ const nothing = {
 };
 const value = (mean: number) => ({ ...nothing, mean, u: 0, lo: mean, hi: mean, reason: undefined });
 
-function textOf(figures: Record<string, unknown>): string {
+function textOf(figures: Record<string, unknown>, matched = 1, process = "second-harmonic"): string {
   const all = Object.fromEntries(FIGURES.map((f) => [f, figures[f] ?? nothing]));
-  const entry = { guide: "A/01/g1", decision: "reject", probability: 0, figures: all };
-  const request = { request: { process: "second-harmonic" } };
+  const entry = { guide: "A/01/g1", decision: "reject", probability: 0, matched, figures: all };
+  const request = { request: { process } };
   return budgetText(entry as unknown as RankedEntry, request as unknown as LoadedRequest);
 }
+
+Deno.test("budgetText() tells of how many draws the temperature holds, and that the request gives the detector", () => {
+  const figures = { operating_temperature_c: value(41.2), operating_pump_nm: value(775) };
+  assert.match(textOf(figures, 0.1055), /^Oven at 41\.2 °C .* in the oven at all, in 11 % of the draws$/m);
+  assert.doesNotMatch(textOf(figures, 1), /of the draws/);
+  const detector = { ...value(0.85), basis: "measured" };
+  const budget = textOf(
+    { ...figures, detector_signal: detector, coupling_signal: detector },
+    1,
+    "pair-generation",
+  );
+  assert.match(budget, /^detector +0\.850 +request/m);
+  assert.match(budget, /^coupling +0\.850 +measured/m);
+});
 
 Deno.test("budgetText() does not call the nearest temperature one of operation", () => {
   const matched = textOf({ operating_temperature_c: value(41.2), operating_pump_nm: value(775) });

@@ -35,6 +35,13 @@ Deno.test("text that is too long ends in an ellipsis; a number is never cut", ()
   assert.match(table, /x… {2}1234568/);
 });
 
+Deno.test("a column to be kept whole is not cut: others give way", () => {
+  const columns = [{ title: "guide", whole: true }, { title: "decision" }, { title: "limit" }];
+  const text = textTable(columns, [["R08-1/01/g02", "accept", "heralding_signal"]], { width: 32 });
+  assert.match(text, /^R08-1\/01\/g02  accept/m);
+  assert.ok(text.split("\n").every((line) => line.length <= 32), text);
+});
+
 Deno.test("columns that do not fit are named below, not squeezed into other numbers", () => {
   const names = Array.from({ length: 12 }, (_, i) => `figure_${i}`);
   const row = names.map((_, i) => 123456789 + i);
@@ -76,6 +83,12 @@ Deno.test("control and direction marks of a file are shown, not obeyed", () => {
 Deno.test("colour only makes the headings bold, and only when asked for", () => {
   assert.ok(!textTable(titles("die"), [["a"]]).includes("\x1b"));
   assert.ok(textTable(titles("die"), [["a"]], { colour: true }).startsWith("\x1b[1mdie\x1b[22m\n"));
+});
+
+Deno.test("wrap() keeps a number with its % and its u", () => {
+  const broken = wrap("takes away 80 % of the doubt, 471 ± 12 %/W, the rest", 14);
+  assert.ok(broken.every((line) => line.length <= 14), broken.join("|"));
+  assert.deepEqual(broken, ["takes away", "80 % of the", "doubt,", "471 ± 12 %/W,", "the rest"]);
 });
 
 Deno.test("wrap() breaks at spaces and loses no word", () => {
