@@ -78,7 +78,11 @@ export function capabilityOf(
   checkSpecification(specification);
   const { n, mean: centre, s } = sample;
   if (!(n >= LEAST_CAPABILITY_VALUES)) {
-    return { refused: `capability needs at least ${LEAST_CAPABILITY_VALUES} values, found ${n}` };
+    return {
+      refused: `capability needs at least ${LEAST_CAPABILITY_VALUES} values, found ${
+        Number(n.toPrecision(3))
+      }`,
+    };
   }
   if (!(s > 1e-12 * Math.abs(centre)) || !Number.isFinite(centre) || s === Infinity) {
     return { refused: "capability needs values that differ and are finite" };

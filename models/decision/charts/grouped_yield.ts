@@ -67,7 +67,10 @@ export function groupedYield(
     groups: m,
     designEffect,
     effectiveUnits: units,
-    low: betaQuantile(tail, value * units, (1 - value) * units + 1),
-    high: betaQuantile(1 - tail, value * units + 1, (1 - value) * units),
+    low: rounded(betaQuantile(tail, value * units, (1 - value) * units + 1)),
+    high: rounded(betaQuantile(1 - tail, value * units + 1, (1 - value) * units)),
   };
 }
+
+/** Less than one unit's worth of evidence leaves limits of 1e-100: none that a yield could be told by. */
+const rounded = (limit: number): number => limit < 1e-9 ? 0 : limit > 1 - 1e-9 ? 1 : limit;

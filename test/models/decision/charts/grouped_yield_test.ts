@@ -39,6 +39,9 @@ Deno.test("groupedYield() of equal groups is as good as counting, of unanimous g
   // Wafers all good or all bad: each is one unit.
   const whole = groupedYield(Array.from({ length: 20 }, (_, i) => ({ good: i % 2 ? 25 : 0, of: 25 })));
   assertClose(whole.effectiveUnits, 19 * (1.9647 / 2.0930) ** 2, { rel: 1e-3 });
+  // Of two wafers, one good and one lost: nothing is known, and no limit of 1e-100 says otherwise.
+  const torn = groupedYield([{ good: 10, of: 10 }, { good: 0, of: 10 }]);
+  assert.deepEqual([torn.low, torn.high], [0, 1]);
   assert.throws(() => groupedYield([{ good: 1, of: 2 }]), /1 groups: need at least 2/);
 });
 
