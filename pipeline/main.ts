@@ -100,7 +100,9 @@ command(
   "rank heralded-1582 --lot K07 --top 10",
 )
   .argument("<request>", "a request's name, or the path of its file")
-  .option("--lot <lot>", "only this lot; may repeat", collect, [])
+  .addOption(
+    new Option("--lot <lot>", "only this lot; may repeat").argParser(collect).default([], "every lot"),
+  )
   .option("--all-guides", "one line per guide, dies that can't be shipped included")
   .addOption(new Option("--top <n>", "the first n only").argParser(wholeNumber(1)))
   .option("--explain <die|guide>", "why one die or guide is decided as it is, and what would help")
@@ -169,8 +171,8 @@ command(
 const requestOption = () =>
   new Option(
     "--request <request>",
-    "only for this request, by name or path; may repeat (default: those predicted that the lot can be tuned to)",
-  ).argParser(collect).default([], "all");
+    "only for this request, by name or path; may repeat",
+  ).argParser(collect).default([], "those predicted that the lot can be tuned to");
 
 const RULES_HELP = `
 Your own rules (--rules FILE), as JSON:

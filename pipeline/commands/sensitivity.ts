@@ -138,24 +138,17 @@ async function whatIsAsked(
     const { waves, request: { process, oven_c: oven } } = request;
     return { lot: options.lot, platform, request, waves, process, oven, designs };
   }
+  const lots = ledger === null ? [] : await lotsOf(ledger);
+  const ids = await platformIds(options.platforms);
+  if (!lots.includes(subject) && !ids.includes(subject)) await unknownSubject(subject, ids, lots, options);
   const waves = wavesOf(options);
   const process = Math.abs(waves.lambdaS / waves.lambdaI - 1) < 1e-9 ? "second-harmonic" : "sum-frequency";
   const temperature = options.temperature ?? ROOM_C;
   const common = { request: null, waves, process, oven: [temperature, temperature] } as const;
-  const lots = ledger === null ? [] : await lotsOf(ledger);
   if (lots.includes(subject)) {
     const { platform, designs } = await lotDesigns(ledger, subject, options);
     // No request, no oven: the period that would match at the temperature stands in for those on the mask.
     return { ...common, lot: subject, platform, designs: designs.map((d) => ({ ...d, periods_um: [] })) };
-  }
-  const ids = await platformIds(options.platforms);
-  if (!ids.includes(subject)) {
-    throw new InputError(
-      `Unknown platform or lot ${JSON.stringify(subject)}: platforms are ${ids.join(", ")}; ${
-        lots.length === 0 ? "the ledger holds no lot" : `lots are ${lots.join(", ")}`
-      }`,
-      { value: subject },
-    );
   }
   const { platform } = await loadPlatform(subject, options.platforms);
   if (platform.index.from !== "bulk" && options.width === undefined) {
@@ -170,6 +163,23 @@ async function whatIsAsked(
     platform: subject,
     designs: [{ width_um: options.width ?? null, periods_um: [], poled_length_mm: NO_LENGTH_MM }],
   };
+}
+
+/** Neither a platform nor a lot: perhaps a request, which has designs only beside a lot. @throws InputError */
+async function unknownSubject(
+  subject: string,
+  platforms: readonly string[],
+  lots: readonly string[],
+  { requests }: SensitivityCommandOptions,
+): Promise<never> {
+  const have = lots.length === 0 ? "the ledger holds no lot" : `lots are ${lots.join(", ")}`;
+  const request = await findRequest(subject, requests).catch(() => null);
+  throw new InputError(
+    request === null
+      ? `Unknown platform or lot ${JSON.stringify(subject)}: platforms are ${platforms.join(", ")}; ${have}`
+      : `Cannot tell what request ${request.name} is asked about: add --lot; ${have}`,
+    { value: subject },
+  );
 }
 
 /** The designs of a lot: one per drawn width, with every period that it is drawn with. */
@@ -205,7 +215,7 @@ async function lotDesigns(
 function wavesOf({ process, wavelength }: SensitivityCommandOptions): ThreeWaves {
   if (process === undefined || wavelength === undefined) {
     throw new InputError(
-      "Cannot tell sensitivities without a process: add --process and --wavelength, or --lot with a request's name",
+      "Cannot tell sensitivities without a process: add --process and --wavelength, or ask with a request's name and --lot",
       { column: process === undefined ? "process" : "wavelength" },
     );
   }

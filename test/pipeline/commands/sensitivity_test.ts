@@ -97,9 +97,11 @@ Deno.test("what can't be asked is refused with what is wanted", () =>
     const none = ["--ledger", join(folder, "none")];
     for (
       const [args, says] of [
-        [["tfln-xcut"], /add --process and --wavelength, or --lot/],
+        [["tfln-xcut"], /add --process and --wavelength, or ask with a request's name/],
         [["tfln-xcut", ...PROCESS], /add --width, in µm/],
         [["nine", ...PROCESS], /Unknown platform or lot "nine": platforms are bulk-ktp/],
+        [["nine"], /Unknown platform or lot "nine": platforms are bulk-ktp/],
+        [["heralded-1582"], /Cannot tell what request heralded-1582 is asked about: add --lot/],
         [["bulk-ln", "--process", "TE>TE", "--wavelength", "1550"], /need pump>signal\+idler/],
         [["bulk-ln", "--process", "TE>TE+TE", "--wavelength", "red"], /need the signal's in nm/],
         [["heralded-1582", "--lot", "R1"], /Cannot look up lot R1: there is no ledger/],
