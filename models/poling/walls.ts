@@ -56,7 +56,9 @@ export function wallsComplete(walls: ArrayLike<number>, section: PoledSection): 
   if (lone.length > 0) {
     const first = mmText(walls[lone[0]!]!);
     remarks.push(
-      `${lone.length} domain(s) about one period long, the first ending at ${first}: a wall may be missing`,
+      lone.length === 1
+        ? `a domain about one period long, ending at ${first}: a wall may be missing`
+        : `${lone.length} domains about one period long, the first ending at ${first}: walls may be missing`,
     );
   }
   return { complete: true, remarks };

@@ -28,7 +28,9 @@ export async function ingestCommand(folder: string, options: CommonOptions): Pro
   }
   if (result.quarantined > 0) {
     note(
-      `${result.quarantined} of ${result.rows} rows are quarantined: ` +
+      `${result.quarantined} of ${result.rows} rows ${
+        result.quarantined === 1 ? "is" : "are"
+      } quarantined: ` +
         `wavelot sql "SELECT file_name, source_line, \\"column\\", value, reason, wanted FROM quarantine"`,
     );
   }

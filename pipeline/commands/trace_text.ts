@@ -152,8 +152,10 @@ function rowNode(row: TracedTraitRow, guide: string): Node {
 /** A reading; what its trait row says already is not said again. */
 function readingText(r: TracedReading, row?: TracedTraitRow): string {
   if (r.source_line_last !== undefined) {
-    return `${at(r)}–${r.source_line_last}  ${r.rows} rows, ${r.quantity} ${numberText(r.value, 7)} … ` +
-      numberText(r.value_last!, 7);
+    return `${at(r)}–${r.source_line_last}  ${r.rows} rows, ${r.quantity} ${
+      numberText(r.value, 7)
+    } in the first, ` +
+      `${numberText(r.value_last!, 7)} in the last`;
   }
   const said = (name: string, cell: unknown) =>
     LEFT_OUT.includes(name) || (row as unknown as Record<string, unknown> | undefined)?.[name] === cell;

@@ -117,7 +117,9 @@ function pushFit(
     readings: refsOf("cutback", rows),
     detail: fit.chiSquared === null
       ? null
-      : `chi-squared ${fit.chiSquared.toFixed(2)} on ${fit.degreesOfFreedom} degrees of freedom` +
+      : `chi-squared ${fit.chiSquared.toFixed(2)} on ${fit.degreesOfFreedom} ${
+        fit.degreesOfFreedom === 1 ? "degree" : "degrees"
+      } of freedom` +
         (poor ? `; u widened by ${widen.toFixed(2)} to cover the scatter` : ""),
   };
   out.traits.push({ ...common, trait: "loss_db_cm", value: slope_db_cm.value, u: slope_db_cm.u * widen });
@@ -142,8 +144,8 @@ function pushFit(
     out.remarks.push({
       code: "cutback_scatter",
       unit: place.unit,
-      statement: `${where(place)}: cut-back readings scatter more than their u (p = ${
-        fit.pValue!.toPrecision(2)
+      statement: `${where(place)}: cut-back readings scatter more than their u (${
+        fit.pValue! < 1e-4 ? "p < 0.0001" : `p = ${fit.pValue!.toPrecision(2)}`
       })`,
     });
   }

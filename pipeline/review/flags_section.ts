@@ -4,8 +4,11 @@ import { foldedTable, type PageTable } from "./table.ts";
 
 function refsText(flag: ReviewFlag): string[] {
   return flag.readings.slice(0, 6).map(({ file_name, lines }) => {
+    // A JSON file is read as a whole: its rows have no lines of their own.
+    if (file_name.endsWith(".json")) return file_name;
     const some = lines.slice(0, 8).map(([a, b]) => a === b ? String(a) : `${a}–${b}`).join(", ");
-    return `${file_name}, line ${some}${lines.length > 8 ? " …" : ""}`;
+    const one = lines.length === 1 && lines[0]![0] === lines[0]![1];
+    return `${file_name}, ${one ? "line" : "lines"} ${some}${lines.length > 8 ? " …" : ""}`;
   });
 }
 

@@ -104,7 +104,7 @@ function traitSection(
   };
   const shares = trait.shares.length === 0
     ? null
-    : html`<li>Of the variance lie ${
+    : html`<li>Shares of the variance: ${
       trait.shares.map((s) =>
         `${percentText(s.share)} ${s.level === "readings" ? "in the readings" : s.level}`
       ).join(", ")

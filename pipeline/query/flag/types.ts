@@ -77,6 +77,8 @@ function joined(lines: [number, number][]): [number, number][] {
 
 /** `readings/cutback.csv:34–36, 40`. */
 export function refText({ file_name, lines }: ReadingRef, most = 6): string {
+  // A JSON file is read as a whole: its rows have no lines of their own.
+  if (file_name.endsWith(".json")) return file_name;
   const stretches = lines.slice(0, most).map(([a, b]) => a === b ? String(a) : `${a}–${b}`);
   const more = lines.length > most ? ` and ${lines.length - most} more stretches` : "";
   return `${file_name}:${stretches.join(", ")}${more}`;

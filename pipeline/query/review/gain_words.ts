@@ -7,11 +7,11 @@ export function gainWords(g: GainReview): string {
   const [first, ...more] = g.groups;
   if (g.as_made === g.dies) return "every die that can be shipped is accepted as made";
   if (whole === 0 && (first === undefined || first.dies <= 0)) {
-    return "no trait at its target would bring a die more";
+    return "no trait at its target would bring one more die";
   }
   const all = `all traits at target bring ${whole} (${g.all_at_target} of ${g.dies})`;
   if (first === undefined || first.dies <= 0) {
-    return `no single trait at its target would bring a die more, ${all}: several have to be put right together`;
+    return `no single trait at its target would bring one more die, ${all}: several have to be put right together`;
   }
   const alike = more.filter((m) => m.dies === first.dies).map((m) => m.words);
   const count = g.interaction * g.dies;
@@ -20,9 +20,9 @@ export function gainWords(g: GainReview): string {
     : count > 0
     ? `; ${plural(Math.round(count), "die")} of these only with several put right together`
     : `; the single rises overlap by ${plural(Math.round(-count), "die")}`;
-  return `${first.words} at target would bring ${plural(first.dies, "die")} more (${g.as_made} to ${
+  return `${first.words} at target would bring ${plural(first.dies, "more die")} (${
     g.as_made + first.dies
-  } of ${g.dies}), ${
+  } instead of ${g.as_made} of ${g.dies}), ${
     alike.length > 0 ? `as many as ${alike.join(", ")}` : "the largest single rise"
   }; ${all}${together}`;
 }

@@ -29,6 +29,8 @@ const SHOWN = [
 
 /** Dies from this share of the outermost die's radius on count as the edge (common practice, no source). */
 const EDGE_FROM = 0.75;
+/** Dies that are enough for a trend wherever they stand: fewer are for some places, which a sentence need not teach. */
+const ALWAYS_ENOUGH = 6;
 /** A trend is told as one below this p. */
 const TOLD = 0.01;
 
@@ -99,7 +101,11 @@ function sentenceOf(
   unit: string,
   any: { readonly refused: string } | { readonly p: number },
 ): string {
-  if ("refused" in any) return `no trend can be told: ${any.refused}`;
+  if ("refused" in any) {
+    return t.dies < ALWAYS_ENOUGH
+      ? `no trend can be told from ${t.dies === 1 ? "1 die" : `${t.dies} dies`} read`
+      : `no trend can be told: ${any.refused}`;
+  }
   const found = [
     t.slope_p !== null && t.slope_p < TOLD
       ? `a slope of ${num(t.across_wafer!)}${unit} from side to side (p = ${num(t.slope_p, 2)})`

@@ -34,7 +34,7 @@ Deno.test("wallsComplete() remarks the signs of a single missing wall", () => {
   ok(verdict.complete);
   strictEqual(verdict.remarks.length, 2);
   match(verdict.remarks[0]!, /odd number of walls \(399\)/);
-  match(verdict.remarks[1]!, /1 domain\(s\) about one period long, the first ending at 2\.015 mm/);
+  match(verdict.remarks[1]!, /a domain about one period long, ending at 2\.015 mm: a wall may be missing/);
   // A missing inverted domain leaves one and a half periods, and an even number: nothing to remark.
   deepStrictEqual(wallsComplete(walls.filter((_, j) => j !== 100 && j !== 101), section).remarks, []);
   // Poled up to the facet the parity says nothing.

@@ -52,7 +52,7 @@ Deno.test("ingest, predict, rank, sql and check, and everything once more", asyn
       const first = await call("predict", ...requests, "--format", "json", "--workers", "2");
       equal(first.code, 0, first.stderr);
       match(first.stderr, /Computed 3 of 3 predictions/);
-      match(first.stderr, /Z09-1\/02\/g1: wall list incomplete: 1 of its rows are quarantined/);
+      match(first.stderr, /Z09-1\/02\/g1: wall list incomplete: 1 of its rows is quarantined/);
       match(first.stderr, /fringe contrast 0.9 above/);
       const before = await manifests(ledger);
       const again = await call("predict", "Z09", ...requests, "--format", "json", "--workers", "1");

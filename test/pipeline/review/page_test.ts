@@ -112,7 +112,7 @@ Deno.test("the demo's lots: flagged, reviewed, and on pages that stand alone", a
       );
       match(
         answers.pay_off[1]!,
-        /^heralded-1582: poling at target would bring 8 dies more \(6 to 14 of 16\)/,
+        /^heralded-1582: poling at target would bring 8 more dies \(14 instead of 6 of 16\)/,
       );
       const [first] = dom(pages.get("R08.html")!).querySelectorAll(".answers");
       for (const line of [...answers.how, ...answers.out, ...answers.pay_off, ...answers.goes]) {

@@ -69,7 +69,7 @@ Deno.test("rises are counted per lot and wafer; shares and the interaction sum t
   deepEqual(b!.groups.map((g) => g.dies), [1, 1, 0]);
   equal(
     gainWords(lot!),
-    "loss at target would bring 2 dies more (1 to 3 of 6), the largest single rise; all traits at target bring 4 (5 of 6); " +
+    "loss at target would bring 2 more dies (3 instead of 1 of 6), the largest single rise; all traits at target bring 4 (5 of 6); " +
       "1 die of these only with several put right together",
   );
   match(interactionWords(lot!), /^1 of the dies need several put right together \(interaction 25 % /);
@@ -84,14 +84,14 @@ Deno.test("where either of two would do, or only both, or none, the words say so
   const either = of(["A/1", "reject", ["loss", "facet", "all"]], ["A/2", "accept", []]);
   match(
     gainWords(either),
-    /loss at target would bring 1 die more .* as many as facets; .* overlap by 1 die$/,
+    /loss at target would bring 1 more die .* as many as facets; .* overlap by 1 die$/,
   );
   match(interactionWords(either), /overlap by 1 die, for which either of several would do/);
   match(
     gainWords(of(["A/1", "reject", ["all"]])),
     /^no single trait .* bring 1 \(1 of 1\): several have to be put right together/,
   );
-  match(gainWords(of(["A/1", "reject", []])), /^no trait at its target would bring a die more/);
+  match(gainWords(of(["A/1", "reject", []])), /^no trait at its target would bring one more die/);
   deepEqual(gainsOf({ ...predicted([["A/1", "accept", []]]).prediction }, [], "L"), []);
 });
 
