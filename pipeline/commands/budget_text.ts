@@ -1,6 +1,6 @@
 import { type Figure } from "../../shared/schemas/figures.ts";
 import { budgetBasis } from "../budget_basis.ts";
-import { textTable } from "../console/mod.ts";
+import { textTable, wrap } from "../console/mod.ts";
 import type { RankedEntry, RankedFigure } from "../query/rank.ts";
 import type { LoadedRequest } from "../requests.ts";
 
@@ -20,7 +20,9 @@ export function budgetText(best: RankedEntry, { request }: LoadedRequest): strin
         ? `Nothing matches in the oven; what follows is at the nearest temperature, ${
           temperature.mean.toFixed(1)
         } °C`
-        : `Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}${partly(best)}`,
+        : wrap(`Oven at ${withU(temperature, 1)} °C (${temperature.basis})${others}${partly(best)}`, 80).join(
+          "\n",
+        ),
     );
   }
   if (request.process !== "pair-generation") return lines.join("\n");
@@ -56,9 +58,7 @@ export function budgetText(best: RankedEntry, { request }: LoadedRequest): strin
 
 /** Draws without a match have no temperature: what is told then holds for the others only. */
 const partly = ({ matched }: RankedEntry): string =>
-  matched > 0.995
-    ? ""
-    : `; so far as a match is in the oven at all, in ${Math.round(100 * matched)} % of the draws`;
+  matched > 0.995 ? "" : `, in the ${Math.round(100 * matched)} % of the draws that match in the oven`;
 
 const cells = (factor: string, figure: RankedFigure): string[] =>
   figure.mean === null ? ["–", figure.reason ?? ""] : [withU(figure, 3), budgetBasis(factor, figure)];

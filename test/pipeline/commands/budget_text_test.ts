@@ -24,7 +24,10 @@ function textOf(figures: Record<string, unknown>, matched = 1, process = "second
 
 Deno.test("budgetText() tells of how many draws the temperature holds, and that the request gives the detector", () => {
   const figures = { operating_temperature_c: value(41.2), operating_pump_nm: value(775) };
-  assert.match(textOf(figures, 0.1055), /^Oven at 41\.2 °C .* in the oven at all, in 11 % of the draws$/m);
+  assert.match(
+    textOf(figures, 0.1055),
+    /^Oven at 41\.2 °C .*, in the 11 % of the draws that match in the oven$/m,
+  );
   assert.doesNotMatch(textOf(figures, 1), /of the draws/);
   const detector = { ...value(0.85), basis: "measured" };
   const budget = textOf(
