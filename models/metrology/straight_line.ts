@@ -44,6 +44,36 @@ const OUTLIER_LEVEL = 0.05;
  * @throws RangeError for a number that is not finite, or a negative u
  */
 export function fitLines(groups: readonly (readonly LinePoint[])[]): LineFit | Refused {
+  const fit = fitOnce(groups);
+  return "refused" in fit ? fit : { ...fit, outliers: outliersOf(groups, fit) };
+}
+
+/**
+ * Readings off the line. One wild reading pulls the line away from its neighbours, so that these seem off, too: the worst is
+ * named first, and the others are held against the line without it.
+ */
+function outliersOf(groups: readonly (readonly LinePoint[])[], whole: FitOnly): LineFit["outliers"] {
+  const kept = groups.map((group) => [...group.keys()]);
+  const named: { group: number; point: number }[] = [];
+  for (let fit: FitOnly | Refused = whole; !("refused" in fit);) {
+    let worst = { group: 0, at: 0, r: 0 };
+    fit.standardised.forEach((row, group) =>
+      row.forEach((r, at) => {
+        if (Math.abs(r) > Math.abs(worst.r)) worst = { group, at, r };
+      })
+    );
+    const count = kept.reduce((sum, points) => sum + points.length, 0);
+    const tail = outlierTail(worst.r, fit.degreesOfFreedom, fit.uncertainty === "scatter");
+    if (tail * count >= OUTLIER_LEVEL) break;
+    named.push({ group: worst.group, point: kept[worst.group]!.splice(worst.at, 1)[0]! });
+    fit = fitOnce(kept.map((points, g) => points.map((k) => groups[g]![k]!)));
+  }
+  return named.sort((a, b) => a.group - b.group || a.point - b.point);
+}
+
+type FitOnly = Omit<LineFit, "outliers">;
+
+function fitOnce(groups: readonly (readonly LinePoint[])[]): FitOnly | Refused {
   let count = 0;
   let unknown = false;
   let leastU = Infinity;
@@ -105,12 +135,6 @@ export function fitLines(groups: readonly (readonly LinePoint[])[]): LineFit | R
       return leverage > 1 - 1e-9 || sd === 0 ? 0 : residual[g]![k]! / sd;
     })
   );
-  const outliers: { group: number; point: number }[] = [];
-  standardised.forEach((row, group) =>
-    row.forEach((r, point) => {
-      if (outlierTail(r, dof, unknown) * count < OUTLIER_LEVEL) outliers.push({ group, point });
-    })
-  );
   return {
     slope,
     uSlope: Math.sqrt(unit / sxx),
@@ -124,7 +148,6 @@ export function fitLines(groups: readonly (readonly LinePoint[])[]): LineFit | R
     residualSd: dof < 1 ? null : Math.sqrt(squares / dof),
     scatterFactor: chiSquared === null ? 1 : Math.max(1, Math.sqrt(chiSquared / dof)),
     standardised,
-    outliers,
   };
 }
 

@@ -119,11 +119,17 @@ Deno.test("an outlier is named, and stays in the fit", () => {
   const clean = fittedCutback(fitCutback(points));
   const dirty = fittedCutback(fitCutback(wrong));
   deepStrictEqual(clean.fit.outliers, []);
-  ok(dirty.fit.outliers.some((at) => at.point === 3));
+  deepStrictEqual(dirty.fit.outliers, [{ group: 0, point: 3 }]);
   ok(dirty.fit.pValue! < 1e-6);
   ok(dirty.fit.scatterFactor > 5);
   ok(Math.abs(dirty.coupling_db[0]!.value - clean.coupling_db[0]!.value) > 0.01);
   strictEqual(dirty.used.length, 6);
+  // of four readings a wild one pulls the line off all others: it alone is named
+  const few = fittedCutback(fitCutback(wrong.slice(1, 5)));
+  ok(few.fit.standardised[0]!.every((r) => Math.abs(r) > 3), few.fit.standardised.join());
+  deepStrictEqual(few.fit.outliers, [{ group: 0, point: 2 }]);
+  const both = wrong.map((p, k) => k === 0 ? { ...p, lossDb: p.lossDb - 0.9 } : p);
+  deepStrictEqual(fittedCutback(fitCutback(both)).fit.outliers.map((at) => at.point), [0, 3]);
   // without u the same one stands out of its own scatter
   const loose = fittedCutback(
     fitCutback(wrong.map((p, k) => ({ ...p, lossDb: p.lossDb + 0.001 * (k % 3), u: 0 }))),
