@@ -3,7 +3,7 @@
 import type { GuideGeometry, Polarisation, ThreeWaves } from "../../../shared/vocabulary.ts";
 import { type AreaModel, canonicalProcess, processName } from "../area_model.ts";
 import type { GeometryParameter, IndexRange } from "../index_model.ts";
-import type { SolverDesign } from "./design.ts";
+import type { DesignGeometry, SolverDesign } from "./design.ts";
 import { type DesignAreas, solverAreaModel } from "./design_area.ts";
 import type { DesignOutput } from "./design_output.ts";
 import type { DesignTable } from "./design_table.ts";
@@ -64,10 +64,19 @@ export function designsIndexModel({ tables, outputs }: SolvedDesigns): SolverInd
       const drawn = solvedOutputAt(outputs, design.geometry, pol, lambda);
       return drawn === null || drawn.result.cutOff
         ? why
-        : `${why}; a guide as drawn still carries it: tables of a smaller span reach farther`;
+        : `${why}; a guide as drawn still carries it: its table spans ${
+          spanText(design)
+        }, a smaller span in the ` +
+          "platform file reaches farther";
     },
   };
 }
+
+const spanText = ({ span }: { readonly span: DesignGeometry }): string =>
+  [
+    `± ${span.width_um} µm of width`,
+    ...span.titanium_nm === undefined ? [] : [`± ${span.titanium_nm} nm of titanium`],
+  ].join(" and ");
 
 /** Effective areas of several designs, each at the wavelengths that it was solved for. */
 export function designsAreaModel({ areas }: SolvedDesigns): AreaModel {
