@@ -34,7 +34,7 @@ Deno.test("a design whose narrowest guide alone is cut off says that a smaller s
   const reason = model.index.cutOff!("TE", { width_um: 2 }, 1582e-9)!;
   match(
     reason,
-    /a guide as drawn still carries it: its table spans ± 1 µm of width, a smaller span in the platform file/,
+    /a guide as drawn still carries it: its table spans ± 0\.5 µm of width, a smaller span in the platform file/,
   );
 });
 
