@@ -203,10 +203,10 @@ function goes({ request, ranked }: RequestReview): string[] {
     return dies.length === 0 ? "" : shortIds(dies);
   };
   const [accepted, held] = [list("accept"), list("hold")];
-  const best = ranked.find((d) => d.unavailable === null && d.decision === "accept");
-  const doubted = ranked.filter((d) =>
-    d.unavailable === null && d.decision === "accept" && d.contradicted.length > 0
-  );
+  const shipped = ranked.filter((d) => d.unavailable === null && d.decision === "accept");
+  const doubted = shipped.filter((d) => d.contradicted.length > 0);
+  // A die to be read again first is not the one to begin with.
+  const best = shipped.find((d) => d.contradicted.length === 0) ?? shipped[0];
   return [
     accepted === ""
       ? `${request}: no die`

@@ -110,6 +110,11 @@ Deno.test("the demo's lots: flagged, reviewed, and on pages that stand alone", a
         answers.goes.join("\n"),
         /^cw-1582, read again before it is shipped: R08-1\/10\/g01, where a reading contradicts the others/m,
       );
+      equal(
+        answers.goes.some((line) => /best is R08-1\/10/.test(line)),
+        false,
+        "the doubted die is not the best",
+      );
       match(
         answers.pay_off[1]!,
         /^heralded-1582: poling at target would bring 8 more dies \(14 instead of 6 of 16\)/,
