@@ -121,7 +121,8 @@ function printTable(flags: readonly Flag[], lots: readonly string[]): void {
     print(textTable(columns, flags.map((f) => [f.severity, f.scope, f.id, f.rule, f.lot]), { width: 80 }));
   }
   for (const f of flags) {
-    print(`\n${f.severity.toUpperCase()}  ${wrap(f.statement, 76).join("\n      ")}`);
+    // The widest head, WATCH and two spaces, and a line fit 80 columns.
+    print(`\n${f.severity.toUpperCase()}  ${wrap(f.statement, 73).join("\n      ")}`);
     const lines = [
       ...f.evidence.readings.slice(0, 4).map((r) => `read in ${refText(r)}`),
       ...f.suspects.slice(0, 3).map((s) => `suspect: ${suspectSentence(s)}`),
