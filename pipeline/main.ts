@@ -22,6 +22,10 @@ const requestsOption = () =>
   new Option("--requests <dir>", "the folder of request files (default: ./requests, then the examples)");
 const formatOption = () =>
   new Option("--format <format>", "how to print").choices(["table", "csv", "json"]).default("table");
+/** Of commands that write a page: `table` stands for the page itself. */
+const pageFormatOption = (choices: string) =>
+  new Option("--format <format>", `${choices}: print the content in place of a page`)
+    .choices(["table", "csv", "json"]).default("table", "the page of --out");
 const workersOption = () =>
   new Option("--workers <n>", "threads to compute on (default: all cores)").argParser(wholeNumber(1));
 
@@ -207,7 +211,7 @@ command("review", "write the review of a lot as one page", "review K07 --out K07
   .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
     workersOption(),
   )
-  .addOption(formatOption())
+  .addOption(pageFormatOption("json or csv"))
   .action(
     run(async (lot: string, options: Common & { request: string[]; rules?: string; out?: string }) => {
       const { reviewCommand } = await import("./commands/review.ts");
@@ -222,7 +226,7 @@ command("sheet", "write the page that travels with a die", "sheet K07-1/05 --out
   .addOption(ledgerOption()).addOption(platformsOption()).addOption(requestsOption()).addOption(
     workersOption(),
   )
-  .addOption(formatOption())
+  .addOption(pageFormatOption("json"))
   .action(run(async (die: string, options: Common & { request: string[]; out?: string }) => {
     const { sheetCommand } = await import("./commands/sheet.ts");
     return await sheetCommand(die, options);

@@ -4,13 +4,14 @@ import { type Cell, textTable, wrap } from "../console/mod.ts";
 import type { ExplainedRole, GuideExplained } from "../query/explain.ts";
 import type { ReadingAdvice } from "../query/reading_advice.ts";
 import { mostlyUnmatched } from "../query/limits.ts";
+import { groupWords } from "../query/review/gains.ts";
 import { SHORT } from "./figure_titles.ts";
 
 const WIDTH = 80;
 /** Figures whose shares stand side by side. */
 const MOST_SHARES = 3;
 
-const number = (x: number, digits = 3): string => String(Number(x.toPrecision(digits)));
+const number = (x: number, digits = 3): string => String(Number(x.toPrecision(digits))).replace("-", "−");
 const percent = (share: number): string => `${Math.round(100 * share)} %`;
 const withU = (value: number, u: number | null): string =>
   u === null || u === 0 ? number(value, 4) : `${number(value, 4)} ± ${number(u, 2)}`;
@@ -90,7 +91,7 @@ function traitTable({ traits, explanation: { figures } }: GuideExplained): strin
     ...shown.map((f) => shareText(row.shares[f.figure] ?? null)),
   ]);
   const rest = shown.map((f) => f.rest === null ? "–" : percent(Math.max(0, f.rest)));
-  rows.push(["together, or by chance", "", "", ...rest]);
+  rows.push(["together, or as drawn", "", "", ...rest]);
   const resolved = Math.max(...shown.map((f) => f.resolution ?? 0), 0);
   const left = figures.length > MOST_SHARES ? `; of ${figures.length} figures the first ${MOST_SHARES}` : "";
   return textTable(columns, rows, { width: WIDTH }) +
@@ -146,9 +147,9 @@ function restoreLines({ as_made, restored }: GuideExplained): string[] {
     { title: "decision" },
   ];
   const rows = restored.map((r): Cell[] => [
-    r.group,
+    groupWords(r.group),
     r.probability.toFixed(3),
-    (r.probability - as_made).toFixed(3),
+    (r.probability - as_made).toFixed(3).replace("-", "−"),
     r.decision,
   ]);
   return [

@@ -137,7 +137,7 @@ function requestSection(r: SheetRequest, k: number): Html {
       : `; limited by ${r.limited_by}`}; ${oven}${others}.</p>
     <p>${r.description}. ${r.pump.length === 0
       ? ""
-      : `Pump: ${r.pump.join("; ")}. Powers are inside the guide.`}</p>
+      : `Light: ${r.pump.join("; ")}. Powers are inside the guide.`}</p>
     <div class="pair">${tableOf({
       caption: `Predicted for ${r.request}`,
       file: "",
