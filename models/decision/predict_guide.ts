@@ -11,6 +11,7 @@ import { linearPropagation } from "./linear_propagation.ts";
 import type { PairNotes } from "./pair_prediction.ts";
 import type { PlatformModel } from "./platform_model.ts";
 import { settledAt } from "./sampling_error.ts";
+import { restsOnPlatformAlone, withheld } from "./unread.ts";
 
 /** One figure of one guide. Without a value: the reason. Units are in the figure's name. */
 export interface PredictedFigure {
@@ -115,16 +116,18 @@ export function conclude(checked: CheckedRequest, guide: GuideInputs, sample: Gu
   const { accept_at: acceptAt, reject_below: rejectBelow } = request.decide;
   const thresholds = { acceptAt, rejectBelow };
   const asked = requirements.map((r) => ({ draws: out.of(r.figure), limits: r }));
+  const unread = restsOnPlatformAlone(guide, requirements.map((r) => r.figure), drawn.columns);
+  const held = withheld(decide(joint, thresholds), joint, unread);
   return {
     figures,
     probability: joint,
-    decision: decide(joint, thresholds),
+    decision: held.decision,
     limitedBy,
     draws: out.count,
     settled: settledAt(joint, asked, drawn.size, thresholds),
     matched,
     otherTemperatures: point?.others ?? [],
     pairs,
-    remarks,
+    remarks: [...remarks, ...held.remarks],
   };
 }
