@@ -15,7 +15,7 @@ import { contradictionsOf, contradictionText } from "./contradictions.ts";
 import { FigureStore, unavailableDies } from "./figure_store.ts";
 import { GuideSource, type SourcedGuide } from "./guide_source.ts";
 import type { GuideAt, Job, JobResult, Task, WorkerSetup } from "./jobs.ts";
-import { guidesForLargerSamples, MOST_DRAWS } from "./larger_samples.ts";
+import { guidesForLargerSamples, LARGER_ROUNDS, MOST_DRAWS } from "./larger_samples.ts";
 import { type JobPool, openPool } from "./pool.ts";
 import type { PredictLotOptions } from "./predict_lot.ts";
 import { guidesToAnalyse } from "./representatives.ts";
@@ -117,10 +117,15 @@ export async function computeLot(
       () => ({ kind: "predict" }),
       (at) => roles[at.request]!.push({ guide: guides[at.guide]!, roles: at.roles }),
     );
-    await round(
-      stores.map((store, k) => guidesForLargerSamples(store, checked[k]!, unavailable)),
-      () => ({ kind: "predict", size: LARGER, mostDraws: MOST_DRAWS }),
-    );
+    const enlarged = requests.map(() => new Set<number>());
+    for (let again = 0; again < LARGER_ROUNDS; again++) {
+      const chosen = stores.map((store, k) =>
+        guidesForLargerSamples(store, checked[k]!, unavailable, enlarged[k])
+      );
+      if (chosen.every((list) => list.length === 0)) break;
+      chosen.forEach((list, k) => list.forEach((guide) => enlarged[k]!.add(guide)));
+      await round(chosen, () => ({ kind: "predict", size: LARGER, mostDraws: MOST_DRAWS }));
+    }
     await round(
       stores.map((store, k) =>
         guidesToAnalyse(store, checked[k]!, unavailable).filter((guide) => store.decision(guide) !== "accept")

@@ -107,3 +107,16 @@ Deno.test("guidesForLargerSamples() takes unsettled guides, and of a whole lot a
   assert.equal(chosen.length, 20);
   assert.ok(chosen.every((k) => k % 2 === 1 && Math.abs(k - 200) <= 21), chosen.join());
 });
+
+Deno.test("guidesForLargerSamples() goes on with guides that have come to stand for their dies, and with no others", () => {
+  const store = storeOf([
+    // The first was sampled again and fell behind the second, which has its small sample still.
+    { id: "A-1/01/g1", p: 0.87 },
+    { id: "A-1/01/g2", p: 0.89, settled: false },
+    { id: "A-1/01/g3", p: 0.88, settled: false },
+    // Sampled again and still open: once is enough.
+    { id: "A-1/02/g1", p: 0.9, settled: false },
+  ]);
+  assert.deepEqual(guidesForLargerSamples(store, asked(), new Map(), new Set([0, 3])), [1]);
+  assert.deepEqual(guidesForLargerSamples(store, asked(), new Map(), new Set([0, 1, 3])), []);
+});
