@@ -1,7 +1,7 @@
 // Pure: no I/O, no clock, no hidden randomness.
 import type { Uncertain } from "../../shared/vocabulary.ts";
 import { isRefused, type Refused } from "./refusal.ts";
-import { fitLines, type LineFit, type LinePoint } from "./straight_line.ts";
+import { fitLines, type LineFit, type LinePoint, OUTLIER_LEVEL } from "./straight_line.ts";
 
 /** One insertion loss at one length: m, dB, standard uncertainty in dB (0: not known). */
 export interface CutbackPoint {
@@ -31,13 +31,14 @@ export interface CutbackFit {
  * Cut-back of one guide at one wavelength and polarisation: weighted straight line of insertion loss against length.
  * If any u is exactly 0 all weights are equal and the uncertainties come from the scatter.
  * Refused with fewer than two lengths: see `fitCommonSlope()`.
+ * @param level chance of naming any outlier among good readings of this line
  * @throws RangeError for a number that is not finite, a negative u, or a length that is not positive
  */
-export function fitCutback(points: readonly CutbackPoint[]): CutbackFit | Refused {
+export function fitCutback(points: readonly CutbackPoint[], level = OUTLIER_LEVEL): CutbackFit | Refused {
   if (points.length < 2) {
     return { refused: `no slope from ${points.length} cut-back readings: need two lengths` };
   }
-  return fitted([points], [0], "one-guide");
+  return fitted([points], [0], "one-guide", level);
 }
 
 /**
@@ -51,19 +52,23 @@ export function fitCutback(points: readonly CutbackPoint[]): CutbackFit | Refuse
  * @param groups the readings of each guide, one wavelength and polarisation
  * @throws RangeError for a number that is not finite, a negative u, or a length that is not positive
  */
-export function fitCommonSlope(groups: readonly (readonly CutbackPoint[])[]): CutbackFit | Refused {
+export function fitCommonSlope(
+  groups: readonly (readonly CutbackPoint[])[],
+  level = OUTLIER_LEVEL,
+): CutbackFit | Refused {
   const telling = groups.map((_, g) => g).filter((g) => new Set(groups[g]!.map((p) => p.length)).size > 1);
-  if (telling.length > 0) return fitted(telling.map((g) => groups[g]!), telling, "own");
+  if (telling.length > 0) return fitted(telling.map((g) => groups[g]!), telling, "own", level);
   const present = groups.map((_, g) => g).filter((g) => groups[g]!.length > 0);
   const total = present.reduce((sum, g) => sum + groups[g]!.length, 0);
   if (total < 2) return { refused: `no slope from ${total} cut-back readings: need two lengths` };
-  return fitted(present.map((g) => groups[g]!), present, "common");
+  return fitted(present.map((g) => groups[g]!), present, "common", level);
 }
 
 function fitted(
   groups: readonly (readonly CutbackPoint[])[],
   ids: readonly number[],
   intercept: CutbackFit["intercept"],
+  level: number,
 ): CutbackFit | Refused {
   for (const { length } of groups.flat()) {
     if (!(length > 0)) throw new RangeError(`Cannot fit a cut-back: found length ${length} m, need > 0`);
@@ -71,7 +76,7 @@ function fitted(
   const places = groups.map((group, g) => group.map((_, point) => ({ group: ids[g]!, point })));
   const merge = <T>(rows: readonly (readonly T[])[]) => intercept === "common" ? [rows.flat()] : rows;
   const lines = merge(groups.map((group) => group.map(toLine)));
-  const fit = fitLines(lines);
+  const fit = fitLines(lines, level);
   if (isRefused(fit)) return fit;
   const merged = merge(places);
   const alphaPerDb = Math.LN10 / 10;

@@ -31,28 +31,36 @@ export interface LineFit {
   readonly scatterFactor: number;
   /** Residuals over their own standard deviation, by group and point. */
   readonly standardised: readonly (readonly number[])[];
-  /** Readings that are too far off for one in twenty such fits; named here, never left out of the fit. */
+  /** Readings that are too far off to be chance at the level asked; named here, never left out of the fit. */
   readonly outliers: readonly { readonly group: number; readonly point: number }[];
 }
 
-/** Family-wise level at which a reading is named an outlier (shared out over the readings by Bonferroni). */
-const OUTLIER_LEVEL = 0.05;
+/** Level at which a reading is named an outlier, for all readings that are looked through together (Bonferroni). */
+export const OUTLIER_LEVEL = 0.05;
 
 /**
  * Weighted least squares of y = intercept[group] + slope·x (ISO/TS 28037:2010, clause 6; the same with several
  * intercepts). Centred on each group's weighted mean before squaring.
+ * @param level chance of naming any outlier among good readings of this fit; of many fits each takes its share
  * @throws RangeError for a number that is not finite, or a negative u
  */
-export function fitLines(groups: readonly (readonly LinePoint[])[]): LineFit | Refused {
+export function fitLines(
+  groups: readonly (readonly LinePoint[])[],
+  level = OUTLIER_LEVEL,
+): LineFit | Refused {
   const fit = fitOnce(groups);
-  return "refused" in fit ? fit : { ...fit, outliers: outliersOf(groups, fit) };
+  return "refused" in fit ? fit : { ...fit, outliers: outliersOf(groups, fit, level) };
 }
 
 /**
  * Readings off the line. One wild reading pulls the line away from its neighbours, so that these seem off, too: the worst is
  * named first, and the others are held against the line without it.
  */
-function outliersOf(groups: readonly (readonly LinePoint[])[], whole: FitOnly): LineFit["outliers"] {
+function outliersOf(
+  groups: readonly (readonly LinePoint[])[],
+  whole: FitOnly,
+  level: number,
+): LineFit["outliers"] {
   const kept = groups.map((group) => [...group.keys()]);
   const named: { group: number; point: number }[] = [];
   for (let fit: FitOnly | Refused = whole; !("refused" in fit);) {
@@ -64,7 +72,7 @@ function outliersOf(groups: readonly (readonly LinePoint[])[], whole: FitOnly): 
     );
     const count = kept.reduce((sum, points) => sum + points.length, 0);
     const tail = outlierTail(worst.r, fit.degreesOfFreedom, fit.uncertainty === "scatter");
-    if (tail * count >= OUTLIER_LEVEL) break;
+    if (tail * count >= level) break;
     named.push({ group: worst.group, point: kept[worst.group]!.splice(worst.at, 1)[0]! });
     fit = fitOnce(kept.map((points, g) => points.map((k) => groups[g]![k]!)));
   }

@@ -8,6 +8,7 @@ import {
   fringeLoss,
   isRefused,
   meanReflectivity,
+  OUTLIER_LEVEL,
 } from "../../models/metrology/mod.ts";
 import { mm, nm, toDbPerCm } from "../../shared/units.ts";
 import type { Uncertain } from "../../shared/vocabulary.ts";
@@ -28,19 +29,16 @@ const POOR_FIT = 0.01;
 /** Cut-backs: one line per guide, wavelength and polarisation; with fewer than two lengths a common slope per die. */
 export function reduceCutback(readings: LotReadings): Reduced {
   const out: Reduced = { traits: [], remarks: [] };
-  for (const line of grouped(readings.cutback, (r) => `${r.unit}|${r.wavelength_nm}|${r.polarisation}`)) {
-    if (lengthsOf(line) >= 2) fitOne(readings, line, out);
-  }
-  const short = grouped(readings.cutback, (r) => `${r.unit}|${r.wavelength_nm}|${r.polarisation}`)
-    .filter((line) => lengthsOf(line) < 2);
-  for (
-    const die of grouped(
-      short,
-      (line) => `${line[0]!.die_id ?? line[0]!.wafer}|${line[0]!.wavelength_nm}|${line[0]!.polarisation}`,
-    )
-  ) {
-    fitDie(readings, die, out);
-  }
+  const all = grouped(readings.cutback, (r) => `${r.unit}|${r.wavelength_nm}|${r.polarisation}`);
+  const lines = all.filter((line) => lengthsOf(line) >= 2);
+  const dies = grouped(
+    all.filter((line) => lengthsOf(line) < 2),
+    (line) => `${line[0]!.die_id ?? line[0]!.wafer}|${line[0]!.wavelength_nm}|${line[0]!.polarisation}`,
+  );
+  // One good lot in twenty has a reading named, not every twentieth line of it.
+  const level = OUTLIER_LEVEL / (lines.length + dies.length);
+  for (const line of lines) fitOne(readings, line, level, out);
+  for (const die of dies) fitDie(readings, die, level, out);
   return out;
 }
 
@@ -57,9 +55,9 @@ function pointsOf({ platform }: LotReadings, rows: readonly CutbackRecord[]): Cu
 const uFrom = (rows: readonly { readonly u_insertion_loss_db: number | null }[]): TraitRow["u_from"] =>
   rows.every((r) => r.u_insertion_loss_db !== null) ? "stated" : "platform";
 
-function fitOne(readings: LotReadings, rows: CutbackRecord[], out: Reduced): void {
+function fitOne(readings: LotReadings, rows: CutbackRecord[], level: number, out: Reduced): void {
   const first = rows[0]!;
-  const fit = fitCutback(pointsOf(readings, rows));
+  const fit = fitCutback(pointsOf(readings, rows), level);
   if (isRefused(fit)) {
     out.remarks.push({
       code: "cutback_refused",
@@ -71,9 +69,9 @@ function fitOne(readings: LotReadings, rows: CutbackRecord[], out: Reduced): voi
   pushFit(readings, fit, rows, first, "cut-back line", out, (k) => rows[k.point]!);
 }
 
-function fitDie(readings: LotReadings, lines: CutbackRecord[][], out: Reduced): void {
+function fitDie(readings: LotReadings, lines: CutbackRecord[][], level: number, out: Reduced): void {
   const first = lines[0]![0]!;
-  const fit = fitCommonSlope(lines.map((rows) => pointsOf(readings, rows)));
+  const fit = fitCommonSlope(lines.map((rows) => pointsOf(readings, rows)), level);
   if (isRefused(fit)) {
     out.remarks.push({
       code: "cutback_refused",

@@ -122,3 +122,16 @@ Deno.test("a gain, as errors near no loss will give, is kept as it is", () => {
   const [trait] = losses(reduce([reading("A-1/01/g1", 20, 2.48), reading("A-1/01/g1", 10, 2.5)]));
   assertClose(trait!.value, -0.02, { rel: 1e-9 });
 });
+
+Deno.test("a reading 3.6 u off is named in a lot of one line, and not among the lines of two dozen guides", () => {
+  const lengths = [5, 10, 15, 20, 25, 30];
+  const lineOf = (unit: string, off: number, nm = 1550) =>
+    lengths.map((l, k) => reading(unit, l, 2 + 0.04 * l + (k === 2 ? off : 0), { wavelength_nm: nm }));
+  const named = (rows: CutbackRecord[]) =>
+    reduce(rows).remarks.filter((r) => r.code === "cutback_outlier").length;
+  const odd = lineOf("A-1/01/g1", 0.036);
+  equal(named(odd), 1);
+  const good = Array.from({ length: 24 }, (_, k) => lineOf("A-1/01/g2", 0, 1500 + k)).flat();
+  equal(named([...odd, ...good]), 0);
+  equal(named([...lineOf("A-1/01/g1", 0.08), ...good]), 1);
+});
