@@ -83,7 +83,9 @@ async function everyLot(
       onProgress: (n, of) => bar.update(n, of),
       onSolving: solving,
     });
-    if (!quiet) noteAll([...new Set(done.flatMap((d) => d.contradictions))]);
+    // Requests at neighbouring wavelengths rest on one reading: it is named once.
+    const told = new Map(done.flatMap((d) => d.contradictions.map(({ reading, text }) => [reading, text])));
+    if (!quiet) noteAll([...told.values()]);
     out.push(...done.map(({ contradictions: _, ...d }) => ({ lot, ...d })));
   }
   return out;

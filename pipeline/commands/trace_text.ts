@@ -129,10 +129,10 @@ function traitNode(t: TracedTrait, guide: string): Node {
 export function sharesText(shares: TracedShares): string {
   const parts = [
     ["its own readings", shares.own],
-    ["its die's", shares.die],
-    ["its wafer's", shares.wafer],
-    ["its lot's", shares.lot],
-    ["other lots'", shares.other_lots],
+    ["readings of its die", shares.die],
+    ["readings of its wafer", shares.wafer],
+    ["readings of its lot", shares.lot],
+    ["readings of other lots", shares.other_lots],
     ["the platform's default", shares.platform],
   ] as const;
   const counted = parts.filter(([, share]) => share >= 0.005).sort((a, b) => b[1] - a[1]);

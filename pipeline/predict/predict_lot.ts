@@ -31,8 +31,8 @@ export interface PredictedRequest {
   readonly run: string;
   /** False when nothing had changed and nothing was computed. */
   readonly computed: boolean;
-  /** Readings that the others contradict, as sentences; told when the prediction is computed. */
-  readonly contradictions: readonly string[];
+  /** Readings that the others contradict, with a name each and a sentence; told when the prediction is computed. */
+  readonly contradictions: readonly { readonly reading: string; readonly text: string }[];
 }
 
 const ROLE_SHAPE = {
@@ -137,7 +137,10 @@ export async function predictLot(
       request: request.name,
       run: run.run,
       computed: true,
-      contradictions: contradictions.map((c) => contradictionText(c, computed.pools)),
+      contradictions: contradictions.map((c) => ({
+        reading: `${c.trait} ${c.used.join()}`,
+        text: contradictionText(c, computed.pools),
+      })),
     });
   }
   const order = new Map(requests.map((r, k) => [r.name, k]));

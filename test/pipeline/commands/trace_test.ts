@@ -75,5 +75,8 @@ Deno.test("trace answers as a tree, CSV and JSON, and changes nothing in the led
 
 Deno.test("what a trait is made of is told largest part first, without parts below half a per cent", () => {
   const shares = { own: 0, die: 0.2, wafer: 0.703, lot: 0.004, other_lots: 0, platform: 0.093 };
-  assert.equal(sharesText(shares), "made of its wafer's 70 %, its die's 20 %, the platform's default 9 %");
+  assert.equal(
+    sharesText(shares),
+    "made of readings of its wafer 70 %, readings of its die 20 %, the platform's default 9 %",
+  );
 });
