@@ -155,8 +155,14 @@ function restoreLines({ as_made, restored }: GuideExplained): string[] {
   return [
     `As made ${as_made.toFixed(3)}; with traits at their targets:`,
     textTable(columns, rows, { width: WIDTH }),
+    ...(restored.some((r) => r.probability < as_made - NOTICEABLE) ? wrap(FITS_AS_MADE, WIDTH) : []),
   ];
 }
+
+/** A fall of a probability that needs a word. */
+const NOTICEABLE = 0.02;
+const FITS_AS_MADE =
+  "A rise below 0: this guide stands for its die because it fits what was made; at the target another guide of the die may fit.";
 
 /** Columns of the CSV: one row per trait and required figure. */
 export const EXPLAIN_COLUMNS = [
