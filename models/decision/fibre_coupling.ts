@@ -19,6 +19,11 @@ interface Couplings {
   readonly used: "solved" | "gaussian" | null;
 }
 
+/** Whether a mode's size rests on a reading, of this lot or another one. */
+export const isModeRead = (mode: ArmTraits["mode"]): boolean =>
+  !("reason" in mode) &&
+  (mode.read === true || mode.x.basis !== "platform" || mode.y.basis !== "platform");
+
 function couplings(
   { model, guide, waves }: Site,
   arm: ArmName,
@@ -29,7 +34,7 @@ function couplings(
   const [pol, lambda] = arm === "signal" ? [waves.polS, waves.lambdaS] : [waves.polI, waves.lambdaI];
   const solved = model.solvedCoupling(guide.geometry, pol, lambda, um(fibre_um));
   const gaussian = "reason" in mode ? null : overlap(mode.x.value, mode.y.value, fibre_um);
-  const measured = !("reason" in mode) && (mode.x.basis !== "platform" || mode.y.basis !== "platform");
+  const measured = isModeRead(mode);
   const used = solved !== null && !measured ? "solved" : gaussian === null ? null : "gaussian";
   return { solved, gaussian, used };
 }

@@ -20,7 +20,12 @@ export type FacetTrait =
 export interface ArmTraits {
   readonly loss: UsedTrait;
   /** Null: no mode size is known, with the reason. */
-  readonly mode: { readonly x: UsedTrait; readonly y: UsedTrait } | { readonly reason: string };
+  readonly mode: {
+    readonly x: UsedTrait;
+    readonly y: UsedTrait;
+    /** A size was read somewhere: if on no guide of this lot, then of another one. */
+    readonly read?: boolean;
+  } | { readonly reason: string };
   readonly facet: FacetTrait;
 }
 

@@ -3,6 +3,7 @@ import { GEOMETRY_PARAMETERS } from "../guides/mod.ts";
 import type { CheckedRequest } from "../../shared/schemas/request.ts";
 import type { Platform } from "../../shared/schemas/platform.ts";
 import type { GuideGeometry, Polarisation } from "../../shared/vocabulary.ts";
+import { isModeRead } from "./fibre_coupling.ts";
 import type { Role } from "./figure_basis.ts";
 import type { ArmTraits, GuideInputs, UsedTrait } from "./guide_inputs.ts";
 import { targetOf, type TargetTrait } from "./targets.ts";
@@ -51,7 +52,8 @@ export function restoredInputs(
     const reflectivity = aimed("coated_reflectivity", lambda, pol);
     return {
       loss: loss(made.loss, lambda, pol),
-      mode: has("mode_size") && x && y ? { x, y } : made.mode,
+      // Of the two estimates of a coupling the one that is used as made: their difference is no gain.
+      mode: has("mode_size") && x && y ? { x, y, read: isModeRead(made.mode) } : made.mode,
       facet: has("facet") && reflectivity ? { state: "coated", reflectivity } : made.facet,
     };
   };

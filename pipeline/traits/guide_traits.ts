@@ -111,7 +111,7 @@ export function resolveGuide(
           wavelengthNm(lambda)
         } nm ${pol}: neither read nor a platform default`,
       }
-      : { x: used(x), y: used(y) };
+      : { x: used(x), y: used(y), read: x.shares !== null || y.shares !== null };
     return { loss: armLoss, mode, facet };
   };
   const pumpLoss = loss("pump_loss", lambdaP, polP);

@@ -1,5 +1,6 @@
 import assert from "node:assert/strict";
 import { type GuideInputs, type PlatformModel, predictGuide } from "../../../models/decision/mod.ts";
+import { restoredInputs } from "../../../models/decision/restored_inputs.ts";
 import { centredOverlap } from "../../../models/metrology/mod.ts";
 import { solvedCoupling, type SolvedOutput } from "../../../models/guides/mod.ts";
 import type { Figure } from "../../../shared/schemas/figures.ts";
@@ -66,6 +67,24 @@ Deno.test("a mode size that was read goes before the solved field, whose number 
       "solved_coupling: the signal's fibre takes 0.868 of the design's solved field; used is the Gaussian estimate of its " +
       `measured mode size, ${stated.toFixed(3)}`,
     ]);
+  }
+});
+
+Deno.test("a size read in another lot goes before the solved field, too, and a mode at its target keeps the estimate as made", () => {
+  const unread = signalMode("platform", 0);
+  assert.ok(!("reason" in unread.signal.mode));
+  const elsewhere = { ...unread, signal: { ...unread.signal, mode: { ...unread.signal.mode, read: true } } };
+  assertClose(predicted(elsewhere).figure("coupling_signal").mean!, stated, { rel: 1e-12 });
+  const platform = {
+    targets: {},
+    defaults: { mfd_x_um: { value: 8, u: 1 }, mfd_y_um: { value: 6, u: 1 } },
+  };
+  const atTarget = (of: GuideInputs) =>
+    predicted(restoredInputs(of, ["mode_size"], asked, { platform, designWidth_um: 3 }))
+      .figure("coupling_signal").mean!;
+  // The target is the size as made: nothing is gained, whichever estimate is used.
+  for (const inputs of [elsewhere, signalMode("die", 0), unread]) {
+    assertClose(atTarget(inputs), predicted(inputs).figure("coupling_signal").mean!, { rel: 1e-12 });
   }
 });
 

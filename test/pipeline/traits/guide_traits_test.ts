@@ -107,3 +107,17 @@ Deno.test("a mode size that is neither read nor a default is unknown, with the r
   const { mode } = resolveGuide(pools, new Map(), HERE, PAIRS, null).inputs.signal;
   ok("reason" in mode && /no mode size is known at 1582 nm TE/.test(mode.reason));
 });
+
+Deno.test("a mode size that only another lot read is the platform's by its basis, and read all the same", () => {
+  const row = (trait: "mfd_x_um" | "mfd_y_um", polarisation: "TE" | "TM") =>
+    traitRow(trait, "B-1/01/g1", 7, { wavelength_nm: 1582, polarisation, u: 0.1 });
+  const rows = (["TE", "TM"] as const).flatMap((pol) => [row("mfd_x_um", pol), row("mfd_y_um", pol)]);
+  const modeOf = (others: ConstructorParameters<typeof TraitPools>[3]) => {
+    const pools = new TraitPools(PLATFORM, lotDesign(), [], others);
+    const { mode } = resolveGuide(pools, new Map(), HERE, PAIRS, null).inputs.signal;
+    ok(!("reason" in mode));
+    return [mode.x.basis, mode.read];
+  };
+  deepEqual(modeOf([{ lot: "B", rows, places: new Map() }]), ["platform", true]);
+  deepEqual(modeOf([]), ["platform", false]);
+});
